@@ -1,0 +1,18 @@
+"""The tables of the bottles app, one concept a file."""
+
+from bottles.models.bottle import Bottle, Custody, Ownership
+from bottles.models.movement import Account, Delivery, Line, Movement
+from bottles.models.refill import Decision, Draw, Forecast, Refill, RefillCheck
+from bottles.models.scale import Scale, ScaleCheck
+from bottles.models.stamp import Condition, ConditionEnd, Stamp, StampStrike
+from bottles.models.standing import Standing
+from bottles.models.station import Station, Supply
+from bottles.models.tare import Tare, TarePart
+from bottles.models.weighing import Weighing, WeighingStrike
+
+__all__ = [
+    "Account", "Bottle", "Condition", "ConditionEnd", "Custody", "Decision", "Delivery", "Draw",
+    "Forecast", "Line", "Movement", "Ownership", "Refill", "RefillCheck", "Scale", "ScaleCheck",
+    "Stamp", "StampStrike", "Standing", "Station", "Supply", "Tare", "TarePart", "Weighing",
+    "WeighingStrike",
+]

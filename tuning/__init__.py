@@ -1,0 +1,1 @@
+"""Setups, jetting and runs of the cars; nothing is here yet."""
