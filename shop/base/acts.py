@@ -69,11 +69,12 @@ def update_master(instance: models.Model, *, version: int, values: dict[str, Any
 
     Raises Stale, with the values that stand now, where someone else saved meanwhile.
     """
-    model = type(instance)
+    model: Any = type(instance)
     found = model._default_manager.filter(pk=instance.pk, version=version).update(version=version + 1, **values)
     if not found:
         current = model._default_manager.get(pk=instance.pk)
-        raise Stale(theirs={f: str(getattr(current, f)) for f, v in values.items() if getattr(current, f) != v})
+        theirs = {f: str(getattr(current, f)) for f, v in values.items() if getattr(current, f) != v}
+        raise Stale(theirs=theirs, version=current.version)
     instance.refresh_from_db()
 
 

@@ -46,9 +46,10 @@ class Stale(Refusal):
 
     code = "stale"
 
-    def __init__(self, sentence: str = "", *, theirs: dict[str, str] | None = None) -> None:
+    def __init__(self, sentence: str = "", *, theirs: dict[str, str] | None = None, version: int = 0) -> None:
         super().__init__(sentence)
         self.theirs = theirs or {}
+        self.version = version
 
 
 class NotAllowed(Refusal):

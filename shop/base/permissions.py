@@ -27,8 +27,11 @@ MANAGERS = frozenset({Role.MANAGER})
 ROLE_WORDS = {Role.FRONT_DESK: "front desk", Role.TECHNICIAN: "technician", Role.MANAGER: "manager"}
 
 
-def allow(roles: Iterable[Role]) -> Callable[[Callable[..., Any]], Callable[..., Any]]:
-    """Let only people who hold one of the roles open a view; the view says so in `.roles`."""
+def allow(roles: Iterable[Role], *, room: str | None = None) -> Callable[[Callable[..., Any]], Callable[..., Any]]:
+    """Let only people who hold one of the roles open a view.
+
+    The view says so in `.roles`, and in `.room` which room its page belongs to.
+    """
     wanted = frozenset(roles)
 
     def wrap(view: Callable[..., Any]) -> Callable[..., Any]:
@@ -39,6 +42,7 @@ def allow(roles: Iterable[Role]) -> Callable[[Callable[..., Any]], Callable[...,
             return view(request, *args, **kwargs)
 
         inner.roles = wanted  # type: ignore[attr-defined]
+        inner.room = room  # type: ignore[attr-defined]
         return inner
 
     return wrap

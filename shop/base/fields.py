@@ -1,0 +1,139 @@
+"""Form fields that take quantities as people write them, and keep them as typed.
+
+A field cleans to an `Entry` (stored whole number, typed text, unit understood) or None. The
+unit meant where none is written follows the person's choice of units.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from datetime import datetime
+from typing import Any
+
+from django import forms
+from django.core.exceptions import ValidationError
+from django.utils import timezone
+
+from shop.physics import units
+from shop.physics.errors import QuantityError
+
+LONGEST = 64  # longer than anyone writes a quantity; a paste of megabytes is refused unread
+
+
+class QuantityField(forms.CharField):
+    """A quantity with its unit; cleans to an Entry."""
+
+    defaults = {"us": "", "metric": ""}
+
+    def __init__(self, **kwargs: Any) -> None:
+        kwargs.setdefault("widget", forms.TextInput(attrs={"autocomplete": "off", "inputmode": "text"}))
+        super().__init__(**kwargs)
+        self.system = "metric"
+        self.ambient_pa = 101_325.0
+
+    def suit(self, *, system: str, ambient_pa: float) -> None:
+        """Take the person's units and the shop's air pressure before the form is used."""
+        self.system = system
+        self.ambient_pa = ambient_pa
+
+    @property
+    def default_unit(self) -> str:
+        """The unit that is meant where none is written."""
+        return self.defaults[self.system]
+
+    def parse(self, text: str) -> units.Entry:
+        """Understand the text; raise QuantityError with a sentence."""
+        raise NotImplementedError
+
+    def clean(self, value: Any) -> Any:
+        text = "" if value is None else str(value)
+        if len(text) > LONGEST * 4:  # before any other work on it
+            raise ValidationError("That is far too long for a quantity: write a number and its unit.", code="too long")
+        text = super().clean(text)
+        if not text:
+            return None
+        try:
+            return self.parse(text)
+        except QuantityError as error:
+            raise ValidationError(error.sentence, code=error.code) from None
+
+
+class MassField(QuantityField):
+    """A weight: `24-6`, `24 lb 6 oz`, `11.06 kg`; cleans to grams."""
+
+    defaults = {"us": "lb", "metric": "kg"}
+
+    def parse(self, text: str) -> units.Entry:
+        return units.parse_mass(text, default_unit=self.default_unit)
+
+
+class PressureField(QuantityField):
+    """A gauge reading: `950 psi`, `65.5 bar`; cleans to pascal absolute."""
+
+    defaults = {"us": "psi", "metric": "bar"}
+
+    def parse(self, text: str) -> units.Entry:
+        return units.parse_pressure(text, default_unit=self.default_unit, ambient_pa=self.ambient_pa)
+
+
+class TemperatureField(QuantityField):
+    """A temperature: `68F`, `20 °C`; cleans to millikelvin."""
+
+    defaults = {"us": "°F", "metric": "°C"}
+
+    def parse(self, text: str) -> units.Entry:
+        return units.parse_temperature(text, default_unit=self.default_unit)
+
+
+class VolumeField(QuantityField):
+    """A capacity: `6.8 L`, `415 in3`; cleans to millilitres."""
+
+    defaults = {"us": "L", "metric": "L"}
+
+    def parse(self, text: str) -> units.Entry:
+        return units.parse_volume(text, default_unit=self.default_unit)
+
+
+class LengthField(QuantityField):
+    """A length or bore: `1.5 m`, `1/4`-free decimals `0.19 in`; cleans to micrometres."""
+
+    def __init__(self, *, us: str = "in", metric: str = "mm", **kwargs: Any) -> None:
+        super().__init__(**kwargs)
+        self.defaults = {"us": us, "metric": metric}
+
+    def parse(self, text: str) -> units.Entry:
+        return units.parse_length(text, default_unit=self.default_unit)
+
+
+class HappenedField(forms.CharField):
+    """When it happened, in the shop's time, for what is entered late; empty means now.
+
+    Cleans to an aware instant or None; a time still to come is refused.
+    """
+
+    def __init__(self, *, now: Callable[[], datetime] = timezone.now, **kwargs: Any) -> None:
+        kwargs.setdefault("required", False)
+        kwargs.setdefault("label", "Happened at (if not now)")
+        kwargs.setdefault("widget", forms.DateTimeInput(attrs={"type": "datetime-local"}))
+        super().__init__(max_length=40, **kwargs)
+        self.zone: Any = None
+        self.now = now
+
+    def clean(self, value: Any) -> Any:
+        text = super().clean(value)
+        if not text:
+            return None
+        try:
+            naive = datetime.fromisoformat(text.strip().replace("/", "-"))
+        except ValueError:
+            raise ValidationError(
+                "This isn't a date and time. Write it as 2026-03-31 14:05, in the shop's time.", code="not a time"
+            ) from None
+        instant = naive if naive.tzinfo else naive.replace(tzinfo=self.zone)
+        if instant > self.now():
+            raise ValidationError(
+                "This is still to come. Give the time at which it happened, or leave it empty for now.", code="in the future"
+            )
+        if instant.year < 1990:
+            raise ValidationError("This is too long ago for a record here. Check the year.", code="too long ago")
+        return instant
