@@ -244,9 +244,46 @@ if DEBUG:
 
 # --- background work ------------------------------------------------------------------------------
 
+# A job's row is the truth (shop.base.jobs); the broker only rings for it.
 # One machine: message files in the data folder, no outside service. Several: redis://host/0.
 BROKER_FOLDER = TAREBOOK_HOME / "bells"
 BROKER_URL = env.str("TAREBOOK_BROKER_URL", default="filesystem://")
+JOB_LEASE_SECONDS = env.int("TAREBOOK_JOB_LEASE_SECONDS", default=60)  # a handler reports sooner than that
+JOB_SWEEP_SECONDS = env.int("TAREBOOK_JOB_SWEEP_SECONDS", default=10)
+
+CELERY_BROKER_URL = BROKER_URL
+CELERY_BROKER_CONNECTION_TIMEOUT = 2
+CELERY_BROKER_CONNECTION_RETRY_ON_STARTUP = True
+# A page that asks for work must not wait for a broker that's away: one short attempt.
+CELERY_BROKER_TRANSPORT_OPTIONS = {"max_retries": 1, "interval_start": 0, "interval_step": 0, "interval_max": 0}
+if BROKER_URL.startswith("filesystem:"):
+    CELERY_BROKER_TRANSPORT_OPTIONS |= {
+        "data_folder_in": str(BROKER_FOLDER),
+        "data_folder_out": str(BROKER_FOLDER),
+        "control_folder": str(BROKER_FOLDER / "control"),
+        "polling_interval": 0.2,
+    }
+elif BROKER_URL.startswith("redis"):
+    CELERY_BROKER_TRANSPORT_OPTIONS |= {"socket_connect_timeout": 2}
+CELERY_TASK_IGNORE_RESULT = True
+CELERY_TASK_ACKS_LATE = True
+CELERY_TASK_REJECT_ON_WORKER_LOST = True
+CELERY_TASK_SERIALIZER = "json"
+CELERY_ACCEPT_CONTENT = ["json"]
+CELERY_WORKER_PREFETCH_MULTIPLIER = 1
+CELERY_WORKER_ENABLE_REMOTE_CONTROL = False
+CELERY_WORKER_SEND_TASK_EVENTS = False
+CELERY_WORKER_HIJACK_ROOT_LOGGER = False
+CELERY_TIMEZONE = "UTC"
+CELERY_BEAT_SCHEDULER = "celery.beat:Scheduler"  # keeps no file: what is due stands in the job rows
+CELERY_BEAT_SCHEDULE = {
+    "ring again": {
+        "task": "base.sweep",
+        "schedule": JOB_SWEEP_SECONDS,
+        "options": {"expires": JOB_SWEEP_SECONDS},
+    },
+    "ask for what is due daily": {"task": "base.ask_due", "schedule": 300, "options": {"expires": 300}},
+}
 
 # --- logging --------------------------------------------------------------------------------------
 
