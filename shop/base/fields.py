@@ -6,7 +6,6 @@ unit meant where none is written follows the person's choice of units.
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from datetime import datetime
 from typing import Any
 
@@ -95,7 +94,7 @@ class VolumeField(QuantityField):
 
 
 class LengthField(QuantityField):
-    """A length or bore: `1.5 m`, `1/4`-free decimals `0.19 in`; cleans to micrometres."""
+    """A length or bore: `1.5 m`, `0.19 in`; cleans to micrometres."""
 
     def __init__(self, *, us: str = "in", metric: str = "mm", **kwargs: Any) -> None:
         super().__init__(**kwargs)
@@ -105,19 +104,14 @@ class LengthField(QuantityField):
         return units.parse_length(text, default_unit=self.default_unit)
 
 
-class HappenedField(forms.CharField):
-    """When it happened, in the shop's time, for what is entered late; empty means now.
+class InstantField(forms.CharField):
+    """A day and time as the shop's clock shows it; cleans to an aware instant or None."""
 
-    Cleans to an aware instant or None; a time still to come is refused.
-    """
-
-    def __init__(self, *, now: Callable[[], datetime] = timezone.now, **kwargs: Any) -> None:
+    def __init__(self, **kwargs: Any) -> None:
         kwargs.setdefault("required", False)
-        kwargs.setdefault("label", "Happened at (if not now)")
         kwargs.setdefault("widget", forms.DateTimeInput(attrs={"type": "datetime-local"}))
         super().__init__(max_length=40, **kwargs)
         self.zone: Any = None
-        self.now = now
 
     def clean(self, value: Any) -> Any:
         text = super().clean(value)
@@ -129,8 +123,31 @@ class HappenedField(forms.CharField):
             raise ValidationError(
                 "This isn't a date and time. Write it as 2026-03-31 14:05, in the shop's time.", code="not a time"
             ) from None
-        instant = naive if naive.tzinfo else naive.replace(tzinfo=self.zone)
-        if instant > self.now():
+        return naive if naive.tzinfo else naive.replace(tzinfo=self.zone)
+
+
+class PromisedField(InstantField):
+    """When something is promised for; more than a day past is refused as a slip."""
+
+    def clean(self, value: Any) -> Any:
+        instant = super().clean(value)
+        if instant is not None and not -2 < (instant - timezone.now()).days < 730:
+            raise ValidationError("This isn't a time to promise. Check the day and the year.", code="not a promise")
+        return instant
+
+
+class HappenedField(InstantField):
+    """When it happened, for what is entered late; empty means now. A time to come is refused."""
+
+    def __init__(self, **kwargs: Any) -> None:
+        kwargs.setdefault("label", "Happened at (if not now)")
+        super().__init__(**kwargs)
+
+    def clean(self, value: Any) -> Any:
+        instant = super().clean(value)
+        if instant is None:
+            return None
+        if instant > timezone.now():
             raise ValidationError(
                 "This is still to come. Give the time at which it happened, or leave it empty for now.", code="in the future"
             )

@@ -20,7 +20,7 @@ from django.views import View
 
 from shop.base import clock
 from shop.base.errors import AlreadyDone, NotAllowed, Refusal, Stale
-from shop.base.fields import HappenedField, QuantityField
+from shop.base.fields import InstantField, QuantityField
 from shop.base.models import Shop
 from shop.base.permissions import MANAGERS, Role
 from shop.people import kept
@@ -50,7 +50,7 @@ class ActForm(forms.Form):
         for field in self.fields.values():
             if isinstance(field, QuantityField):
                 field.suit(system=self.system, ambient_pa=self.ambient_pa)
-            if isinstance(field, HappenedField):
+            if isinstance(field, InstantField):
                 field.zone = clock.zone(shop)
         if shared:
             self.fields["who"] = forms.CharField(
