@@ -48,7 +48,7 @@ SECRET_FILE = TAREBOOK_HOME / "secret"
 
 
 def _secret_key() -> str:
-    key = env.str("TAREBOOK_SECRET_KEY", default="")
+    key: str = env.str("TAREBOOK_SECRET_KEY", default="")
     if not key:
         try:
             key = SECRET_FILE.read_text(encoding="ascii").strip()
@@ -247,7 +247,7 @@ if DEBUG:
 # A job's row is the truth (shop.base.jobs); the broker only rings for it.
 # One machine: message files in the data folder, no outside service. Several: redis://host/0.
 BROKER_FOLDER = TAREBOOK_HOME / "bells"
-BROKER_URL = env.str("TAREBOOK_BROKER_URL", default="filesystem://")
+BROKER_URL = env.str("TAREBOOK_BROKER_URL", default="filesystem://localhost/")
 JOB_LEASE_SECONDS = env.int("TAREBOOK_JOB_LEASE_SECONDS", default=60)  # a handler reports sooner than that
 JOB_SWEEP_SECONDS = env.int("TAREBOOK_JOB_SWEEP_SECONDS", default=10)
 
@@ -255,7 +255,12 @@ CELERY_BROKER_URL = BROKER_URL
 CELERY_BROKER_CONNECTION_TIMEOUT = 2
 CELERY_BROKER_CONNECTION_RETRY_ON_STARTUP = True
 # A page that asks for work must not wait for a broker that's away: one short attempt.
-CELERY_BROKER_TRANSPORT_OPTIONS = {"max_retries": 1, "interval_start": 0, "interval_step": 0, "interval_max": 0}
+CELERY_BROKER_TRANSPORT_OPTIONS: dict[str, int | float | str] = {
+    "max_retries": 1,
+    "interval_start": 0,
+    "interval_step": 0,
+    "interval_max": 0,
+}
 if BROKER_URL.startswith("filesystem:"):
     CELERY_BROKER_TRANSPORT_OPTIONS |= {
         "data_folder_in": str(BROKER_FOLDER),
@@ -265,6 +270,7 @@ if BROKER_URL.startswith("filesystem:"):
     }
 elif BROKER_URL.startswith("redis"):
     CELERY_BROKER_TRANSPORT_OPTIONS |= {"socket_connect_timeout": 2}
+CELERY_TASK_DEFAULT_QUEUE = env.str("TAREBOOK_QUEUE", default="tarebook")  # where shops share a Redis: one each
 CELERY_TASK_IGNORE_RESULT = True
 CELERY_TASK_ACKS_LATE = True
 CELERY_TASK_REJECT_ON_WORKER_LOST = True

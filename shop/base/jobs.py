@@ -14,10 +14,9 @@ import uuid
 from collections.abc import Callable
 from datetime import timedelta
 from functools import cache
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from django.conf import settings
-from django.contrib.auth.base_user import AbstractBaseUser
 from django.db import InterfaceError, OperationalError, transaction
 from django.db.models import F, Q
 from django.utils.module_loading import autodiscover_modules
@@ -26,6 +25,9 @@ from shop.base.clock import now, today, zone
 from shop.base.errors import Refusal
 from shop.base.models import Job, Shop
 from shop.base.running import JobCancelled, LeaseLost, Running
+
+if TYPE_CHECKING:
+    from shop.people.models import User
 
 __all__ = [
     "JobCancelled", "LeaseLost", "Running", "ask", "ask_again", "ask_due", "cancel", "job_kind", "perform",
@@ -56,7 +58,7 @@ def job_kind(kind: str, *, daily_from_hour: int | None = None) -> Callable[[Hand
 
 
 def ask(
-    kind: str, key: str, args: dict[str, Any] | None = None, person: AbstractBaseUser | None = None
+    kind: str, key: str, args: dict[str, Any] | None = None, person: User | None = None
 ) -> Job:
     """Put a job's row into the caller's transaction; asked twice for one key, it's the same job."""
     if kind not in _kinds():

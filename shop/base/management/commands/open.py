@@ -10,16 +10,20 @@ import time
 import urllib.error
 import urllib.request
 from argparse import ArgumentParser
+from collections.abc import Callable
 from importlib import import_module
 from typing import Any
 
 from django.conf import settings
+from django.core.exceptions import ValidationError
 from django.core.management import BaseCommand, call_command
 from django.db import DatabaseError, connection
 from django.db.migrations.executor import MigrationExecutor
 
 from shop.base import datafolder, founding, jobs
 from shop.base.datafolder import CannotOpen
+from shop.base.errors import Refusal
+from shop.base.models import Job, Shop
 from shop.base.supervise import Child, Supervisor
 
 LOOPBACK = ("127.0.0.1", "localhost", "::1")
@@ -184,10 +188,8 @@ def _migrate() -> None:
         call_command("migrate", interactive=False, verbosity=0)
 
 
-def _found(options: dict[str, Any], say: Any) -> list[tuple[str, str, str]]:
+def _found(options: dict[str, Any], say: Callable[[str], None]) -> list[tuple[str, str, str]]:
     """Make the shop where there is none yet; returns the sign-ins to print this once."""
-    from shop.base.models import Job, Shop
-
     if Shop.objects.exists():
         if options["demo"] and not Job.objects.filter(kind="demo.fill").exists():
             say("This data folder holds a shop already, so the demo stays out of it.")
@@ -197,8 +199,11 @@ def _found(options: dict[str, Any], say: Any) -> list[tuple[str, str, str]]:
     found_shop = import_module("shop.people.services").found_shop
     if not options["demo"]:
         new = founding.answers(options)
-        found_shop(**new)
-        return [("manager", new["manager_name"], new["manager_password"])]
+        try:
+            _, manager = found_shop(**new)
+        except (Refusal, ValidationError) as error:
+            raise CannotOpen(getattr(error, "sentence", "") or "; ".join(getattr(error, "messages", []))) from error
+        return [("manager", manager.sign_in_name, new["manager_password"])]
     # The job first: should this be cut off between the two, the next start finds no shop and goes on.
     jobs.ask("demo.fill", "demo")
     return list(import_module("shop.demo.people").demo_people())
