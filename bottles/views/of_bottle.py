@@ -1,0 +1,43 @@
+"""The base of every page that saves something about one bottle."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from django.http import Http404
+
+from bottles.models import Bottle, Standing
+from bottles.services.standing import restate
+from shop.base.permissions import EVERYONE
+from shop.people.acting import ActView
+
+
+def bottle_or_404(code: str) -> Bottle:
+    """Return the bottle of a code, whatever the case it was typed in."""
+    bottle = Bottle.objects.filter(code__iexact=code.strip()).first()
+    if bottle is None:
+        raise Http404(f"There is no bottle {code} in the register.")
+    return bottle
+
+
+class BottleActView(ActView):
+    """Finds the bottle of the address; goes back to its page after saving."""
+
+    roles = EVERYONE
+    room = "counter"
+    bottle: Bottle
+
+    def find(self, **kwargs: Any) -> None:
+        self.bottle = bottle_or_404(kwargs["code"])
+
+    @property
+    def standing(self) -> Standing:
+        """The bottle's standing, worked out where it's missing."""
+        found = Standing.objects.filter(bottle=self.bottle).select_related("custody__place", "tare", "weighing").first()
+        return found or restate(self.bottle)
+
+    def first_page(self, act: Any) -> str:
+        return self.bottle.get_absolute_url()
+
+    def context(self) -> dict[str, Any]:
+        return {"bottle": self.bottle, "back": self.bottle.get_absolute_url()}
