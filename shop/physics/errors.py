@@ -44,9 +44,7 @@ class OutOfRange(PhysicsError):
     """A number lies outside what a function is valid for."""
 
     code = "out_of_range"
-    sentence = (
-        "This figure lies outside the range that can be computed. Check it and its unit."
-    )
+    sentence = "This figure lies outside the range that can be computed. Check it and its unit."
 
 
 class Contradiction(PhysicsError):

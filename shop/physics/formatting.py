@@ -20,10 +20,20 @@ from typing import Literal
 from shop.physics.decimals import joined, written
 from shop.physics.unit_table import UNITS
 from shop.physics.units import value_in
-from shop.physics.weights import MassStyle as MassStyle
-from shop.physics.weights import format_mass as format_mass
-from shop.physics.weights import grams_not_above as grams_not_above
-from shop.physics.weights import reading_not_above as reading_not_above
+from shop.physics.weights import MassStyle, format_mass, grams_not_above, reading_not_above
+
+__all__ = [
+    "MassStyle",
+    "UnitSystem",
+    "format_length",
+    "format_mass",
+    "format_pressure",
+    "format_temperature",
+    "format_volume",
+    "grams_not_above",
+    "reading_not_above",
+    "unit_system",
+]
 
 # Shown where no gauge says how fine (common practice, no source).
 _USUAL_STEP: dict[str, Fraction] = {
@@ -277,7 +287,3 @@ def _with_unit(value: Fraction, unit: str, step: str | None, plus_minus: int | N
 
 def _bare(text: str) -> str:
     return text.replace("0.", ".", 1) if text.lstrip("−").startswith("0.") else text
-
-
-def joined(text: str, spread: str | None, unit: str) -> str:
-    return f"{text} {unit}" if spread is None else f"{text} ±{spread} {unit}"

@@ -167,7 +167,8 @@ def pounds_and_ounces(plain: str) -> tuple[Decimal, Decimal] | None:
         )
     if ounces >= 16:
         raise QuantityError(
-            "ounces", "Sixteen ounces are a pound: the ounces must be below 16. Read the scale again."
+            "ounces",
+            "Sixteen ounces are a pound: the ounces must be below 16. Read the scale again.",
         )
     return pounds, ounces
 

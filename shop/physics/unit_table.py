@@ -94,7 +94,7 @@ _ALSO: dict[str, str] = {
     "mm": "millimetre millimetres millimeter millimeters",
     "cm": "centimetre centimetres centimeter centimeters",
     "m": "metre metres meter meters",
-    "in": "inch inches \" ″ ”",
+    "in": 'inch inches " ″ ”',
     "ft": "foot feet ' ′ ’",
     "thou": "thous",
 }

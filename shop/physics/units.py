@@ -8,8 +8,7 @@ Entry(stored=6651344, typed='950 psi', unit='psi')
 '24 lb 6 oz'
 
 Stored are grams, pascal absolute, millikelvin, millilitres and micrometres. Factors are
-exact fractions by definition; an entry is converted once and rounded once, half to even.
-Pressure units are gauge unless they say that they are absolute.
+exact; an entry is rounded once, half to even. Pressure is gauge unless it says absolute.
 """
 
 from __future__ import annotations
@@ -19,16 +18,29 @@ from dataclasses import dataclass
 from fractions import Fraction
 
 from shop.physics import reading
-from shop.physics.atmosphere import ambient_pressure as ambient_pressure
+from shop.physics.atmosphere import ambient_pressure
 from shop.physics.errors import QuantityError
 from shop.physics.unit_table import LIMITS, NAMES, UNITS, WORDS, Unit
+
+__all__ = [
+    "Entry",
+    "ambient_pressure",
+    "in_own_unit",
+    "parse_length",
+    "parse_mass",
+    "parse_pressure",
+    "parse_temperature",
+    "parse_volume",
+    "value_in",
+]
+_LIKE = str.maketrans("³²º", "32°")  # told apart by no one who types them
 
 
 @dataclass(frozen=True, slots=True)
 class Entry:
     """What was understood (``stored``, a whole number) beside what was ``typed``.
 
-    ``unit`` is the name of the unit that was understood: one of those in this module.
+    ``unit`` names the unit that was understood.
     """
 
     stored: int
@@ -257,8 +269,7 @@ def value_in(stored: int, unit: str, *, ambient_pa: float | None = None) -> Frac
     ----------
     NIST SP 811 (2008), appendix B.8.
     """
-    found = _unit(unit)
-    return (stored - _zero(found, unit, ambient_pa)) / found.factor
+    return (stored - _zero(_unit(unit), unit, ambient_pa)) / UNITS[unit].factor
 
 
 def in_own_unit(stored: int, unit: str, *, ambient_pa: float | None = None) -> str:
@@ -330,8 +341,7 @@ def _parse(
 
 
 def _named(word: str, kind: str) -> str | None:
-    squeezed = re.sub(r"[ .]", "", word.lower()).replace("³", "3").replace("²", "2")
-    squeezed = squeezed.replace("º", "°")
+    squeezed = re.sub(r"[ .]", "", word.lower()).translate(_LIKE)
     if kind == "temperature":
         squeezed = squeezed.removeprefix("°") if squeezed[1:] in ("f", "c") else squeezed
         if squeezed in ("°", "deg", "degrees"):
