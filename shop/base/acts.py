@@ -15,6 +15,7 @@ from typing import Any
 from django.contrib.auth.base_user import AbstractBaseUser
 from django.db import IntegrityError, models, transaction
 
+from shop.base import clock
 from shop.base.errors import AlreadyDone, Stale
 from shop.base.models import Act
 
@@ -40,7 +41,8 @@ def begin(
         try:
             with transaction.atomic():
                 act = Act.objects.create(
-                    key=key, person=person, code=code, subject=subject, reason=reason, changes=changes or {}
+                    key=key, person=person, recorded_at=clock.now(), code=code, subject=subject, reason=reason,
+                    changes=changes or {},
                 )
         except IntegrityError:
             first = Act.objects.filter(key=key).first()

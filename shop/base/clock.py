@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from contextlib import contextmanager
+from contextvars import ContextVar
 from datetime import date, datetime
 from zoneinfo import ZoneInfo
 
@@ -10,9 +13,22 @@ from django.utils import timezone
 from shop.base.models import Shop
 
 
+_pretended: ContextVar[datetime | None] = ContextVar("pretended", default=None)
+
+
 def now() -> datetime:
     """Return the present instant, UTC."""
-    return timezone.now()
+    return _pretended.get() or timezone.now()
+
+
+@contextmanager
+def pretend(instant: datetime) -> Iterator[None]:
+    """Let the clock stand at an instant: for whoever writes an invented past."""
+    token = _pretended.set(instant)
+    try:
+        yield
+    finally:
+        _pretended.reset(token)
 
 
 def zone(shop: Shop | None = None) -> ZoneInfo:
