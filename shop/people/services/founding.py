@@ -10,7 +10,14 @@ from shop.base.errors import Refusal
 from shop.base.models import Policy, Shop
 from shop.people.models import User
 
-FIRST_POLICY = {"month_rule": "through", "visual_interval_months": None, "disc_interval_months": None, "own_percent": None}
+# The country's rules alone: nothing of the shop's own yet. The keys are those of the rules' Policy.
+FIRST_POLICY = {
+    "month_rule": None,
+    "visual_interval_months": None,
+    "disc_interval_months": None,
+    "own_limit_per_mille": None,
+    "overlays": [],
+}
 
 
 def found_shop(
