@@ -85,7 +85,7 @@ class State:
 class _Engine:
     """The thread's low-level state and its constants, looked up once."""
 
-    __slots__ = ("_dt", "_du", "_pq", "_pt", "_qt", "raw")
+    __slots__ = ("_d", "_dt", "_du", "_gas", "_p", "_pq", "_pt", "_qt", "_t", "raw")
 
     def __init__(self) -> None:
         from CoolProp import CoolProp
@@ -96,6 +96,10 @@ class _Engine:
         self._pq: Any = CoolProp.PQ_INPUTS
         self._pt: Any = CoolProp.PT_INPUTS
         self._qt: Any = CoolProp.QT_INPUTS
+        self._gas: Any = CoolProp.iphase_gas
+        self._d: Any = CoolProp.iDmass
+        self._p: Any = CoolProp.iP
+        self._t: Any = CoolProp.iT
 
     def saturation(self, temperature: float) -> tuple[float, float, float, float, float]:
         """Pressure, densities and enthalpies (liquid, vapour) at saturation."""
@@ -128,6 +132,16 @@ class _Engine:
         """Share of vapour of the state last asked for; None with one phase."""
         quality = float(self.raw.Q())
         return quality if 0.0 <= quality <= 1.0 else None
+
+    def one_phase_slopes(self, density: float, temperature: float) -> tuple[float, float, float]:
+        """Pressure, cv and dp/dT at constant density, of one phase, even just past saturation."""
+        raw = self.raw
+        raw.specify_phase(self._gas)
+        try:
+            raw.update(self._dt, density, temperature)
+            return raw.p(), raw.cvmass(), raw.first_partial_deriv(self._p, self._t, self._d)
+        finally:
+            raw.unspecify_phase()
 
     def state(self) -> State:
         """Record of the state last asked for."""

@@ -1,0 +1,270 @@
+"""What a supply bottle shows after giving a mass: the paths that it takes.
+
+`Adiabatic`: contents and wall uniform, no heat from outside. Stages follow each other:
+one phase (full of liquid, or above the critical point), two phases giving liquid, and
+vapour when the liquid is out. `Held`: kept at its temperature.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from bottles.physics.vessel import Vessel, pressure_and_energy
+from bottles.physics.withdrawal_table import Drain, withdrawal_table
+from shop.physics.errors import NoSolution
+from shop.physics.fluid import RHO_CRITICAL, T_SATURATION_MAX, T_TRIPLE, engine
+from shop.physics.roots import find_root
+
+_STEP = 0.12  # share of the mass that one step in one phase may take
+
+
+@dataclass(frozen=True, slots=True)
+class Given:
+    """A supply bottle after giving a mass, and what leaves it next."""
+
+    temperature_k: float
+    pressure_pa: float
+    energy_given_j: float
+    outlet_j_kg: float
+    liquid: bool
+
+
+class Held:
+    """A supply bottle kept at its temperature, whatever heat that takes."""
+
+    def __init__(self, vessel: Vessel) -> None:
+        """Fix the start."""
+        self._vessel = vessel
+        t = vessel.temperature_k
+        self._vapour = engine().saturation(t)[2] if t <= T_SATURATION_MAX else RHO_CRITICAL
+
+    def pressure(self, given_kg: float) -> float:
+        """Pressure after giving a mass [Pa]."""
+        vessel = self._vessel
+        left = max(vessel.net_kg - given_kg, 0.0)
+        return pressure_and_energy(vessel.volume_m3, left, vessel.temperature_k)[0]
+
+    def has_liquid(self, given_kg: float) -> bool:
+        """Say whether there is liquid, or a fluid as dense, after giving a mass."""
+        return (self._vessel.net_kg - given_kg) / self._vessel.volume_m3 > self._vapour * (1 + 1e-9)
+
+
+class Adiabatic:
+    """A supply bottle giving nitrous without heat from outside."""
+
+    def __init__(self, vessel: Vessel) -> None:
+        """Start at rest; stages are found as far as they are asked for."""
+        self._vessel = vessel
+        self._v, self._c = vessel.volume_m3, vessel.wall_j_k
+        self._start = (
+            pressure_and_energy(self._v, vessel.net_kg, vessel.temperature_k)[1]
+            + self._c * vessel.temperature_k
+        )
+        self._stages: list[_TwoPhase | _OnePhase] = []
+        self.dry_at_kg: float | None = None  # mass given when the liquid was out, once known
+        self._last = (-1.0, Given(0.0, 0.0, 0.0, 0.0, False))
+        self._open(vessel.net_kg, vessel.temperature_k, None)
+
+    def after(self, given_kg: float) -> Given:
+        """State after giving a mass."""
+        if self._last[0] == given_kg:
+            return self._last[1]
+        left = max(self._vessel.net_kg - given_kg, self._vessel.net_kg * 1e-6)
+        for _ in range(12):
+            stage = self._stages[-1]
+            if stage.reaches(left):
+                break
+            mass, temperature = stage.end
+            dry = isinstance(stage, _TwoPhase)
+            if dry and self.dry_at_kg is None:
+                self.dry_at_kg = self._vessel.net_kg - mass
+            self._open(mass, temperature, stage)
+        else:
+            raise NoSolution("supply_path")
+        for stage in self._stages:
+            if stage.reaches(left):
+                break
+        temperature, pressure, energy, outlet, liquid = stage.state(left)
+        given = self._start - energy - self._c * temperature
+        answer = Given(temperature, pressure, given, outlet, liquid)
+        self._last = (given_kg, answer)
+        return answer
+
+    def dry_out(self) -> float:
+        """Mass given when the liquid is out; nothing where there is none at the start [kg]."""
+        if self.dry_at_kg is None:
+            stage = self._stages[0]
+            if not self.after(0.0).liquid:
+                self.dry_at_kg = 0.0
+            while self.dry_at_kg is None:
+                end = stage.end[0]
+                self.after(self._vessel.net_kg - end * (1.0 - 1e-6))
+                if self.dry_at_kg is None and stage is self._stages[-1]:
+                    self.dry_at_kg = self._vessel.net_kg - end
+                stage = self._stages[-1]
+        return self.dry_at_kg
+
+    def _open(
+        self, mass: float, temperature: float, before: _TwoPhase | _OnePhase | None
+    ) -> None:
+        """Begin the stage that follows from a state and from how it was reached."""
+        v, c, pickup = self._v, self._c, self._vessel.liquid_pickup
+        if temperature <= T_SATURATION_MAX:
+            _, rho_l, rho_v, _, _ = engine().saturation(temperature)
+            edge = 1e-6 * rho_v
+            if rho_v + edge < mass / v < rho_l * (1.0 + 1e-6):
+                self._stages.append(_TwoPhase(v, c, mass, temperature, pickup))
+                return
+            wet = isinstance(before, _OnePhase)
+            at_dew = mass / v <= rho_v + edge and (wet or mass / v >= rho_v - edge)
+            if at_dew and (wet or _gets_wet(v, c, mass, temperature)):
+                # Mist after the liquid is out stays in the bottle: it's vapour that leaves.
+                # Where vapour turns wet by itself, enough liquid may gather to be drawn.
+                draws = pickup and wet and self._gathers(mass, temperature)
+                self._stages.append(_TwoPhase(v, c, mass, temperature, draws))
+                return
+        self._stages.append(_OnePhase(v, c, mass, temperature))
+
+    def _gathers(self, mass: float, temperature: float) -> bool:
+        """Say whether liquid that appears in vapour outlasts its being drawn."""
+        drain = Drain(withdrawal_table(liquid=True), self._v, self._c, mass, temperature)
+        colder = max(temperature - 1e-3, T_TRIPLE)
+        return drain.mass_at(colder) > engine().saturation(colder)[2] * self._v
+
+
+class _TwoPhase:
+    """Liquid and vapour, one of which is drawn: closed, by the table."""
+
+    def __init__(
+        self, volume: float, wall: float, mass: float, temperature: float, liquid: bool
+    ) -> None:
+        self._v, self._liquid = volume, liquid
+        self._top = (mass, temperature)
+        self._drain = Drain(withdrawal_table(liquid=liquid), volume, wall, mass, temperature)
+        self._end: tuple[float, float] | None = None
+        self._known: tuple[float, float] = self._top
+
+    def reaches(self, left: float) -> bool:
+        """Say whether both phases are still there with a mass left."""
+        if self._end is None:
+            temperature = self._drain.temperature_at(left)
+            self._known = (left, temperature)
+            if temperature > T_TRIPLE and left >= engine().saturation(temperature)[2] * self._v:
+                return True
+            return left >= self.end[0]
+        return left >= self._end[0]
+
+    @property
+    def end(self) -> tuple[float, float]:
+        """Mass and temperature where vapour alone fills the bottle."""
+        if self._end is None:
+            saturation = engine().saturation
+
+            def liquid_left(t: float) -> float:
+                return self._drain.mass_at(t) - saturation(t)[2] * self._v
+
+            if liquid_left(T_TRIPLE) >= 0.0:
+                self._end = (0.0, T_TRIPLE)
+            elif liquid_left(top := self._top[1] - 1e-3) <= 0.0:
+                self._end = self._top
+            else:
+                t = find_root(liquid_left, T_TRIPLE, top, tolerance=1e-7)
+                self._end = (saturation(t)[2] * self._v, t)
+        return self._end
+
+    def state(self, left: float) -> tuple[float, float, float, float, bool]:
+        """Temperature, pressure, energy, enthalpy of what leaves, liquid or not."""
+        if self._known[0] == left:
+            temperature = self._known[1]
+        else:
+            temperature = self._drain.temperature_at(left)
+        p, rho_l, rho_v, h_l, h_v = engine().saturation(temperature)
+        q = (h_v - h_l) / (1.0 / rho_v - 1.0 / rho_l)
+        energy = left * (h_l - q / rho_l) + self._v * (q - p)
+        liquid = self._liquid and left > rho_v * self._v * (1.0 + 1e-9)
+        return temperature, p, energy, h_l if self._liquid else h_v, liquid
+
+
+class _OnePhase:
+    """One phase, drawn as it is, by steps of Runge and Kutta in mass."""
+
+    def __init__(self, volume: float, wall: float, mass: float, temperature: float) -> None:
+        self._v, self._c = volume, wall
+        slope = _one_phase_slope(volume, wall, mass, temperature)
+        self._nodes = [(mass, temperature, slope)]
+        self._end: tuple[float, float] | None = None
+
+    def reaches(self, left: float) -> bool:
+        """Say whether it's still one phase with a mass left."""
+        while self._end is None and self._nodes[-1][0] > left:
+            self._extend()
+        return left >= (self._end or self._nodes[-1])[0]
+
+    @property
+    def end(self) -> tuple[float, float]:
+        """Mass and temperature where a second phase appears."""
+        while self._end is None and self._nodes[-1][0] > 1e-7 * self._nodes[0][0]:
+            self._extend()
+        return self._end or (0.0, self._nodes[-1][1])
+
+    def _extend(self) -> None:
+        """One step further; past saturation the phase is followed as if it were alone."""
+        m, t, k1 = self._nodes[-1]
+        v, c, dm = self._v, self._c, -_STEP * m
+        k2 = _one_phase_slope(v, c, m + 0.5 * dm, t + 0.5 * dm * k1)
+        k3 = _one_phase_slope(v, c, m + 0.5 * dm, t + 0.5 * dm * k2)
+        k4 = _one_phase_slope(v, c, m + dm, t + dm * k3)
+        new = (m + dm, t + dm * (k1 + 2.0 * (k2 + k3) + k4) / 6.0)
+        self._nodes.append((*new, _one_phase_slope(v, c, *new)))
+        if _room(v, *new) < 0.0:
+            edge = find_root(
+                lambda left: _room(v, left, self._temperature(left)), m + dm, m, tolerance=1e-9 * m
+            ) if _room(v, m, t) > 0.0 else m
+            self._end = (edge, self._temperature(edge))
+
+    def _temperature(self, left: float) -> float:
+        """Temperature between two steps."""
+        nodes = self._nodes
+        if len(nodes) == 1 or left >= nodes[0][0]:
+            return nodes[0][1]
+        index = 1
+        while index < len(nodes) - 1 and nodes[index][0] > left:
+            index += 1
+        (m0, t0, d0), (m1, t1, d1) = nodes[index - 1], nodes[index]
+        h = m1 - m0
+        x = (left - m0) / h
+        rise = x * x * (3.0 - 2.0 * x) * (t1 - t0)
+        return t0 + rise + h * (x * (1.0 - x) ** 2 * d0 + x * x * (x - 1.0) * d1)
+
+    def state(self, left: float) -> tuple[float, float, float, float, bool]:
+        """Temperature, pressure, energy, enthalpy of what leaves, liquid or not."""
+        temperature = self._temperature(left)
+        pressure, energy = pressure_and_energy(self._v, left, temperature)
+        liquid = left / self._v > RHO_CRITICAL
+        return temperature, pressure, energy, (energy + pressure * self._v) / left, liquid
+
+
+def _room(volume: float, mass: float, temperature: float) -> float:
+    """How far one phase is from a second one, as a density; below nothing past saturation."""
+    if temperature > T_SATURATION_MAX:
+        return 1.0
+    _, rho_l, rho_v, _, _ = engine().saturation(max(temperature, T_TRIPLE))
+    density = mass / volume
+    return density - rho_l if 2.0 * density > rho_l + rho_v else rho_v - density
+
+
+def _one_phase_slope(volume: float, wall: float, mass: float, temperature: float) -> float:
+    """Kelvin a kilogram, while one phase is drawn as it is."""
+    density = mass / volume
+    _, heat, rise = engine().one_phase_slopes(density, max(temperature, T_TRIPLE))
+    return temperature * rise / (density * (mass * heat + wall))
+
+
+def _gets_wet(volume: float, wall: float, mass: float, temperature: float) -> bool:
+    """Say whether saturated vapour gets wet while it's drawn: it cools faster than it dries."""
+    colder = temperature - 1e-3
+    if colder < T_TRIPLE:
+        return False
+    saturation = engine().saturation
+    shed = (saturation(temperature)[2] - saturation(colder)[2]) * volume
+    return _one_phase_slope(volume, wall, mass, temperature) * shed > temperature - colder
