@@ -1,0 +1,150 @@
+"""The cautious limit: vapour in the bottle to fill condenses on its wall alone.
+
+What arrives is throttled to the pressure inside and parts there into saturated liquid, which
+lies at the bottom with the heat it came with, and vapour, which joins what is above. That
+vapour, compressed by the rising liquid, shares one temperature with the wall. Once it's
+saturated it condenses on the wall, warming it; the condensate drips into the liquid. Nothing
+passes between the liquid and what is above it. It ends when the supply's liquid is out.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from bottles.physics.vessel import Vessel, settle
+from bottles.physics.withdrawal import Adiabatic
+from shop.physics.fluid import P_CRITICAL, P_TRIPLE, T_SATURATION_MAX, T_TRIPLE, engine
+
+_STEPS = 20  # of the largest size, over what can go in
+_FIRST = 0.004  # the first step, as a share of what can go in
+
+
+@dataclass(frozen=True, slots=True)
+class Mark:
+    """A moment of the slow filling: what has arrived, and what stands above the liquid."""
+
+    moved_kg: float
+    temperature_k: float
+    pressure_pa: float
+    surplus_pa: float
+
+
+class _Above:
+    """Vapour and wall above the liquid: one temperature, a shrinking space."""
+
+    __slots__ = ("air", "energy", "mass", "pressure", "temperature", "volume", "wall")
+
+    def __init__(self, receiver: Vessel) -> None:
+        fluid = engine()
+        t, v = receiver.temperature_k, receiver.volume_m3
+        self.wall, self.air = receiver.wall_j_k, receiver.air
+        self.temperature = t
+        self.volume, self.mass = v, receiver.net_kg
+        energy = 0.0
+        if self.mass > 0.0:
+            density = self.mass / v
+            _, energy = fluid.pressure_energy(density, t)
+            quality = fluid.quality()
+            if quality is not None:
+                _, _, rho_v, _, h_v = fluid.saturation(t)
+                self.mass *= quality
+                self.volume = self.mass / rho_v if quality > 0.0 else 1e-6 * v
+                energy = h_v - fluid.saturation(t)[0] / rho_v
+        self.energy = self.mass * energy + self.wall * t
+        self.pressure = 0.0
+        self.settle()
+
+    def settle(self) -> None:
+        """Find temperature and pressure; let what has condensed drip away."""
+        t, p = settle(
+            self.volume, self.wall, self.mass, self.energy, self.temperature, self.air
+        )
+        self.temperature, self.pressure = t, p
+        if t > T_SATURATION_MAX or self.mass <= 0.0:
+            return
+        p_sat, rho_l, rho_v, h_l, _ = engine().saturation(t)
+        density = self.mass / self.volume
+        if rho_v < density < rho_l:
+            drip = (self.mass - rho_v * self.volume) / (1.0 - rho_v / rho_l)
+            self.mass -= drip
+            self.volume -= drip / rho_l
+            self.energy -= drip * (h_l - p_sat / rho_l)
+
+
+def slow_filling(source: Adiabatic, receiver: Vessel, line_kg: float, most_kg: float) -> list[Mark]:
+    """March the cautious limit to equal pressures or to the end of the supply's liquid.
+
+    Parameters
+    ----------
+    source : Adiabatic, the supply bottle's path [-]
+    receiver : Vessel, the bottle to fill at its start [-]
+    line_kg : float, what the line took first [kg]
+    most_kg : float, most that can go over [kg]
+
+    Returns
+    -------
+    list of Mark, from the start to the end; the last one says where it ended [-]
+
+    Assumptions
+    -----------
+    As the head of this module says: first order in its step, steps growing from small ones
+    because the first vapour raises the pressure fastest.
+
+    Valid for
+    ---------
+    Bottles between -40 °C and 52 °C.
+
+    Raises
+    ------
+    NoSolution
+        Where the supply's path can't be followed.
+
+    References
+    ----------
+    Mass and energy balances, any text on thermodynamics; the split into liquid, vapour and
+    wall is this project's own.
+    """
+    above = _Above(receiver)
+    moved = 0.0
+    given = source.after(line_kg)
+    surplus = given.pressure_pa - above.pressure
+    marks = [Mark(0.0, above.temperature, above.pressure, surplus)]
+    end = min(most_kg, source.dry_out() - line_kg)
+    if surplus <= 0.0 or end <= 0.0:
+        return marks
+    scale = min(end, receiver.volume_m3 * 900.0)
+    step = _FIRST * scale
+    floor = 1e-4 * receiver.volume_m3
+    while moved < end:
+        step = min(step, end - moved)
+        middle = source.after(line_kg + moved + 0.5 * step)
+        stays, density, h_v = _parted(middle.outlet_j_kg, above.pressure)
+        grown = stays * step / density
+        if above.volume - grown <= floor:
+            break
+        above.energy += (step - stays * step) * h_v + above.pressure * grown
+        above.mass += step - stays * step
+        above.volume -= grown
+        above.settle()
+        moved += step
+        given = source.after(line_kg + moved)
+        surplus = given.pressure_pa - above.pressure
+        marks.append(Mark(moved, above.temperature, above.pressure, surplus))
+        if surplus <= 0.0:
+            break
+        step = min(step * 1.5, scale / _STEPS)
+    return marks
+
+
+def _parted(enthalpy: float, pressure: float) -> tuple[float, float, float]:
+    """Share that stays liquid on arriving, that liquid's density, the vapour's enthalpy."""
+    fluid = engine()
+    if pressure >= P_CRITICAL:
+        t = T_SATURATION_MAX
+    elif pressure <= P_TRIPLE:
+        t = T_TRIPLE
+    else:
+        t = fluid.boiling_temperature(pressure)
+    _, rho_l, _, h_l, h_v = fluid.saturation(t)
+    share = (h_v - enthalpy) / (h_v - h_l)
+    return min(max(share, 0.0), 1.0), rho_l, max(h_v, enthalpy)
