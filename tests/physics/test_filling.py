@@ -1,5 +1,6 @@
 """The fill limit is a ratio times the water that the rule set means, down to the gram."""
 
+from collections.abc import Callable
 from fractions import Fraction
 
 import pytest
@@ -63,9 +64,7 @@ def test_the_pound_of_water_of_49_cfr_is_water_at_60_fahrenheit_weighed_in_air()
         (1, "0.68", US_WATER, 0),
     ],
 )
-def test_worked_limits(
-    capacity: int, ratio: Fraction | str, water: WaterDefinition, limit: int
-) -> None:
+def test_worked_limits(capacity: int, ratio: Fraction | str, water: WaterDefinition, limit: int) -> None:
     assert filling_limit_g(capacity, ratio, water) == limit
 
 
@@ -88,17 +87,13 @@ def test_the_limit_is_never_above_the_exact_figure_and_less_than_a_gram_below(
 
 @FEW
 @given(charge=st.integers(1, 500_000), ratio=RATIOS, water=WATERS)
-def test_an_inferred_capacity_gives_the_labelled_charge_again(
-    charge: int, ratio: str, water: WaterDefinition
-) -> None:
+def test_an_inferred_capacity_gives_the_labelled_charge_again(charge: int, ratio: str, water: WaterDefinition) -> None:
     assert filling_limit_g(inferred_capacity_ml(charge, ratio, water), ratio, water) == charge
 
 
 @FEW
 @given(water_g=st.integers(1, 500_000), water=WATERS)
-def test_a_capacity_from_water_never_holds_more_than_was_stamped(
-    water_g: int, water: WaterDefinition
-) -> None:
+def test_a_capacity_from_water_never_holds_more_than_was_stamped(water_g: int, water: WaterDefinition) -> None:
     capacity = capacity_of_water_ml(water_g, water)
     assert 0 <= water_g - capacity * water.g_per_ml < water.g_per_ml
 
@@ -127,7 +122,7 @@ def test_a_ratio_is_exact_or_a_mistake_in_the_program() -> None:
 
 @pytest.mark.parametrize("nothing", [0, -1])
 def test_nothing_has_no_limit(nothing: int) -> None:
-    refusals = [
+    refusals: list[tuple[Callable[[], int], str]] = [
         (lambda: filling_limit_g(nothing, "0.68", US_WATER), "capacity"),
         (lambda: capacity_of_water_ml(nothing, US_WATER), "capacity"),
         (lambda: inferred_capacity_ml(nothing, "0.68", US_WATER), "charge"),

@@ -327,16 +327,14 @@ STORED = {
 
 
 @pytest.fixture(scope="module")
-def pint_units() -> pint.UnitRegistry:
+def pint_units() -> "pint.UnitRegistry[Decimal]":
     return pint.UnitRegistry(non_int_type=Decimal)
 
 
 @pytest.mark.parametrize("unit", sorted(PINT))
-def test_an_independent_library_converts_alike(unit: str, pint_units: pint.UnitRegistry) -> None:
+def test_an_independent_library_converts_alike(unit: str, pint_units: "pint.UnitRegistry[Decimal]") -> None:
     kind = UNITS[unit].kind
-    for text in {"K": ("200", "293.15"), "MPa abs": ("1", "17.25")}.get(
-        unit, ("1", "17.25", "123.4")
-    ):
+    for text in {"K": ("200", "293.15"), "MPa abs": ("1", "17.25")}.get(unit, ("1", "17.25", "123.4")):
         theirs = pint_units.Quantity(Decimal(text), PINT[unit]).to(STORED[kind]).magnitude
         assert abs(parse(kind, text, unit).stored - theirs) <= Decimal("0.5001")
 
@@ -350,9 +348,7 @@ def test_every_unit_has_been_checked_outside() -> None:
 @pytest.mark.parametrize("unit", sorted(UNITS))
 @FEW
 @given(data=st.data())
-def test_shown_in_its_own_unit_and_typed_again_it_stores_the_same(
-    unit: str, data: st.DataObject
-) -> None:
+def test_shown_in_its_own_unit_and_typed_again_it_stores_the_same(unit: str, data: st.DataObject) -> None:
     kind = UNITS[unit].kind
     low, high, _ = LIMITS[kind]
     ambient = data.draw(st.one_of(st.integers(60_000, 105_000), st.floats(60_000, 105_000)))
@@ -371,22 +367,18 @@ def test_shown_in_its_own_unit_and_typed_again_it_stores_the_same(
     data=st.data(),
     number=st.decimals(0, 900, places=3),
 )
-def test_an_entry_shown_back_keeps_its_stored_number(
-    kind: str, data: st.DataObject, number: Decimal
-) -> None:
+def test_an_entry_shown_back_keeps_its_stored_number(kind: str, data: st.DataObject, number: Decimal) -> None:
     unit = data.draw(st.sampled_from([each for each in units_of(kind) if each != "lb oz"]))
     try:
         entry = parse(kind, f"{number} {unit}", unit)
     except QuantityError as refused:
-        assert refused.code in ("too_large", "too_hot", "too_cold")  # noqa: PT017
+        assert refused.code in ("too_large", "too_hot", "too_cold")
         return
     shown = in_own_unit(entry.stored, entry.unit, ambient_pa=AIR)
     assert parse(kind, shown, unit) == Entry(entry.stored, shown, entry.unit)
 
 
-@pytest.mark.parametrize(
-    ("text", "default"), [("12.4 lb", "kg"), ("24 lb 6 oz", "kg"), ("5.62 kg", "lb")]
-)
+@pytest.mark.parametrize(("text", "default"), [("12.4 lb", "kg"), ("24 lb 6 oz", "kg"), ("5.62 kg", "lb")])
 def test_an_entry_is_shown_back_as_short_as_it_was_typed(text: str, default: str) -> None:
     entry = parse_mass(text, default_unit=default)
     assert in_own_unit(entry.stored, entry.unit) == text
@@ -399,7 +391,7 @@ def test_any_text_is_understood_or_refused_with_a_code(text: str) -> None:
         try:
             entry = parse(kind, text, unit)
         except QuantityError as refused:
-            assert refused.code  # noqa: PT017
+            assert refused.code
         else:
             assert entry.typed == text
 
