@@ -38,9 +38,7 @@ class Specification:
 @functools.cache
 def specifications() -> Mapping[str, Specification]:
     """All known specifications by their code."""
-    text = (
-        resources.files("bottles.rules").joinpath("editions", "specifications.json").read_text("utf-8")
-    )
+    text = resources.files("bottles.rules").joinpath("editions", "specifications.json").read_text("utf-8")
     listed: dict[str, Specification] = {}
     for row in json.loads(text)["specifications"]:
         code = row["code"]

@@ -117,9 +117,7 @@ def read_stamp(typed: str, *, year_first: bool, today: datetime.date | None = No
     body, suffix = match[1].strip(), match[2]
     year, month, facility = _date(body, year_first, today)
     if month is not None and not 1 <= month <= months.MONTHS_A_YEAR:
-        raise StampError(
-            "no such month", f"There is no month {month}. Read the stamp again: month and year."
-        )
+        raise StampError("no such month", f"There is no month {month}. Read the stamp again: month and year.")
     if year < _EARLIEST_YEAR:
         raise StampError("no such year", f"{year} can't be a bottle's year. Read the stamp again.")
     stamp = DateStamp(
@@ -143,9 +141,7 @@ def _is_later(stamp: DateStamp, today: datetime.date) -> bool:
     return stamp.at > months.of_date(today)
 
 
-def _date(
-    body: str, year_first: bool, today: datetime.date | None
-) -> tuple[int, int | None, str | None]:
+def _date(body: str, year_first: bool, today: datetime.date | None) -> tuple[int, int | None, str | None]:
     """Year, month and facility of a stamp without its suffix."""
     if match := _BOXED.fullmatch(body):
         return (*_month_then_year(match[1], match[3], today), _boxed(match[2]))
@@ -161,17 +157,13 @@ def _date(
     raise _not_a_stamp()
 
 
-def _month_then_year(
-    first: str, second: str, today: datetime.date | None
-) -> tuple[int, int | None]:
+def _month_then_year(first: str, second: str, today: datetime.date | None) -> tuple[int, int | None]:
     if len(first) == 4:
         return int(first), int(second)
     return _full_year(second, today), int(first)
 
 
-def _two_numbers(
-    first: str, second: str, year_first: bool, today: datetime.date | None
-) -> tuple[int, int | None]:
+def _two_numbers(first: str, second: str, year_first: bool, today: datetime.date | None) -> tuple[int, int | None]:
     if 3 in (len(first), len(second)) or (len(first) == 4 and len(second) == 4):
         raise _not_a_stamp()
     if len(first) == 4:
