@@ -311,3 +311,10 @@ def test_numbers_are_written_with_a_true_minus_and_enough_decimals() -> None:
     assert decimals_for(0, 4.61) == 2
     assert decimals_for(0, 2000) == 0
     assert decimals_for(3, 3) == 2
+
+
+def test_an_empty_axis_runs_from_nothing_upwards() -> None:
+    words = [each.words for each in lay_out(EMPTY).shapes if isinstance(each, Text)]
+    assert "0.0" in words
+    assert "1.0" in words
+    assert not [each for each in words if each.startswith(("−", "0001"))]

@@ -310,13 +310,10 @@ def stop_reading(
     """
     if scale_pm_g < 0:
         raise OutOfRange("uncertainty", "A ± can't be below zero. Check the scale's figures.")
-    stop = grams_not_above(
-        max(0, tare_g + target_g - scale_pm_g + hose_pull_g), style, resolution_g
-    )
+    stop = grams_not_above(max(0, tare_g + target_g - scale_pm_g + hose_pull_g), style, resolution_g)
     if stop - hose_pull_g <= tare_g:
         raise Contradiction(
             "no_room",
-            "This scale is too coarse for this fill: its ± is as much as the fill itself."
-            " Use a finer scale.",
+            "This scale is too coarse for this fill: its ± is as much as the fill itself. Use a finer scale.",
         )
     return stop

@@ -31,7 +31,7 @@ def lay_out(chart: Chart, *, width: float = 640, height: float = 320) -> Drawing
         right=width - size,
         bottom=height - 3.2 * size,
     )
-    longest = len("2026-12-31") if chart.x.kind == "day" else 7
+    longest = len("2026-12-31") if chart.x.kind == "day" else 5
     x = _scale(chart, "x", max(2, int((frame.right - left) / (size * _LETTER * longest * 1.5))))
     place = _Place(frame, x, y)
     shapes: list[Shape] = [
@@ -98,12 +98,12 @@ def _scale(chart: Chart, name: str, count: int) -> Scale:
     axis: Axis = chart.x if name == "x" else chart.y
     values = _values(chart, name)
     low = axis.low if axis.low is not None else min(values, default=axis.high or 0.0)
-    high = axis.high if axis.high is not None else max(values, default=low)
+    high = axis.high if axis.high is not None else max(values, default=low + 1)
     if low > high:  # one end is given and all values lie beyond it
         low, high = (low, low) if axis.low is not None else (high, high)
     if axis.kind == "day":
         # No day is known at all: an axis without dates rather than one of the year 1.
-        return day_scale(low, high, count) if high > 0 else Scale(0, 1, ())
+        return day_scale(low, high, count) if low > 0 else Scale(0, 1, ())
     # An x axis keeps its ends: half of it left empty would tell of hours that weren't.
     return number_scale(
         low,

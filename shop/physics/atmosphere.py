@@ -38,9 +38,7 @@ def ambient_pressure(height_m: float) -> float:
     (NOAA-S/T 76-1562), equation 33a.
     """
     if not -2_000 <= height_m <= 11_000:
-        raise OutOfRange(
-            "height", "The height above the sea must lie between −2 000 and 11 000 m. Check it."
-        )
+        raise OutOfRange("height", "The height above the sea must lie between −2 000 and 11 000 m. Check it.")
     # g0 M / (R* L) with the constants of the 1976 standard, whose R* is 8314.32 J/(kmol K).
     exponent = 9.80665 * 28.9644 / (8314.32 * 0.0065)
     return float(101_325.0 * (1.0 - 0.0065 * height_m / 288.15) ** exponent)

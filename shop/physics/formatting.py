@@ -190,9 +190,7 @@ def format_temperature(
     return _with_unit(value_in(millikelvin, unit), unit, step, plus_minus_mk)
 
 
-def format_volume(
-    millilitres: int, unit: str, *, step: str | None = None, plus_minus_ml: int | None = None
-) -> str:
+def format_volume(millilitres: int, unit: str, *, step: str | None = None, plus_minus_ml: int | None = None) -> str:
     """Write a volume.
 
     Parameters
@@ -231,9 +229,7 @@ def format_volume(
     return _with_unit(value_in(millilitres, unit), unit, step, plus_minus_ml)
 
 
-def format_length(
-    micrometres: int, unit: str, *, step: str | None = None, plus_minus_um: int | None = None
-) -> str:
+def format_length(micrometres: int, unit: str, *, step: str | None = None, plus_minus_um: int | None = None) -> str:
     """Write a length; decimal inches below one without their leading zero (.036 in).
 
     Parameters

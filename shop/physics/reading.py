@@ -105,17 +105,11 @@ def number_and_word(plain: str) -> tuple[Decimal, str]:
     head = _HEAD.fullmatch(plain)
     if head is None:
         if _NOT_FINITE.match(plain):
-            raise QuantityError(
-                "not_finite", "That is no finite number. Write what the scale or gauge shows."
-            )
-        raise QuantityError(
-            "not_a_number", f"“{plain}” doesn't begin with a number. Write a number and its unit."
-        )
+            raise QuantityError("not_finite", "That is no finite number. Write what the scale or gauge shows.")
+        raise QuantityError("not_a_number", f"“{plain}” doesn't begin with a number. Write a number and its unit.")
     sign, digits, word = head.groups()
     if _EXPONENT.match(word):
-        raise QuantityError(
-            "exponent", "Powers of ten aren't taken. Write the number out in full, with its unit."
-        )
+        raise QuantityError("exponent", "Powers of ten aren't taken. Write the number out in full, with its unit.")
     value = _number(digits)
     return (-value if sign == "-" else value), word.strip()
 
@@ -157,9 +151,7 @@ def pounds_and_ounces(plain: str) -> tuple[Decimal, Decimal] | None:
     sign, first, second = match.groups()
     pounds, ounces = _number(first), _number(second)
     if sign == "-":
-        raise QuantityError(
-            "negative", "A weight can't be below zero. Zero the scale and weigh again."
-        )
+        raise QuantityError("negative", "A weight can't be below zero. Zero the scale and weigh again.")
     if pounds != pounds.to_integral_value():
         raise QuantityError(
             "pounds_not_whole",
@@ -176,9 +168,7 @@ def pounds_and_ounces(plain: str) -> tuple[Decimal, Decimal] | None:
 def _number(digits: str) -> Decimal:
     commas = digits.count(",")
     if commas > 1 or (commas and "." in digits):
-        raise QuantityError(
-            "grouped", f"Write {digits} without marks between the thousands, and one decimal point."
-        )
+        raise QuantityError("grouped", f"Write {digits} without marks between the thousands, and one decimal point.")
     if commas:
         before, after = digits.split(",")
         if len(after) == 3:
@@ -189,7 +179,5 @@ def _number(digits: str) -> Decimal:
             )
         digits = f"{before}.{after}"
     if not _PLAIN.fullmatch(digits):
-        raise QuantityError(
-            "not_a_number", f"“{digits}” isn't one number. Write a number and its unit."
-        )
+        raise QuantityError("not_a_number", f"“{digits}” isn't one number. Write a number and its unit.")
     return Decimal(digits)

@@ -332,9 +332,7 @@ def _parse(
     number, word = reading.number_and_word(plain)
     unit = _named(word, kind) or default_unit
     if number < 0 and kind != "temperature" and not below_zero:
-        raise QuantityError(
-            "negative", f"A {WORDS[kind]} can't be below zero. Read it again and check the sign."
-        )
+        raise QuantityError("negative", f"A {WORDS[kind]} can't be below zero. Read it again and check the sign.")
     found = UNITS[unit]
     stored = round(Fraction(number) * found.factor + _zero(found, unit, ambient_pa))
     return Entry(_within(kind, stored, below_zero=below_zero), text, unit)
@@ -353,16 +351,10 @@ def _named(word: str, kind: str) -> str | None:
         return name
     known = ", ".join(each for each, unit in UNITS.items() if unit.kind == kind)
     if name is not None:
-        raise QuantityError(
-            "other_kind", f"{name} is no unit of {WORDS[kind]}. Write one of {known}."
-        )
+        raise QuantityError("other_kind", f"{name} is no unit of {WORDS[kind]}. Write one of {known}.")
     if re.search(r"[0-9]", word) and not re.search(r"[^\W\d_]", word[:1]):
-        raise QuantityError(
-            "more_than_one", f"“{word}” follows the first number. Write one number and its unit."
-        )
-    raise QuantityError(
-        "unknown_unit", f"“{word}” isn't a unit known for a {WORDS[kind]}. Write one of {known}."
-    )
+        raise QuantityError("more_than_one", f"“{word}” follows the first number. Write one number and its unit.")
+    raise QuantityError("unknown_unit", f"“{word}” isn't a unit known for a {WORDS[kind]}. Write one of {known}.")
 
 
 def _within(kind: str, stored: int, *, below_zero: bool = False) -> int:
@@ -373,9 +365,7 @@ def _within(kind: str, stored: int, *, below_zero: bool = False) -> int:
         code = "too_hot" if kind == "temperature" else "too_large"
     else:
         return stored
-    raise QuantityError(
-        code, f"A {WORDS[kind]} must lie between {between}. Check the figure and its unit."
-    )
+    raise QuantityError(code, f"A {WORDS[kind]} must lie between {between}. Check the figure and its unit.")
 
 
 def _unit(name: str) -> Unit:

@@ -21,9 +21,7 @@ from shop.physics.units import value_in
 MassStyle = Literal["g", "kg", "lb", "oz", "lb oz", "lb-oz"]
 
 # Steps that scales count in. Ounces above one are halves of a pound, halved again.
-_DECIMAL_STEPS = [
-    Fraction(digit) * Fraction(10) ** power for power in range(-4, 4) for digit in (1, 2, 5)
-]
+_DECIMAL_STEPS = [Fraction(digit) * Fraction(10) ** power for power in range(-4, 4) for digit in (1, 2, 5)]
 _OUNCE_STEPS = [*map(Fraction, ("1/10", "1/5", "1/2")), *map(Fraction, (1, 2, 4, 8, 16))]
 
 # Shown where no scale says how fine (common practice, no source).

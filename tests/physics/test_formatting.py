@@ -80,9 +80,7 @@ def test_a_spread_is_rounded_up(style: MassStyle, resolution: int, spread: int, 
 
 @FEW
 @given(grams=st.integers(0, 200_000), style=st.sampled_from(STYLES), resolution=RESOLUTIONS)
-def test_a_weight_shown_is_within_half_a_step_of_the_truth(
-    grams: int, style: MassStyle, resolution: int
-) -> None:
+def test_a_weight_shown_is_within_half_a_step_of_the_truth(grams: int, style: MassStyle, resolution: int) -> None:
     again = parse_mass(format_mass(grams, style, resolution), default_unit="kg").stored
     # Steps that scales have grow by 2.5 at most; a resolution may be a rounded step.
     assert abs(again - grams) <= Fraction(5, 4) * (resolution + 1) + 1
@@ -102,26 +100,20 @@ def test_a_weight_shown_is_within_half_a_step_of_the_truth(
         (11030, "g", 20, "11020 g"),
     ],
 )
-def test_a_reading_to_stop_at_is_rounded_down(
-    grams: int, style: MassStyle, resolution: int, shown: str
-) -> None:
+def test_a_reading_to_stop_at_is_rounded_down(grams: int, style: MassStyle, resolution: int, shown: str) -> None:
     assert reading_not_above(grams, style, resolution) == shown
 
 
 @FEW
 @given(grams=st.integers(0, 200_000), style=st.sampled_from(STYLES), resolution=RESOLUTIONS)
-def test_the_reading_in_grams_is_never_above_and_settled(
-    grams: int, style: MassStyle, resolution: int
-) -> None:
+def test_the_reading_in_grams_is_never_above_and_settled(grams: int, style: MassStyle, resolution: int) -> None:
     down = grams_not_above(grams, style, resolution)
     assert grams - Fraction(5, 2) * (resolution + 1) - 1 <= down <= grams
     assert grams_not_above(down, style, resolution) == down
     # The words for it are the same before and after, so a page and a receipt agree.
     assert reading_not_above(down, style, resolution) == reading_not_above(grams, style, resolution)
     # And typing those words gives no more than the limit.
-    assert parse_mass(reading_not_above(grams, style, resolution), default_unit="kg").stored <= (
-        grams
-    )
+    assert parse_mass(reading_not_above(grams, style, resolution), default_unit="kg").stored <= (grams)
 
 
 def test_a_negative_limit_has_no_reading() -> None:
