@@ -58,10 +58,17 @@ class Outcome:
 class Transfer:
     """Two bottles joined; its limits share the supply's path and what the line takes."""
 
-    def __init__(self, source: Vessel, receiver: Vessel, line_volume_m3: float = 0.0) -> None:
-        """Fix both bottles at rest, and fill the line from the supply."""
+    def __init__(
+        self,
+        source: Vessel,
+        receiver: Vessel,
+        line_volume_m3: float = 0.0,
+        *,
+        path: Adiabatic | None = None,
+    ) -> None:
+        """Fix both bottles at rest, and fill the line from the supply; a path may be shared."""
         self.source, self.receiver = source, receiver
-        self.path = Adiabatic(source)
+        self.path = path or Adiabatic(source)
         self.line_kg = line_loss(source, line_volume_m3)
         self._wall = receiver.wall_j_k + 2.5 * receiver.air  # air's own heat, 5/2 R a mole
         self._energy = (
