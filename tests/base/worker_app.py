@@ -4,6 +4,10 @@ import time
 import uuid
 from typing import Any
 
+import django
+
+django.setup()  # Celery does this only after it has loaded its app
+
 from shop.base.jobs import Running, job_kind
 from shop.celery import app
 
