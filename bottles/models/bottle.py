@@ -35,6 +35,13 @@ class Bottle(models.Model):
         ("none", "no dip tube"),
         ("unknown", "unknown"),
     ]
+    HELD = [
+        ("", "not asked yet"),
+        ("nitrous", "nitrous oxide and nothing else"),
+        ("new", "nothing yet: new and clean"),
+        ("other", "something else"),
+        ("unknown", "nobody knows"),
+    ]
     USES = [("supply", "supply bottle"), ("car", "car bottle"), ("stock", "shop stock"), ("other", "other")]
 
     code = models.CharField(max_length=20, unique=True)
@@ -55,6 +62,9 @@ class Bottle(models.Model):
     permit = models.CharField(max_length=60, blank=True)
     permit_charge_g = models.PositiveIntegerField(null=True)
     permit_until = models.DateField(null=True)
+    permit_lists_nitrous = models.BooleanField(null=True)  # null: not looked up
+    own_limit_g = models.PositiveIntegerField(null=True)  # the shop's own figure for this bottle
+    last_held = models.CharField(max_length=8, choices=HELD, blank=True)  # before it first came here
     race_grade = models.BooleanField(null=True)  # with SO2; null: not known
     note = models.TextField(blank=True)
     retired_at = models.DateTimeField(null=True)

@@ -1,0 +1,194 @@
+"""Gather what the register knows of bottles into the facts that the rules judge.
+
+A fixed number of queries, however many bottles. What nobody recorded stays None: the rules
+ask for it, they never assume it.
+"""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Collection, Iterable, Sequence
+from dataclasses import dataclass, field
+from typing import Any
+
+from bottles.models import Bottle, Condition, Custody, Refill, RefillCheck, Stamp, Standing
+from bottles.rules.facts import Condition as Noted
+from bottles.rules.facts import Contents, Facts, Permit
+from bottles.rules.marks import read_mark
+from bottles.rules.stamps import DateStamp
+from shop.people.models import Consent
+from shop.rules.month import Month
+
+CONDEMNED = "condemned"
+WITHOUT_PRESSURE = "without pressure"
+HELD: dict[str, Contents] = {"nitrous": "nitrous oxide", "new": "nothing yet", "other": "other", "unknown": "unknown"}
+
+
+@dataclass(slots=True)
+class _Rows:
+    """What the tables hold of one bottle."""
+
+    standing: Standing | None = None
+    stamps: list[Stamp] = field(default_factory=list)
+    conditions: list[Condition] = field(default_factory=list)
+    consent: bool | None = None
+    open_refill: bool = False
+    came_back: Any = None  # when it last came in after having been out
+    left: Any = None  # when it last went out
+    stars: list[bool] = field(default_factory=list)  # of each refill: were the star's checks done
+
+
+def facts_of(bottles: Sequence[Bottle], *, star_items: Collection[str] = ()) -> dict[int, Facts]:
+    """Return the facts of each bottle by key; `star_items` are the look's items that a star asks for."""
+    rows = _read([bottle.pk for bottle in bottles], star_items)
+    return {bottle.pk: _facts(bottle, rows[bottle.pk]) for bottle in bottles}
+
+
+def _read(keys: list[int], star_items: Collection[str]) -> dict[int, _Rows]:
+    found: dict[int, _Rows] = {key: _Rows() for key in keys}
+    for standing in Standing.objects.filter(pk__in=keys).select_related("ownership", "custody", "tare", "weighing"):
+        found[standing.pk].standing = standing
+    for stamp in Stamp.objects.filter(bottle__in=keys, strike__isnull=True).order_by("id"):
+        found[stamp.bottle_id].stamps.append(stamp)
+    for condition in Condition.objects.filter(bottle__in=keys, end__isnull=True).order_by("id"):
+        found[condition.bottle_id].conditions.append(condition)
+    for key in Refill.objects.filter(bottle__in=keys, closed_at__isnull=True).values_list("bottle_id", flat=True):
+        found[key].open_refill = True
+    _read_journeys(found)
+    _read_consents(found)
+    _read_stars(found, star_items)
+    return found
+
+
+def _read_journeys(found: dict[int, _Rows]) -> None:
+    """When each bottle last left, and last came back: a weight from before that is stale."""
+    journeys = Custody.objects.filter(bottle__in=found.keys()).exclude(kind="moved").order_by("happened_at", "id")
+    out: set[int] = set()
+    for key, kind, at in journeys.values_list("bottle_id", "kind", "happened_at"):
+        if kind == "in":
+            if key in out:
+                found[key].came_back = at
+                out.discard(key)
+        else:
+            found[key].left = at
+            out.add(key)
+
+
+def _read_consents(found: dict[int, _Rows]) -> None:
+    owners: dict[int, list[_Rows]] = defaultdict(list)
+    for rows in found.values():
+        ownership = rows.standing.ownership if rows.standing else None
+        if ownership and ownership.customer_id:
+            owners[ownership.customer_id].append(rows)
+    consents = Consent.objects.filter(customer__in=owners.keys(), purpose="fill").order_by("on", "id")
+    for customer, given in consents.values_list("customer_id", "given"):
+        for rows in owners[customer]:
+            rows.consent = given
+
+
+def _read_stars(found: dict[int, _Rows], star_items: Collection[str]) -> None:
+    """For each refill of a star-stamped bottle since that stamp: whether the star's checks were done."""
+    starred = {
+        key: max(stamp.id for stamp in rows.stamps if stamp.star)
+        for key, rows in found.items()
+        if any(stamp.star and stamp.kind == "test" for stamp in rows.stamps)
+    }
+    if not starred or not star_items:
+        return
+    done: dict[int, set[str]] = defaultdict(set)
+    checks = RefillCheck.objects.filter(refill__bottle__in=starred, item__in=star_items, passed=True)
+    for refill, item in checks.values_list("refill_id", "item"):
+        done[refill].add(item)
+    since = {stamp.id: stamp for rows in found.values() for stamp in rows.stamps}
+    for refill in Refill.objects.filter(bottle__in=starred).exclude(ended_by="abandoned").order_by("id"):
+        stamp = since[starred[refill.bottle_id]]
+        opened = refill.opened_at
+        if (opened.year, opened.month) >= (stamp.year, stamp.month or 1):
+            found[refill.bottle_id].stars.append(done[refill.pk] >= set(star_items))
+
+
+def _facts(bottle: Bottle, rows: _Rows) -> Facts:
+    standing = rows.standing
+    codes = {condition.code for condition in rows.conditions}
+    made = [stamp for stamp in rows.stamps if stamp.kind == "made"]
+    tests = [stamp for stamp in rows.stamps if stamp.kind == "test"]
+    ownership = standing.ownership if standing else None
+    net, error = _weighed(rows)
+    return Facts(
+        mark=read_mark(bottle.mark) if bottle.mark else None,
+        wall=None if bottle.wall == "unknown" else bottle.wall,  # type: ignore[arg-type]
+        made=date_stamp(made[-1]) if made else None,
+        tests=tuple(date_stamp(stamp) for stamp in tests) if tests or made else None,
+        star_kept=all(rows.stars) if rows.stars else None,
+        service_life_end=min(_months(rows.stamps, "end"), default=None),
+        permit=_permit(bottle),
+        marks_legible=bool(bottle.mark and bottle.serial),
+        alloy_6351=("6351" in bottle.alloy) if bottle.alloy else None,
+        capacity_ml=bottle.capacity_ml,
+        capacity_basis="computed" if bottle.capacity_basis == "inferred" else "entered",
+        tare_known=bool(standing and standing.tare),
+        charge_g=bottle.charge_g,
+        own_limit_g=bottle.own_limit_g,
+        net_g=net,
+        net_plus_minus_g=error,
+        contents=_contents(bottle, standing),
+        owner=ownership.kind if ownership else None,  # type: ignore[arg-type]
+        consent=rows.consent,
+        condemned=CONDEMNED in codes or bottle.retired_at is not None,
+        conditions=tuple(
+            Noted(condition.code, condition.seen_on)
+            for condition in rows.conditions
+            if condition.code not in (CONDEMNED, WITHOUT_PRESSURE)
+        ),
+        pressure_kept=_pressure_kept(codes, net, error),
+        in_open_refill=rows.open_refill,
+        visual=max(_months(rows.stamps, "visual"), default=None),
+        disc=max(_months(rows.stamps, "disc"), default=None),
+    )
+
+
+def _weighed(rows: _Rows) -> tuple[int | None, int]:
+    """The last weight that still holds: none from before the bottle was out."""
+    weighing = rows.standing.weighing if rows.standing else None
+    if weighing is None:
+        return None, 0
+    gone = max((at for at in (rows.left, rows.came_back) if at is not None), default=None)
+    if gone is not None and weighing.happened_at < gone:
+        return None, 0
+    return weighing.net_g, weighing.error_g
+
+
+def _contents(bottle: Bottle, standing: Standing | None) -> Contents | None:
+    """What it last held: our own record once it was weighed here, else what was said of it."""
+    if bottle.last_held in ("other", "unknown"):
+        return HELD[bottle.last_held]
+    if standing and standing.weighing and standing.weighing.net_g > standing.weighing.error_g:
+        return "nitrous oxide"
+    return HELD.get(bottle.last_held)
+
+
+def _pressure_kept(codes: set[str], net: int | None, error: int) -> bool | None:
+    """Nitrous on the scale is pressure in the bottle; an empty one has to be looked at."""
+    if WITHOUT_PRESSURE in codes:
+        return False
+    return True if net is not None and net > error else None
+
+
+def _permit(bottle: Bottle) -> Permit | None:
+    if not bottle.permit:
+        return None
+    return Permit(
+        lists_nitrous=bottle.permit_lists_nitrous, expires=bottle.permit_until, charge_g=bottle.permit_charge_g
+    )
+
+
+def _months(stamps: Iterable[Stamp], kind: str) -> list[Month]:
+    return [date_stamp(stamp).at for stamp in stamps if stamp.kind == kind]
+
+
+def date_stamp(stamp: Stamp) -> DateStamp:
+    """Return a stamp's row as the rules take it."""
+    return DateStamp(
+        typed=stamp.typed, year=stamp.year, month=stamp.month, star=stamp.star, plus=stamp.plus,
+        facility=stamp.facility or None,
+    )
