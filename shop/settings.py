@@ -114,7 +114,7 @@ MIDDLEWARE = [
     "django.middleware.csrf.CsrfViewMiddleware",
     "django.contrib.auth.middleware.AuthenticationMiddleware",
     "django_otp.middleware.OTPMiddleware",
-    "django.contrib.auth.middleware.LoginRequiredMiddleware",
+    "shop.people.middleware.SignInFirst",
     "django.contrib.messages.middleware.MessageMiddleware",
     "django.middleware.clickjacking.XFrameOptionsMiddleware",
     "django_htmx.middleware.HtmxMiddleware",
@@ -178,6 +178,7 @@ AUTH_PASSWORD_VALIDATORS = [
 ]
 LOGIN_URL = "people:sign_in"
 LOGIN_REDIRECT_URL = "/"
+CSRF_FAILURE_VIEW = "shop.people.views.signing_in.csrf_failure"
 SESSION_ENGINE = "django.contrib.sessions.backends.db"
 SESSION_COOKIE_AGE = 12 * 60 * 60  # a working day
 OTP_TOTP_ISSUER = "Tarebook"
@@ -188,6 +189,7 @@ AXES_COOLOFF_TIME = 0.25  # hours
 AXES_LOCKOUT_PARAMETERS = [["username", "ip_address"]]
 AXES_RESET_ON_SUCCESS = True
 AXES_VERBOSE = False
+AXES_LOCKOUT_CALLABLE = "shop.people.views.signing_in.locked_out"
 
 # --- headers --------------------------------------------------------------------------------------
 

@@ -1,8 +1,10 @@
 """Every address of the shop."""
 
+from importlib.util import find_spec
+
 from django.contrib.auth.decorators import login_not_required
 from django.http import HttpRequest, HttpResponse
-from django.urls import path
+from django.urls import include, path
 
 
 @login_not_required
@@ -11,4 +13,11 @@ def healthz(request: HttpRequest) -> HttpResponse:
     return HttpResponse("open\n", content_type="text/plain")
 
 
-urlpatterns = [path("healthz", healthz, name="healthz")]
+urlpatterns = [
+    path("healthz", healthz, name="healthz"),
+    path("", include("shop.people.urls")),
+    path("", include("shop.cars.urls")),
+    path("", include("shop.rooms.urls")),
+]
+if find_spec("bottles.urls"):
+    urlpatterns.append(path("", include("bottles.urls")))

@@ -31,6 +31,7 @@ from shop.physics.units import ambient_pressure
 
 WRONG_CODES = 5  # in a row, then a pause
 PAUSE_S = 60
+WHY_KEPT = {"signed out": "You had been signed out.", "stale": "This page had become too old to be trusted."}
 
 
 class ActForm(forms.Form):
@@ -140,7 +141,7 @@ class ActView(View):
             return self.show(self.form())
         form = self.form(typed)
         form.is_valid()
-        messages.warning(request, "You had been signed out. What you typed is here and isn't saved yet: check it and save.")
+        messages.warning(request, f"{WHY_KEPT[typed.why]} What you typed is here and isn't saved yet: check it and save.")
         return self.show(form)
 
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
