@@ -42,9 +42,9 @@ def _warm(server: Any) -> None:
     while len(server.WORKERS) < server.num_workers:
         threading.Event().wait(0.2)
     threading.Event().wait(1.0)  # let the first page out before two cores are busy
-    from shop.physics.fluid import engine
+    from shop.physics.fluid import load
 
-    engine()
+    load()
     for pid in list(server.WORKERS):
         with suppress(ProcessLookupError):
             os.kill(pid, signal.SIGTERM)

@@ -13,6 +13,7 @@ from shop.base.errors import Refusal
 from shop.base.models import Job, Place
 from shop.base.running import Running
 
+
 @pytest.fixture
 def kind(monkeypatch):
     """Register a handler for the length of one test; returns the name of its kind."""

@@ -137,7 +137,8 @@ def test_a_new_shop_opens_keeps_everything_and_closes_without_a_trace(home, open
 def test_a_child_killed_outright_is_started_again_and_said_so(home, open_shop):
     shop = open_shop(*FLAGS).until_open()
     wait_for(lambda: len(children(shop.process.pid)) >= 6, "all children")
-    server = [pid for pid in children(shop.process.pid) if b"gunicorn" in Path(f"/proc/{pid}/cmdline").read_bytes()][0]
+    family = children(shop.process.pid)
+    server = next(pid for pid in family if b"gunicorn" in Path(f"/proc/{pid}/cmdline").read_bytes())
     os.kill(server, signal.SIGKILL)
     wait_for(lambda: "web server was started again" in shop.said(), "the web server")
     assert get(shop.address + "healthz") == 200
