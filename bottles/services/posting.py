@@ -6,6 +6,7 @@ Called inside an act's transaction, after its bottles are locked. Guarantees:
   balance; zero lines leave no movement;
 - what physically happened can always be recorded: where the books of a bottle hold less than
   what left it, the shortfall is booked in the same movement as found, from *unaccounted*;
+- a movement is reversed once, by `booking.reverse`, at the time of what it reverses;
 - balances are moved in order of account, after all bottles are locked, so that two postings
   can't wait for each other.
 """
@@ -91,8 +92,8 @@ def post(
     return movement
 
 
-def reverse(*, act: Act, movement: Movement, happened_at: datetime) -> Movement | None:
-    """Post the movement's lines the other way round, once.
+def reversed_moves(movement: Movement) -> list[Move]:
+    """Return a movement's lines the other way round, where it may be reversed (once, ever).
 
     Raises AlreadyReversed; NotReady for a reversal itself (a reversal isn't reversed: record
     what happened anew).
@@ -101,13 +102,10 @@ def reverse(*, act: Act, movement: Movement, happened_at: datetime) -> Movement 
         raise NotReady("A reversal isn't reversed. Record what happened as a new movement.", code="reversal of a reversal")
     if Movement.objects.filter(reverses=movement).exists():
         raise AlreadyReversed
-    moves = [
+    return [
         Move(source=line.target, target=line.source, grams=line.grams, origin=line.origin, error_g=line.error_g)
-        for line in movement.lines.select_related("source", "target")
+        for line in movement.lines.select_related("source__bottle", "target__bottle")
     ]
-    return post(
-        act=act, kind="reversal", happened_at=happened_at, moves=moves, refill=movement.refill, reverses=movement
-    )
 
 
 def _changes(moves: Sequence[Move]) -> dict[int, int]:
