@@ -11,6 +11,7 @@ import uuid
 from datetime import datetime
 
 from bottles.models import Bottle, Custody, Refill, Standing
+from bottles.services.cleaning import clean
 from bottles.services.locking import lock
 from bottles.services.standing import restate
 from shop.base import acts, clock
@@ -157,7 +158,7 @@ def _record(
         act=act, bottle=bottle, kind=kind, place=place, car=car, with_whom=with_whom, wanted=wanted,
         promised_at=promised_at, happened_at=happened_at or clock.now(),
     )
-    custody.full_clean()
+    clean(custody)
     custody.save()
     restate(bottle)
     return custody

@@ -6,7 +6,6 @@ from dataclasses import dataclass
 from typing import Any
 
 from django.http import HttpRequest
-from django.urls import reverse
 
 from bottles.models import Bottle, Standing
 from bottles.rules.fitness import Judgement
@@ -57,10 +56,11 @@ def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop
     answer = verdict(judgement)
     book = rulebook(shop)
     decides = [reason for reason in judgement.reasons if reason.severity != "explains" and "filling" in reason.about]
+    lines = (limit_line(judgement, words), due_line(judgement, book.edition.words), EMPTYING[judgement.may_be_emptied])
     return {
         "kind": answer.kind,
         "word": answer.word,
-        "lines": [line for line in (limit_line(judgement, words), due_line(judgement, book.edition.words), EMPTYING[judgement.may_be_emptied]) if line],
+        "lines": [line for line in lines if line],
         "reasons": decides,
         "others": [reason for reason in judgement.reasons if reason not in decides],
         "limits": [
@@ -71,7 +71,6 @@ def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop
         "not_judged": judgement.not_judged,
         "edition": book.edition.title,
         "edition_code": book.edition.code,
-        "acts": acts_for(bottle, standing, judgement),
     }
 
 
@@ -99,29 +98,3 @@ def first_reason(judgement: Judgement) -> Reason | None:
     """The reason to show where there is room for one."""
     return next((reason for reason in judgement.reasons if "filling" in reason.about and reason.code != "look-owed"), None)
 
-
-def acts_for(bottle: Bottle, standing: Standing, judgement: Judgement) -> list[dict[str, Any]]:
-    """What can be done next, the most likely first."""
-    if bottle.retired_at is not None:
-        return []
-    code = bottle.code
-
-    def link(name: str, word: str, *, main: bool = False) -> dict[str, Any]:
-        return {"url": reverse(f"bottles:{name}", args=[code]), "word": word, "main": main}
-
-    if not standing.is_in:
-        return [link("check_in", "Check in", main=True), link("condition_new", "Note damage")]
-    fills = judgement.may_be_filled in ("yes", "only after") and bottle.use != "supply"
-    acts = [link("weigh", "Weigh", main=not fills)]
-    if fills:
-        acts.append(link("fill", "Forecast and fill", main=True))
-    if bottle.use == "supply":
-        acts.append(link("deliver", "Delivered full"))
-        acts.append(link("return", "Return to supplier"))
-    acts += [
-        link("hand_over", "Hand over"),
-        link("move", "Move"),
-        link("wanted", "What it waits for"),
-        link("condition_new", "Note damage"),
-    ]
-    return acts

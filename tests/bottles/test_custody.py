@@ -1,0 +1,136 @@
+"""A bottle is in or out, and its place is always known."""
+
+from __future__ import annotations
+
+import uuid
+from datetime import timedelta
+from typing import Any
+
+import pytest
+
+from bottles.models import Custody, Standing
+from bottles.services import custody
+from shop.base import clock
+from shop.base.errors import AlreadyDone, NotReady
+from tests.factories import BottleFactory, PlaceFactory
+
+pytestmark = pytest.mark.django_db
+
+
+def took_in(bottle: Any, place: Any, **more: Any) -> Custody:
+    return custody.check_in(
+        key=more.pop("key", uuid.uuid4()), person=None, bottle=bottle, place=place, brought_by="R. Quill", **more
+    )
+
+
+def gave(bottle: Any, **more: Any) -> Custody:
+    values = {"key": uuid.uuid4(), "person": None, "kind": "out", "to_whom": "R. Quill", "limit_g": None} | more
+    return custody.hand_over(bottle=bottle, **values)
+
+
+def test_a_bottle_checked_in_stands_where_it_was_put(shop: Any) -> None:
+    bottle, place = BottleFactory(), PlaceFactory(name="rack B")
+    took_in(bottle, place, wanted="refill", promised_at=clock.now() + timedelta(hours=2))
+    standing = Standing.objects.get(bottle=bottle)
+    assert standing.is_in and standing.waits
+    assert standing.custody is not None and standing.custody.place == place
+
+
+def test_a_bottle_that_is_in_is_not_checked_in_again(shop: Any) -> None:
+    bottle, place = BottleFactory(), PlaceFactory()
+    took_in(bottle, place)
+    with pytest.raises(NotReady) as refusal:
+        took_in(bottle, place)
+    assert refusal.value.code == "in already"
+
+
+def test_the_same_form_twice_checks_in_once(shop: Any) -> None:
+    bottle, place, key = BottleFactory(), PlaceFactory(), uuid.uuid4()
+    took_in(bottle, place, key=key)
+    with pytest.raises(AlreadyDone):
+        took_in(bottle, place, key=key)
+    assert Custody.objects.filter(bottle=bottle).count() == 1
+
+
+def test_moving_keeps_what_it_waits_for(shop: Any) -> None:
+    bottle, freezer = BottleFactory(), PlaceFactory(kind="freezer")
+    took_in(bottle, PlaceFactory(), wanted="refill")
+    custody.move(key=uuid.uuid4(), person=None, bottle=bottle, place=freezer)
+    standing = Standing.objects.get(bottle=bottle)
+    assert standing.custody is not None and standing.custody.place == freezer
+    assert standing.custody.wanted == "refill" and standing.waits
+
+
+def test_a_bottle_that_is_out_is_not_moved(shop: Any) -> None:
+    bottle = BottleFactory()
+    with pytest.raises(NotReady) as refusal:
+        custody.move(key=uuid.uuid4(), person=None, bottle=bottle, place=PlaceFactory())
+    assert refusal.value.code == "not in"
+
+
+def test_handing_over_says_to_whom_and_clears_what_it_waited_for(shop: Any) -> None:
+    bottle = BottleFactory()
+    took_in(bottle, PlaceFactory(), wanted="refill")
+    gave(bottle, to_whom="Ines Quill")
+    standing = Standing.objects.get(bottle=bottle)
+    assert not standing.is_in and not standing.waits
+    assert standing.custody is not None and standing.custody.with_whom == "Ines Quill"
+
+
+def test_a_bottle_leaves_quarantine_only_with_a_reason(shop: Any) -> None:
+    bottle = BottleFactory()
+    took_in(bottle, PlaceFactory(kind="quarantine"))
+    with pytest.raises(NotReady) as refusal:
+        gave(bottle)
+    assert refusal.value.code == "quarantine" and refusal.value.field == "reason"
+    gave(bottle, reason="condemned, marked so, back to its owner")
+
+
+def test_a_retired_bottle_is_not_checked_in(shop: Any) -> None:
+    bottle = BottleFactory(retired_at=clock.now())
+    with pytest.raises(NotReady) as refusal:
+        took_in(bottle, PlaceFactory())
+    assert refusal.value.code == "retired"
+
+
+def test_what_happened_earlier_is_entered_with_its_own_time(shop: Any) -> None:
+    bottle = BottleFactory()
+    saturday = clock.now() - timedelta(days=2)
+    took_in(bottle, PlaceFactory(), happened_at=saturday)
+    gave(bottle)
+    late = PlaceFactory(name="cage")
+    # Entered last, but of before the hand-over: the bottle is still out.
+    with pytest.raises(NotReady):
+        custody.move(key=uuid.uuid4(), person=None, bottle=bottle, place=late, happened_at=saturday + timedelta(hours=1))
+    assert not Standing.objects.get(bottle=bottle).is_in
+
+
+def test_the_page_keeps_what_was_typed_when_it_refuses(shop: Any, front_desk: Any, client_of: Any) -> None:
+    bottle = BottleFactory()
+    answer = client_of(front_desk).post(
+        f"/b/{bottle.code}/check-in",
+        {"form_key": str(uuid.uuid4()), "brought_by": "R. Quill", "wanted": "refill", "place": "", "promised_at": "soon"},
+    )
+    assert answer.status_code == 422
+    assert b"R. Quill" in answer.content and b"soon" in answer.content
+    assert not Custody.objects.exists()
+
+
+def test_a_promise_in_the_wrong_year_is_refused(shop: Any, front_desk: Any, client_of: Any) -> None:
+    bottle, place = BottleFactory(), PlaceFactory()
+    answer = client_of(front_desk).post(
+        f"/b/{bottle.code}/check-in",
+        {"form_key": str(uuid.uuid4()), "brought_by": "R. Quill", "place": place.pk, "promised_at": "1999-01-01T10:00"},
+    )
+    assert answer.status_code == 422
+    assert answer.context["form"].errors.as_data()["promised_at"][0].code == "not a promise"
+
+
+def test_a_double_click_on_the_page_is_answered_with_the_bottle(shop: Any, front_desk: Any, client_of: Any) -> None:
+    bottle, place = BottleFactory(), PlaceFactory()
+    client, form = client_of(front_desk), {"form_key": str(uuid.uuid4()), "brought_by": "R. Quill", "place": place.pk}
+    first = client.post(f"/b/{bottle.code}/check-in", form)
+    second = client.post(f"/b/{bottle.code}/check-in", form)
+    assert first.status_code == second.status_code == 302
+    assert first.url == second.url == f"/b/{bottle.code}"
+    assert Custody.objects.filter(bottle=bottle).count() == 1
