@@ -8,7 +8,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from bottles.physics.vessel import Vessel, pressure_and_energy, settle
 from bottles.physics.wall_condensing import Mark, slow_filling
@@ -23,6 +23,7 @@ LIQUID_OUT = "source out of liquid"
 NO_DIFFERENCE = "no pressure difference"
 
 _RESOLUTION = 1e-7  # of the most that can go over
+_EMPTY = 1e-9  # kg: a supply bottle with nothing in it, so that it has a state
 _DENSEST = 1240.0  # kg/m3, liquid at the triple point
 
 
@@ -67,6 +68,8 @@ class Transfer:
         path: Adiabatic | None = None,
     ) -> None:
         """Fix both bottles at rest, and fill the line from the supply; a path may be shared."""
+        if source.net_kg < _EMPTY:
+            source = replace(source, net_kg=_EMPTY)
         self.source, self.receiver = source, receiver
         self.path = path or Adiabatic(source)
         self.line_kg = line_loss(source, line_volume_m3)

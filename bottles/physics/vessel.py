@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from shop.physics.errors import OutOfRange
-from shop.physics.fluid import P_MAX, T_MAX, T_TRIPLE, engine
+from shop.physics.fluid import P_MAX, T_MAX, T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.roots import find_root
 
 WALL_HEAT = {"aluminium": 896.0, "steel": 470.0}  # J/kg/K
@@ -130,7 +130,7 @@ def pressure_and_energy(
         quality = fluid.quality()
         space = volume
         if quality is not None:
-            space = quality * mass / fluid.saturation(temperature)[2]
+            space = quality * mass / fluid.saturation(min(temperature, T_SATURATION_MAX))[2]
         elif mass / volume > 452.0:
             space = 0.0
         pressure += air * temperature / max(space, 1e-6 * volume)

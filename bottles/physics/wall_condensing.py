@@ -46,10 +46,10 @@ class _Above:
             _, energy = fluid.pressure_energy(density, t)
             quality = fluid.quality()
             if quality is not None:
-                _, _, rho_v, _, h_v = fluid.saturation(t)
+                p, _, rho_v, _, h_v = fluid.saturation(min(t, T_SATURATION_MAX))
                 self.mass *= quality
                 self.volume = self.mass / rho_v if quality > 0.0 else 1e-6 * v
-                energy = h_v - fluid.saturation(t)[0] / rho_v
+                energy = h_v - p / rho_v
         self.energy = self.mass * energy + self.wall * t
         self.pressure = 0.0
         self.settle()
@@ -114,18 +114,28 @@ def slow_filling(source: Adiabatic, receiver: Vessel, line_kg: float, most_kg: f
         return marks
     scale = min(end, receiver.volume_m3 * 900.0)
     step = _FIRST * scale
+    rise = 0.0
     floor = 1e-4 * receiver.volume_m3
     while moved < end:
         step = min(step, end - moved)
         middle = source.after(line_kg + moved + 0.5 * step)
-        stays, density, h_v = _parted(middle.outlet_j_kg, above.pressure)
+        # Half a step ahead by the last step's slope: second order at no further call.
+        pressure = min(above.pressure + 0.5 * step * rise, middle.pressure_pa)
+        stays, density, h_v = _parted(middle.outlet_j_kg, pressure)
         grown = stays * step / density
-        if above.volume - grown <= floor:
-            break
-        above.energy += (step - stays * step) * h_v + above.pressure * grown
+        left = above.volume - grown
+        if grown > 0.3 * above.volume or above.mass + step > 1100.0 * left:
+            # What is above is all but gone: shorter steps, until the bottle is full of liquid.
+            step *= 0.5
+            if step < 1e-5 * scale or above.volume < floor:
+                break
+            continue
+        above.energy += (step - stays * step) * h_v + pressure * grown
         above.mass += step - stays * step
         above.volume -= grown
+        before = above.pressure
         above.settle()
+        rise = (above.pressure - before) / step
         moved += step
         given = source.after(line_kg + moved)
         surplus = given.pressure_pa - above.pressure

@@ -109,9 +109,14 @@ class Adiabatic:
     ) -> None:
         """Begin the stage that follows from a state and from how it was reached."""
         v, c, pickup = self._v, self._c, self._vessel.liquid_pickup
+        if isinstance(before, _OnePhase):  # the crossing may be found a hair above the dome
+            temperature = min(temperature, T_SATURATION_MAX)
         if temperature <= T_SATURATION_MAX:
             _, rho_l, rho_v, _, _ = engine().saturation(temperature)
             edge = 1e-6 * rho_v
+            dried = isinstance(before, _TwoPhase)
+            if dried:
+                mass = min(mass, rho_v * v)
             if rho_v + edge < mass / v < rho_l * (1.0 + 1e-6):
                 self._stages.append(_TwoPhase(v, c, mass, temperature, pickup))
                 return
@@ -165,10 +170,16 @@ class _TwoPhase:
 
             if liquid_left(T_TRIPLE) >= 0.0:
                 self._end = (0.0, T_TRIPLE)
-            elif liquid_left(top := self._top[1] - 1e-3) <= 0.0:
-                self._end = self._top
             else:
-                t = find_root(liquid_left, T_TRIPLE, top, tolerance=1e-7)
+                # A sliver of liquid may end just below the start; what gathers begins there.
+                start = self._top[1]
+                below = start - 1e-3
+                if liquid_left(below) > 0.0:
+                    t = find_root(liquid_left, T_TRIPLE, below, tolerance=1e-7)
+                elif liquid_left(start) > 0.0:
+                    t = find_root(liquid_left, below, start, tolerance=1e-9)
+                else:
+                    t = start
                 self._end = (saturation(t)[2] * self._v, t)
         return self._end
 
@@ -214,7 +225,7 @@ class _OnePhase:
         k2 = _one_phase_slope(v, c, m + 0.5 * dm, t + 0.5 * dm * k1)
         k3 = _one_phase_slope(v, c, m + 0.5 * dm, t + 0.5 * dm * k2)
         k4 = _one_phase_slope(v, c, m + dm, t + dm * k3)
-        new = (m + dm, t + dm * (k1 + 2.0 * (k2 + k3) + k4) / 6.0)
+        new = (m + dm, max(t + dm * (k1 + 2.0 * (k2 + k3) + k4) / 6.0, T_TRIPLE))
         self._nodes.append((*new, _one_phase_slope(v, c, *new)))
         if _room(v, *new) < 0.0:
             edge = find_root(
@@ -234,7 +245,8 @@ class _OnePhase:
         h = m1 - m0
         x = (left - m0) / h
         rise = x * x * (3.0 - 2.0 * x) * (t1 - t0)
-        return t0 + rise + h * (x * (1.0 - x) ** 2 * d0 + x * x * (x - 1.0) * d1)
+        curve = h * (x * (1.0 - x) ** 2 * d0 + x * x * (x - 1.0) * d1)
+        return max(t0 + rise + curve, T_TRIPLE)
 
     def state(self, left: float) -> tuple[float, float, float, float, bool]:
         """Temperature, pressure, energy, enthalpy of what leaves, liquid or not."""
