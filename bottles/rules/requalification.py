@@ -52,8 +52,11 @@ def requalify(
     if last is None:
         return found.with_reasons(say("no-stamp-read", "first", edition.rule("legible"), "filling"))
     if problem := _unusable(last, history, marked, edition, on):
-        # The date is still worked out where it can be, so that a misread stamp shows.
         found = found.with_reasons(problem)
+        if last.month is None:
+            # The month that a date would need isn't there. A misread one gives a date
+            # all the same, so that it shows.
+            return found
     found = _due(found, last, history, marked, edition, policy)
     if found.due is None or problem is not None:
         return found
@@ -201,6 +204,9 @@ def _due(
     if overlay is not None and by_overlay and (overlay.interval_months < interval or holds == found.kept):
         words = interval_in_words(overlay.interval_months)
         found = found.with_reasons(say("due-shortened", "explains", overlay.source, interval=words))
+    if holds == found.kept and history.star_kept:
+        # The ordinary interval may be read and the star's from memory: say which decided.
+        source = edition.rule("star")
     explained = say(
         "due-date",
         "explains",
