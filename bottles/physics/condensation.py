@@ -25,9 +25,7 @@ class Condensation:
     def __post_init__(self) -> None:
         """Refuse what lies outside of the limits."""
         if not (0.0 <= self.figure <= 1.0 and 0.0 <= self.deviation <= 1.0):
-            raise OutOfRange(
-                "condensation", "A condensation figure lies between 0 and 1. Check the figure."
-            )
+            raise OutOfRange("condensation", "A condensation figure lies between 0 and 1. Check the figure.")
 
     @property
     def is_prior(self) -> bool:
@@ -103,8 +101,5 @@ def band(wall_kg: float, mixed_kg: float, condensation: Condensation) -> tuple[f
     """
     likely = between(wall_kg, mixed_kg, condensation.figure)
     reach = _COVER * condensation.deviation
-    ends = [
-        between(wall_kg, mixed_kg, min(max(condensation.figure + sign * reach, 0.0), 1.0))
-        for sign in (-1.0, 1.0)
-    ]
+    ends = [between(wall_kg, mixed_kg, min(max(condensation.figure + sign * reach, 0.0), 1.0)) for sign in (-1.0, 1.0)]
     return likely - min(ends), max(ends) - likely

@@ -9,8 +9,6 @@ from shop.physics.errors import OutOfRange
 from shop.physics.fluid import (
     ATMOSPHERE,
     P_MAX,
-    RHO_CRITICAL,
-    T_CRITICAL,
     T_MAX,
     T_SATURATION_MAX,
     T_TRIPLE,
@@ -19,6 +17,7 @@ from shop.physics.fluid import (
     state_by_density_temperature,
 )
 from shop.physics.roots import find_root
+from shop.physics.states import RHO_CRITICAL, T_CRITICAL
 
 GAUGE_TOLERANCE = 2.07e5  # Pa: 30 psi, two needles' width of a common gauge (common practice)
 THERMOMETER_TOLERANCE = 1.0  # K (common practice)
@@ -144,9 +143,7 @@ def contents_from_reading(
     expected: float | None = None
     agrees: bool | None = None
     if net_kg is not None:
-        expected, low, high = _expected_band(
-            net_kg, scale_tolerance_kg, capacity_m3, temperature_k, low_t, high_t
-        )
+        expected, low, high = _expected_band(net_kg, scale_tolerance_kg, capacity_m3, temperature_k, low_t, high_t)
         agrees = low <= high_p and high >= low_p
         least, most = max(0.0, net_kg - scale_tolerance_kg), net_kg + scale_tolerance_kg
         overfull = most
@@ -309,9 +306,7 @@ def pressures_when_hot(
     return tuple(answers)
 
 
-def _check(
-    capacity_m3: float, temperature_k: float, pressure_pa: float, net_kg: float | None
-) -> None:
+def _check(capacity_m3: float, temperature_k: float, pressure_pa: float, net_kg: float | None) -> None:
     """Refuse what no bottle can be."""
     if not 0.0 < capacity_m3 < 1e3:
         raise OutOfRange("capacity", "A bottle's capacity is above nothing. Check it and its unit.")
@@ -336,9 +331,7 @@ def _vapour_pressure(temperature_k: float) -> float:
     return engine().pressure_energy(RHO_CRITICAL, temperature_k)[0]
 
 
-def _region(
-    temperature_k: float, low_p: float, high_p: float, low_t: float, high_t: float
-) -> str:
+def _region(temperature_k: float, low_p: float, high_p: float, low_t: float, high_t: float) -> str:
     """Region by the pressure's and the vapour pressure's intervals."""
     if temperature_k >= T_SATURATION_MAX:
         return "supercritical"

@@ -4,8 +4,7 @@ from __future__ import annotations
 
 _SENTENCES = {
     "liquid_unknown": (
-        "While any liquid is left, pressure and temperature can't tell how much. Weigh the "
-        "bottle to know."
+        "While any liquid is left, pressure and temperature can't tell how much. Weigh the bottle to know."
     ),
     "no_liquid": (
         "The gauge is below the vapour pressure at this temperature: no liquid is left, or a "
@@ -29,8 +28,7 @@ _SENTENCES = {
         "cool and bring it down to its limit, weighing as you go."
     ),
     "full_of_liquid": (
-        "At this temperature the bottle is full of liquid: each degree more adds several bar. "
-        "Don't warm it."
+        "At this temperature the bottle is full of liquid: each degree more adds several bar. Don't warm it."
     ),
     "reads_above_weight": (
         "The gauge is above what this weight should show at this temperature: air or push gas "
@@ -42,8 +40,7 @@ _SENTENCES = {
         "colder than read, or the weight, tare or gauge is wrong. Read and weigh again."
     ),
     "near_critical": (
-        "Between 34.5 °C and 39.5 °C, near the critical point, masses from pressure are rough. "
-        "Go by weight."
+        "Between 34.5 °C and 39.5 °C, near the critical point, masses from pressure are rough. Go by weight."
     ),
     "too_hot": (
         "The bottle is above 52 °C, which no bottle may reach. Take away the heat, keep clear "

@@ -144,7 +144,7 @@ def forecast(
     ----------
     This project's own model on Lemmon and Span, J. Chem. Eng. Data 51 (2006) 785-850.
     """
-    start, tolerances = start or Start(), tolerances or Tolerances()
+    begins, tolerances = start or Start(), tolerances or Tolerances()
     _check(limit_kg, line_volume_m3, source_range_kg)
 
     def receiver_at(temperature_k: float) -> Vessel:
@@ -152,21 +152,18 @@ def forecast(
             volume_m3=receiver_volume_m3,
             wall_j_k=receiver_wall_j_k,
             temperature_k=temperature_k,
-            start=start,
+            start=begins,
         )
 
     receiver = receiver_at(receiver_temperature_k)
-    unsure = _unsure_start(start, receiver, tolerances)
-    if start.kind != VENTED and start.net_kg is None:
+    unsure = _unsure_start(begins, receiver, tolerances)
+    if begins.kind != VENTED and begins.net_kg is None:
         # Chilled before filling, a bottle keeps what it holds; only venting follows it down.
-        start = replace(start, net_kg=receiver.net_kg)
+        begins = replace(begins, net_kg=receiver.net_kg)
     room = max(limit_kg - receiver.net_kg, 0.0)
-    codes = _standing_codes(source, receiver, start, room, condensation)
+    codes = _standing_codes(source, receiver, begins, room, condensation)
     ends = source_range_kg or (source.net_kg, source.net_kg)
-    transfers = [
-        Transfer(replace(source, net_kg=net), receiver, line_volume_m3)
-        for net in dict.fromkeys(ends)
-    ]
+    transfers = [Transfer(replace(source, net_kg=net), receiver, line_volume_m3) for net in dict.fromkeys(ends)]
     bands = [_band(each, room, condensation, tolerances, unsure) for each in transfers]
     least = _least_source(transfers[-1], limit_kg, line_volume_m3)
     if source_range_kg is not None:
@@ -211,18 +208,14 @@ def forecast(
     )  # fmt: skip
 
 
-def _check(
-    limit_kg: float, line_volume_m3: float, source_range_kg: tuple[float, float] | None
-) -> None:
+def _check(limit_kg: float, line_volume_m3: float, source_range_kg: tuple[float, float] | None) -> None:
     """Refuse what no refill can be."""
     if not 0.0 < limit_kg < 1e6:
         raise OutOfRange("limit", "A fill limit is above nothing. Check it and its unit.")
     if not 0.0 <= line_volume_m3 < 1.0:
         raise OutOfRange("line", "A line's volume can't be below nothing. Check it and its unit.")
     if source_range_kg and not 0.0 <= source_range_kg[0] <= source_range_kg[1]:
-        raise OutOfRange(
-            "source_range", "The least in the supply bottle is above the most. Check the reading."
-        )
+        raise OutOfRange("source_range", "The least in the supply bottle is above the most. Check the reading.")
 
 
 def _standing_codes(
@@ -258,9 +251,7 @@ def _reaches(room: float, low: float, likely: float | None, high: float) -> str:
     return "no" if room > 0.0 else "already"
 
 
-def _unsure_start(
-    start: Start, receiver: Vessel, tolerances: Tolerances
-) -> tuple[str, float]:
+def _unsure_start(start: Start, receiver: Vessel, tolerances: Tolerances) -> tuple[str, float]:
     """Reading or assumption behind the receiver's start, and its tolerance in mass."""
     if start.kind == VENTED:
         return "receiver start", receiver.net_kg  # an atmosphere more (common practice)
@@ -293,9 +284,7 @@ def _band(
     readings = sum(part * part for _, part in parts)
     low = likely - sqrt(below * below + readings)
     high = likely + sqrt(above * above + readings)
-    width = sorted(
-        [("condensation", max(below, above)), *parts], key=lambda part: part[1], reverse=True
-    )
+    width = sorted([("condensation", max(below, above)), *parts], key=lambda part: part[1], reverse=True)
     low, likely, high = (min(max(mass, 0.0), room) for mass in (low, likely, high))
     # Where every case is full there is no width to explain.
     return _Band(low, likely, high, tuple(width) if high > low else ())

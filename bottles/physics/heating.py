@@ -80,7 +80,7 @@ def room_loss(volume_m3: float) -> float:
     ----------
     Common practice, no source.
     """
-    diameter = (volume_m3 / pi) ** (1.0 / 3.0)
+    diameter = float((volume_m3 / pi) ** (1.0 / 3.0))
     return ROOM_TRANSFER * 4.5 * pi * diameter * diameter
 
 
@@ -212,9 +212,7 @@ def heat_to_pressure(
         target = find_root(surplus, start, T_MAX, tolerance=1e-6)
         energy = _energy(vessel, target) - _energy(vessel, start)
         loss = room_loss(volume) if loss_w_k is None else loss_w_k
-        seconds = seconds_to_reach(
-            vessel, target, ambient_k=ambient_k, loss_w_k=loss, watts=watts
-        )
+        seconds = seconds_to_reach(vessel, target, ambient_k=ambient_k, loss_w_k=loss, watts=watts)
         if seconds is None:
             codes.append("never_gets_there")
     one_phase, becomes = _one_phase(net, volume)
@@ -231,9 +229,7 @@ def heat_to_pressure(
     )  # fmt: skip
 
 
-def overfull(
-    vessel: Vessel, limit_kg: float, *, ambient_k: float, loss_w_k: float | None = None
-) -> Overfull:
+def overfull(vessel: Vessel, limit_kg: float, *, ambient_k: float, loss_w_k: float | None = None) -> Overfull:
     """How much must come out of a bottle, and how long until it is full of liquid.
 
     Parameters

@@ -9,17 +9,13 @@ _SENTENCES = {
         "or use a stronger heater made for bottles."
     ),
     "above_52": (
-        "That takes more than 52 °C, which no bottle may reach. Don't warm it so far; fill it "
-        "instead, by weight."
+        "That takes more than 52 °C, which no bottle may reach. Don't warm it so far; fill it instead, by weight."
     ),
     "full_of_liquid": (
         "On the way the bottle becomes full of liquid: from there each degree adds several "
         "bar. Stay with it and stop early."
     ),
-    "boils_dry": (
-        "On the way the last liquid boils off: from there pressure hardly rises. Refill the "
-        "bottle instead."
-    ),
+    "boils_dry": ("On the way the last liquid boils off: from there pressure hardly rises. Refill the bottle instead."),
     "near_critical": "Near and above 36.4 °C these figures are rough. Go by the gauge.",
 }
 

@@ -66,9 +66,7 @@ def start_vessel(
     Common practice, no source.
     """
     if start.kind not in STARTS or (start.kind == WEIGHED and start.net_kg is None):
-        raise OutOfRange(
-            "start", "Say how the bottle starts: vented, own vapour, air, or weighed with its net."
-        )
+        raise OutOfRange("start", "Say how the bottle starts: vented, own vapour, air, or weighed with its net.")
     bottle = Vessel(volume_m3, wall_j_k, 0.0, temperature_k)
     if start.kind == AIR:
         return replace(bottle, air=start.ambient_pa * volume_m3 / temperature_k)

@@ -137,9 +137,7 @@ class Transfer:
         at_high = self.surplus(high)
         if at_high > 0.0:
             return most
-        return find_root(
-            self.surplus, 0.0, high, tolerance=_RESOLUTION * most, at_low=start, at_high=at_high
-        )
+        return find_root(self.surplus, 0.0, high, tolerance=_RESOLUTION * most, at_low=start, at_high=at_high)
 
 
 def line_loss(source: Vessel, line_volume_m3: float) -> float:
@@ -297,9 +295,7 @@ def held(transfer: Transfer, limit_kg: float) -> Outcome:
     receiver, line = transfer.receiver, transfer.line_kg
 
     def receiver_pressure(moved: float) -> float:
-        return pressure_and_energy(
-            receiver.volume_m3, receiver.net_kg + moved, receiver.temperature_k, receiver.air
-        )[0]
+        return pressure_and_energy(receiver.volume_m3, receiver.net_kg + moved, receiver.temperature_k, receiver.air)[0]
 
     def even(moved: float) -> bool:
         return source.pressure(line + moved) <= receiver_pressure(moved) * (1.0 + 1e-12)

@@ -32,9 +32,7 @@ class Vessel:
     def __post_init__(self) -> None:
         """Refuse what no bottle can be."""
         if not 0.0 < self.volume_m3 < 1e3:
-            raise OutOfRange(
-                "capacity", "A bottle's capacity is above nothing. Check it and its unit."
-            )
+            raise OutOfRange("capacity", "A bottle's capacity is above nothing. Check it and its unit.")
         if not 0.0 <= self.wall_j_k < 1e9:
             raise OutOfRange("wall", "A wall's mass can't be below nothing. Check it and its unit.")
         if not 0.0 <= self.net_kg < 1e6:
@@ -88,9 +86,7 @@ def wall_heat(wall: str, mass_kg: float) -> float:
     return WALL_HEAT[wall] * mass_kg
 
 
-def pressure_and_energy(
-    volume: float, mass: float, temperature: float, air: float = 0.0
-) -> tuple[float, float]:
+def pressure_and_energy(volume: float, mass: float, temperature: float, air: float = 0.0) -> tuple[float, float]:
     """Pressure and energy of a bottle's contents.
 
     Parameters
@@ -206,6 +202,4 @@ def settle(
 
 def _pressure(vessel: Vessel) -> float:
     """Pressure at rest."""
-    return pressure_and_energy(
-        vessel.volume_m3, vessel.net_kg, vessel.temperature_k, vessel.air
-    )[0]
+    return pressure_and_energy(vessel.volume_m3, vessel.net_kg, vessel.temperature_k, vessel.air)[0]

@@ -56,9 +56,7 @@ class _Above:
 
     def settle(self) -> None:
         """Find temperature and pressure; let what has condensed drip away."""
-        t, p = settle(
-            self.volume, self.wall, self.mass, self.energy, self.temperature, self.air
-        )
+        t, p = settle(self.volume, self.wall, self.mass, self.energy, self.temperature, self.air)
         self.temperature, self.pressure = t, p
         if t > T_SATURATION_MAX or self.mass <= 0.0:
             return

@@ -12,8 +12,9 @@ from dataclasses import dataclass
 from bottles.physics.vessel import Vessel, pressure_and_energy
 from bottles.physics.withdrawal_table import Drain, withdrawal_table
 from shop.physics.errors import NoSolution
-from shop.physics.fluid import RHO_CRITICAL, T_SATURATION_MAX, T_TRIPLE, engine
+from shop.physics.fluid import T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.roots import find_root
+from shop.physics.states import RHO_CRITICAL
 
 _STEP = 0.12  # share of the mass that one step in one phase may take
 
@@ -57,8 +58,7 @@ class Adiabatic:
         self._vessel = vessel
         self._v, self._c = vessel.volume_m3, vessel.wall_j_k
         self._start = (
-            pressure_and_energy(self._v, vessel.net_kg, vessel.temperature_k)[1]
-            + self._c * vessel.temperature_k
+            pressure_and_energy(self._v, vessel.net_kg, vessel.temperature_k)[1] + self._c * vessel.temperature_k
         )
         self._stages: list[_TwoPhase | _OnePhase] = []
         self.dry_at_kg: float | None = None  # mass given when the liquid was out, once known
@@ -104,9 +104,7 @@ class Adiabatic:
                 stage = self._stages[-1]
         return self.dry_at_kg
 
-    def _open(
-        self, mass: float, temperature: float, before: _TwoPhase | _OnePhase | None
-    ) -> None:
+    def _open(self, mass: float, temperature: float, before: _TwoPhase | _OnePhase | None) -> None:
         """Begin the stage that follows from a state and from how it was reached."""
         v, c, pickup = self._v, self._c, self._vessel.liquid_pickup
         if isinstance(before, _OnePhase):  # the crossing may be found a hair above the dome
@@ -140,9 +138,7 @@ class Adiabatic:
 class _TwoPhase:
     """Liquid and vapour, one of which is drawn: closed, by the table."""
 
-    def __init__(
-        self, volume: float, wall: float, mass: float, temperature: float, liquid: bool
-    ) -> None:
+    def __init__(self, volume: float, wall: float, mass: float, temperature: float, liquid: bool) -> None:
         self._v, self._liquid = volume, liquid
         self._top = (mass, temperature)
         self._drain = Drain(withdrawal_table(liquid=liquid), volume, wall, mass, temperature)
@@ -185,10 +181,8 @@ class _TwoPhase:
 
     def state(self, left: float) -> tuple[float, float, float, float, bool]:
         """Temperature, pressure, energy, enthalpy of what leaves, liquid or not."""
-        if self._known[0] == left:
-            temperature = self._known[1]
-        else:
-            temperature = self._drain.temperature_at(left)
+        known = self._known[0] == left
+        temperature = self._known[1] if known else self._drain.temperature_at(left)
         p, rho_l, rho_v, h_l, h_v = engine().saturation(temperature)
         q = (h_v - h_l) / (1.0 / rho_v - 1.0 / rho_l)
         energy = left * (h_l - q / rho_l) + self._v * (q - p)
@@ -228,9 +222,11 @@ class _OnePhase:
         new = (m + dm, max(t + dm * (k1 + 2.0 * (k2 + k3) + k4) / 6.0, T_TRIPLE))
         self._nodes.append((*new, _one_phase_slope(v, c, *new)))
         if _room(v, *new) < 0.0:
-            edge = find_root(
-                lambda left: _room(v, left, self._temperature(left)), m + dm, m, tolerance=1e-9 * m
-            ) if _room(v, m, t) > 0.0 else m
+            edge = (
+                find_root(lambda left: _room(v, left, self._temperature(left)), m + dm, m, tolerance=1e-9 * m)
+                if _room(v, m, t) > 0.0
+                else m
+            )
             self._end = (edge, self._temperature(edge))
 
     def _temperature(self, left: float) -> float:

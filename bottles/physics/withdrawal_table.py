@@ -21,7 +21,8 @@ from math import exp
 import numpy as np
 from numpy.typing import NDArray
 
-from shop.physics.fluid import T_CRITICAL, T_SATURATION_MAX, T_TRIPLE, engine
+from shop.physics.fluid import T_SATURATION_MAX, T_TRIPLE, engine
+from shop.physics.states import T_CRITICAL
 
 _KNOTS = 640
 _TC = T_CRITICAL + 2.5e-7  # K, a hair above, so that s never meets nothing
@@ -83,9 +84,7 @@ class Drain:
 
     __slots__ = ("_c", "_g0", "_h0", "_m0", "_s0", "_table", "_v")
 
-    def __init__(
-        self, table: WithdrawalTable, volume: float, wall: float, mass: float, temperature: float
-    ) -> None:
+    def __init__(self, table: WithdrawalTable, volume: float, wall: float, mass: float, temperature: float) -> None:
         """Fix the start."""
         self._table = table
         self._v, self._c = volume, wall
@@ -246,9 +245,7 @@ def _build() -> tuple[WithdrawalTable, WithdrawalTable]:
 def _slope(y: _Array, step: float) -> _Array:
     """Slope by differences of sixth order, of second at the ends."""
     slope = np.gradient(y, step, edge_order=2)
-    slope[3:-3] = (
-        (y[6:] - y[:-6]) - 9.0 * (y[5:-1] - y[1:-5]) + 45.0 * (y[4:-2] - y[2:-4])
-    ) / (60.0 * step)
+    slope[3:-3] = ((y[6:] - y[:-6]) - 9.0 * (y[5:-1] - y[1:-5]) + 45.0 * (y[4:-2] - y[2:-4])) / (60.0 * step)
     return slope
 
 

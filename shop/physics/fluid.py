@@ -4,24 +4,28 @@ The only place that imports CoolProp, and only inside functions: loading it cost
 seconds, and most processes never need it. Every number is checked against the range
 of the equation before the call, because CoolProp answers quietly outside of it.
 
-Below all of this stand two ways in. The public functions return frozen records and
-name what they refuse. `engine` hands out the thread's own low-level state, with the
-few calls that balances make thousands of times; its answers are bare numbers.
+There are two ways in: public functions with frozen records that name what they refuse, and
+`engine`, the thread's own low-level state for what balances ask thousands of times.
 """
 
 from __future__ import annotations
 
 import threading
-from dataclasses import dataclass
 from typing import Any
 
 from shop.physics.errors import NoSolution, OutOfRange
+from shop.physics.states import (
+    DENSITY_RANGE,
+    NO_SATURATION,
+    PRESSURE_RANGE,
+    T_CRITICAL,
+    TEMPERATURE_RANGE,
+    Saturation,
+    State,
+)
 
 MOLAR_MASS = 0.0440128  # kg/mol
-# CoolProp's own critical point: where its two saturated densities meet numerically.
-T_CRITICAL = 309.520678  # K
 P_CRITICAL = 7.244816e6  # Pa
-RHO_CRITICAL = 452.9  # kg/m3
 T_TRIPLE = 182.33  # K
 P_TRIPLE = 87837.44  # Pa
 # The range of the equation of state as published.
@@ -32,54 +36,6 @@ ATMOSPHERE = 101325.0  # Pa
 T_SATURATION_MAX = T_CRITICAL - 1e-4  # K
 _DENSITY_MIN = 1e-6  # kg/m3, as good as evacuated
 _DENSITY_MAX = 1400.0  # kg/m3, beyond any state in range
-
-
-@dataclass(frozen=True, slots=True)
-class Saturation:
-    """Liquid and vapour side by side at one temperature."""
-
-    temperature_k: float
-    pressure_pa: float
-    liquid_density: float
-    vapour_density: float
-    liquid_enthalpy: float
-    vapour_enthalpy: float
-
-    @property
-    def liquid_energy(self) -> float:
-        """Internal energy of the liquid [J/kg]."""
-        return self.liquid_enthalpy - self.pressure_pa / self.liquid_density
-
-    @property
-    def vapour_energy(self) -> float:
-        """Internal energy of the vapour [J/kg]."""
-        return self.vapour_enthalpy - self.pressure_pa / self.vapour_density
-
-    @property
-    def latent_heat(self) -> float:
-        """Heat that evaporates a kilogram [J/kg]."""
-        return self.vapour_enthalpy - self.liquid_enthalpy
-
-
-@dataclass(frozen=True, slots=True)
-class State:
-    """One state of equilibrium; `quality` is None where there is one phase only."""
-
-    temperature_k: float
-    pressure_pa: float
-    density: float
-    energy: float
-    enthalpy: float
-    quality: float | None
-
-    @property
-    def phase(self) -> str:
-        """Word for the state: two-phase, liquid, vapour or supercritical."""
-        if self.quality is not None:
-            return "two-phase"
-        if self.temperature_k >= T_CRITICAL:
-            return "supercritical"
-        return "liquid" if self.density > RHO_CRITICAL else "vapour"
 
 
 class _Engine:
@@ -104,7 +60,7 @@ class _Engine:
     def saturation(self, temperature: float) -> tuple[float, float, float, float, float]:
         """Pressure, densities and enthalpies (liquid, vapour) at saturation."""
         if not T_TRIPLE <= temperature <= T_SATURATION_MAX:
-            raise OutOfRange("no_saturation", _NO_SATURATION)
+            raise OutOfRange("no_saturation", NO_SATURATION)
         raw = self.raw
         raw.update(self._qt, 0.0, temperature)
         pressure, liquid, h_liquid = raw.p(), raw.rhomass(), raw.hmass()
@@ -114,16 +70,16 @@ class _Engine:
     def boiling_temperature(self, pressure: float) -> float:
         """Temperature of saturation at a pressure."""
         if not P_TRIPLE <= pressure < P_CRITICAL:
-            raise OutOfRange("no_saturation", _NO_SATURATION)
+            raise OutOfRange("no_saturation", NO_SATURATION)
         self.raw.update(self._pq, pressure, 0.0)
         return min(float(self.raw.T()), T_SATURATION_MAX)
 
     def pressure_energy(self, density: float, temperature: float) -> tuple[float, float]:
         """Pressure and internal energy, of a mixture in equilibrium where there are two phases."""
         if not T_TRIPLE <= temperature <= T_MAX:
-            raise OutOfRange("temperature_range", _TEMPERATURE_RANGE)
+            raise OutOfRange("temperature_range", TEMPERATURE_RANGE)
         if not density <= _DENSITY_MAX:
-            raise OutOfRange("density_range", _DENSITY_RANGE)
+            raise OutOfRange("density_range", DENSITY_RANGE)
         raw = self.raw
         raw.update(self._dt, density if density > _DENSITY_MIN else _DENSITY_MIN, temperature)
         return raw.p(), raw.umass()
@@ -158,21 +114,6 @@ class _Engine:
         self.raw.update(self._du, density, energy)
 
 
-_NO_SATURATION = (
-    "Liquid and vapour stand together only between -90.8 °C and 36.4 °C (0.88 to 72.4 bar "
-    "absolute). Check the temperature or the pressure and its unit."
-)
-_TEMPERATURE_RANGE = (
-    "Nitrous oxide can be computed between -90.8 °C and 252 °C. Check the temperature and its unit."
-)
-_PRESSURE_RANGE = (
-    "Nitrous oxide can be computed up to 500 bar. Such a pressure would have burst a safety "
-    "disc: check the figures and their units."
-)
-_DENSITY_RANGE = (
-    "That much nitrous oxide doesn't go into this volume. Check the weight and the capacity."
-)
-
 _local = threading.local()
 
 
@@ -203,11 +144,10 @@ def engine() -> _Engine:
     ----------
     Lemmon and Span, J. Chem. Eng. Data 51 (2006) 785-850; CoolProp, coolprop.org.
     """
-    try:
-        return _local.engine  # type: ignore[no-any-return]
-    except AttributeError:
-        _local.engine = _Engine()
-        return _local.engine  # type: ignore[no-any-return]
+    found: _Engine | None = getattr(_local, "engine", None)
+    if found is None:
+        found = _local.engine = _Engine()
+    return found
 
 
 def load() -> None:
@@ -363,10 +303,10 @@ def state_by_density_temperature(density: float, temperature_k: float) -> State:
     Lemmon and Span, J. Chem. Eng. Data 51 (2006) 785-850.
     """
     if not density > 0.0:
-        raise OutOfRange("density_range", _DENSITY_RANGE)
+        raise OutOfRange("density_range", DENSITY_RANGE)
     fluid = engine()
     if fluid.pressure_energy(density, temperature_k)[0] > P_MAX:
-        raise OutOfRange("pressure_range", _PRESSURE_RANGE)
+        raise OutOfRange("pressure_range", PRESSURE_RANGE)
     return fluid.state()
 
 
@@ -400,19 +340,15 @@ def state_by_density_energy(density: float, energy: float) -> State:
     Lemmon and Span, J. Chem. Eng. Data 51 (2006) 785-850.
     """
     if not 0.0 < density <= _DENSITY_MAX:
-        raise OutOfRange("density_range", _DENSITY_RANGE)
+        raise OutOfRange("density_range", DENSITY_RANGE)
     fluid = engine()
     # The ends first: outside of them the solver would answer with a state out of range.
-    if not (
-        fluid.pressure_energy(density, T_TRIPLE)[1]
-        <= energy
-        <= fluid.pressure_energy(density, T_MAX)[1]
-    ):
-        raise OutOfRange("temperature_range", _TEMPERATURE_RANGE)
+    if not (fluid.pressure_energy(density, T_TRIPLE)[1] <= energy <= fluid.pressure_energy(density, T_MAX)[1]):
+        raise OutOfRange("temperature_range", TEMPERATURE_RANGE)
     fluid.flash_energy(density, energy)
     state = fluid.state()
     if state.pressure_pa > P_MAX:
-        raise OutOfRange("pressure_range", _PRESSURE_RANGE)
+        raise OutOfRange("pressure_range", PRESSURE_RANGE)
     return state
 
 
@@ -448,9 +384,9 @@ def state_by_pressure_temperature(pressure_pa: float, temperature_k: float) -> S
     Lemmon and Span, J. Chem. Eng. Data 51 (2006) 785-850.
     """
     if not T_TRIPLE <= temperature_k <= T_MAX:
-        raise OutOfRange("temperature_range", _TEMPERATURE_RANGE)
+        raise OutOfRange("temperature_range", TEMPERATURE_RANGE)
     if not 0.0 < pressure_pa <= P_MAX:
-        raise OutOfRange("pressure_range", _PRESSURE_RANGE)
+        raise OutOfRange("pressure_range", PRESSURE_RANGE)
     fluid = engine()
     if temperature_k <= T_SATURATION_MAX:
         saturated = fluid.saturation(temperature_k)[0]

@@ -78,9 +78,7 @@ def find_root(
         xi = (x1 - x2) / (x3 - x2)
         phi = (f1 - f2) / (f3 - f2)
         if phi * phi < xi and (1.0 - phi) ** 2 < 1.0 - xi:
-            portion = f1 / (f2 - f1) * f3 / (f2 - f3) + (x3 - x1) / (x2 - x1) * f1 / (
-                f3 - f1
-            ) * f2 / (f3 - f2)
+            portion = f1 / (f2 - f1) * f3 / (f2 - f3) + (x3 - x1) / (x2 - x1) * f1 / (f3 - f1) * f2 / (f3 - f2)
         else:
             portion = 0.5
         edge = tolerance / width
@@ -88,9 +86,7 @@ def find_root(
     return 0.5 * (x1 + x2)
 
 
-def first_true(
-    predicate: Callable[[float], bool], low: float, high: float, *, tolerance: float
-) -> float:
+def first_true(predicate: Callable[[float], bool], low: float, high: float, *, tolerance: float) -> float:
     """Find where a predicate turns true, by halving: right on plateaus too.
 
     Parameters
