@@ -48,17 +48,17 @@ _CAR = {
     "dip": Lying(
         "In the car the tube's end lies at the low and rearward end: valve forward and higher, label up.",
         "Under acceleration liquid moves rearward; with the tube's end elsewhere the engine gets vapour.",
-        "In two brackets that hold without the ring of the valve.",
+        "Held by two brackets; its valve carries nothing.",
     ),
     "none": Lying(
         "In the car the valve end is the low and rearward end: without a tube only it gives liquid.",
         "Any other way the engine gets vapour.",
-        "In two brackets that hold without the ring of the valve.",
+        "Held by two brackets; its valve carries nothing.",
     ),
     "unknown": Lying(
         "Not known: weigh it and look at its label, or see at the next emptying whether there is a tube.",
         "Fitted the wrong way the engine gets vapour.",
-        "In two brackets that hold without the ring of the valve.",
+        "Held by two brackets; its valve carries nothing.",
     ),
 }
 _OTHER = {

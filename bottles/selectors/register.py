@@ -1,0 +1,123 @@
+"""Read the register: one bottle with what is told of it, and lists of bottles."""
+
+from __future__ import annotations
+
+from django.db.models import Exists, OuterRef, Q, QuerySet
+
+from bottles.models import Bottle, Condition, Custody, Ownership, Stamp, Standing, Tare
+from shop.base.models import Place
+
+STATES = [
+    ("in", "in the shop"),
+    ("waits", "waits for something"),
+    ("out", "out"),
+    ("stopped", "something is wrong with it"),
+    ("unweighed", "never weighed"),
+    ("incomplete", "to complete"),
+    ("retired", "retired"),
+]
+
+
+def standing_of(bottle: Bottle) -> Standing:
+    """The bottle's standing with all that its page shows; empty where nothing was told yet."""
+    found = (
+        Standing.objects.filter(bottle=bottle)
+        .select_related("ownership__customer", "custody__place", "custody__car", "tare", "weighing__scale")
+        .first()
+    )
+    return found or Standing(bottle=bottle)
+
+
+def stamps_of(bottle: Bottle) -> QuerySet[Stamp]:
+    """Every stamp ever read off it, the latest first, struck ones among them."""
+    return Stamp.objects.filter(bottle=bottle).select_related("strike__act__person", "act").order_by(
+        "kind", "-year", "-month", "-id"
+    )
+
+
+def tares_of(bottle: Bottle) -> QuerySet[Tare]:
+    """Its tares with their parts, the latest first."""
+    return Tare.objects.filter(bottle=bottle).prefetch_related("parts").order_by("-since", "-id")
+
+
+def conditions_of(bottle: Bottle) -> QuerySet[Condition]:
+    """What was noted on it, open ones first, then the latest."""
+    return (
+        Condition.objects.filter(bottle=bottle)
+        .select_related("end__act__person", "act__person")
+        .order_by("end", "-seen_on", "-id")
+    )
+
+
+def owners_of(bottle: Bottle) -> QuerySet[Ownership]:
+    """Whose it was, the latest first."""
+    return Ownership.objects.filter(bottle=bottle).select_related("customer").order_by("-since", "-id")
+
+
+def bottles_matching(
+    *, text: str = "", owner: str = "", use: str = "", state: str = "", place: Place | None = None
+) -> QuerySet[Bottle]:
+    """The register in order of code, narrowed; retired ones only where they are asked for."""
+    found = Bottle.objects.order_by("code")
+    if text:
+        found = found.filter(
+            Q(code__icontains=text)
+            | Q(serial__icontains=text)
+            | Q(mark__icontains=text)
+            | Q(maker__icontains=text)
+            | Q(standing__ownership__customer__name__icontains=text)
+            | Q(standing__custody__car__number__iexact=text)
+        )
+    if owner:
+        found = found.filter(standing__ownership__kind=owner)
+    if use:
+        found = found.filter(use=use)
+    if place:
+        found = found.filter(standing__is_in=True, standing__custody__place=place)
+    return _in_state(found.filter(retired_at__isnull=state != "retired"), state)
+
+
+def with_open_condition(found: QuerySet[Bottle]) -> QuerySet[Bottle]:
+    """The same, each told whether something is wrong with it, and whether it's condemned."""
+    wrong = Condition.objects.filter(bottle=OuterRef("pk"), end__isnull=True)
+    return found.annotate(is_stopped=Exists(wrong), is_condemned=Exists(wrong.filter(code="condemned")))
+
+
+def _in_state(found: QuerySet[Bottle], state: str) -> QuerySet[Bottle]:
+    if state == "in":
+        return found.filter(standing__is_in=True)
+    if state == "waits":
+        return found.filter(standing__waits=True)
+    if state == "out":
+        return found.filter(standing__is_in=False)
+    if state == "unweighed":
+        return found.filter(standing__weighing__isnull=True)
+    if state == "stopped":
+        return with_open_condition(found).filter(is_stopped=True)
+    if state == "incomplete":
+        tested = Stamp.objects.filter(bottle=OuterRef("pk"), kind="test", strike__isnull=True)
+        return found.annotate(is_tested=Exists(tested)).filter(
+            Q(serial="") | Q(mark="") | Q(capacity_ml__isnull=True) | Q(standing__tare__isnull=True) | Q(is_tested=False)
+        )
+    return found
+
+
+def where_words(custody: Custody | None) -> str:
+    """Where it is and with whom, in words."""
+    if custody is None:
+        return "never checked in"
+    if custody.is_in:
+        return str(custody.place)
+    if custody.car:
+        return f"on {custody.car}"
+    with_whom = f", {custody.with_whom}" if custody.with_whom else ""
+    return f"{custody.get_kind_display()}{with_whom}"
+
+
+def owner_words(ownership: Ownership | None) -> str:
+    """Whose it is, in words."""
+    if ownership is None:
+        return "owner not known"
+    if ownership.kind == "customer":
+        return str(ownership.customer)
+    return ownership.supplier if ownership.kind == "supplier" else "the shop"

@@ -1,0 +1,7 @@
+"""Addresses of this part of the bottles' pages."""
+
+from __future__ import annotations
+
+from django.urls import URLPattern
+
+urlpatterns: list[URLPattern] = []

@@ -1,0 +1,56 @@
+"""The sections of a bottle's page, in order: a template part, and the function that fills it.
+
+Each function takes (request, bottle, standing, shop) and returns the variables of its part. They
+are imported when the page is drawn, so that a section may belong to any module of views.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+from django.http import HttpRequest
+from django.utils.module_loading import import_string
+
+from bottles.models import Bottle, Standing
+from shop.base.models import Shop
+from shop.base.permissions import EVERYONE, Role
+
+SECTIONS: list[tuple[str, str]] = [
+    ("bottles/_judgement.html", "bottles.views.judgement.section"),
+    ("bottles/_register.html", "bottles.views.register_section.section"),
+]
+
+# The answer stands above what can be done; all else below.
+ANSWERS = [template for template, _ in SECTIONS if template == "bottles/_judgement.html"]
+
+
+@dataclass(frozen=True, slots=True)
+class Action:
+    """One thing that can be done with a bottle: its page, its words, who may, and where the bottle must be."""
+
+    page: str
+    words: str
+    roles: frozenset[Role] = EVERYONE
+    needs_in: bool | None = None  # True: only while it's in the shop; False: only while it's out
+
+
+ACTIONS: list[Action] = [
+    Action("bottles:check_in", "Check in", needs_in=False),
+    Action("bottles:weigh", "Weigh"),
+    Action("bottles:forecast", "Forecast and fill", needs_in=True),
+    Action("bottles:hand_over", "Hand over", needs_in=True),
+    Action("bottles:move", "Move", needs_in=True),
+    Action("bottles:condition", "Note damage"),
+]
+
+
+def drawn(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop) -> dict[str, Any]:
+    """The variables of every section of the page, each under a name of its own."""
+    context: dict[str, Any] = {}
+    for template, function in SECTIONS:
+        told = import_string(function)(request, bottle, standing, shop)
+        if doubled := told.keys() & context.keys():
+            raise ValueError(f"{template} and a section before it both set {', '.join(sorted(doubled))}")
+        context |= told
+    return context
