@@ -27,6 +27,9 @@ MonthRule = Literal["through due month", "from first day"]
 WaterCode = Literal["us", "p200"]
 
 
+_RANKS: dict[Refusal | None, int] = {None: 1, "foreign": 2}
+
+
 @dataclass(frozen=True, slots=True)
 class Cited:
     """What a rule rests on: its citation, its basis and a note."""
@@ -119,9 +122,9 @@ class RuleEdition:
     def row_for(self, mark: SpecMark | None, wall: Wall | None = None) -> MarkedRow | None:
         """The row for a mark, or None: then the bottle can't be judged here.
 
-        Of a bottle with several marks the one that may be filled counts: it carries the
-        foreign one beside it. A row for one kind of wall answers only where the wall is
-        known.
+        Of a bottle with several marks the one of this country counts: a foreign one beside
+        it takes nothing away, but one that may never be refilled does. A row for one kind
+        of wall answers only where the wall is known.
         """
         if mark is None:
             return None
@@ -131,7 +134,7 @@ class RuleEdition:
             for row in self.rows
             if each.spec in row.specifications and (row.walls is None or wall in row.walls)
         ]
-        found.sort(key=lambda marked: marked.row.receiver == "no")
+        found.sort(key=lambda marked: _RANKS.get(marked.row.refused_because, 0))
         return found[0] if found else None
 
     def filling_row(self, mark: SpecMark | None) -> FillingRow | None:

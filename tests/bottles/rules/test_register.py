@@ -24,6 +24,8 @@ def codes(facts: Facts, tare_g: int | None = 6420) -> set[str]:
 
 def test_an_ordinary_bottle_contradicts_nothing() -> None:
     assert codes(ORDINARY) == set()
+    # The very most that its capacity allows is no contradiction yet.
+    assert codes(replace(ORDINARY, charge_g=4614)) == set()
 
 
 @pytest.mark.parametrize(
