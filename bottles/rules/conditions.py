@@ -11,7 +11,7 @@ from collections.abc import Mapping
 from types import MappingProxyType
 from typing import Literal
 
-Effect = Literal["damage", "clean first", "illegible", "contents unknown"]
+Effect = Literal["damage", "clean first", "dry and purge", "illegible", "contents unknown"]
 
 CONDITIONS: Mapping[str, tuple[str, Effect]] = MappingProxyType(
     {
@@ -28,6 +28,7 @@ CONDITIONS: Mapping[str, tuple[str, Effect]] = MappingProxyType(
         "rings dull": ("rings dull in the hammer test", "damage"),
         "other": ("other damage", "damage"),
         "dirty outlet": ("oil, grease or dirt at valve or outlet", "clean first"),
+        "without pressure": ("found open or without pressure", "dry and purge"),
         "stamp illegible": ("mark, serial or stamp illegible", "illegible"),
         "contents unknown": ("last contents unknown", "contents unknown"),
     }

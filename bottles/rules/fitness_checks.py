@@ -108,6 +108,9 @@ def _conditions(asked: Asked, checks: Checks) -> None:
         effect, label = effect_of(condition.code), label_of(condition.code)
         if effect == "clean first":
             checks.add(say("clean-first", "first", source, "filling", condition=label))
+        elif effect == "dry and purge":
+            if facts.dried_and_purged is not True:
+                checks.add(say("dry-and-purge", "first", _SHOP_RULE, "filling"))
         elif effect == "illegible":
             checks.add(
                 say(

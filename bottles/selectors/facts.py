@@ -138,7 +138,7 @@ def _facts(bottle: Bottle, rows: _Rows) -> Facts:
         conditions=tuple(
             Noted(condition.code, condition.seen_on)
             for condition in rows.conditions
-            if condition.code not in (CONDEMNED, WITHOUT_PRESSURE)
+            if condition.code != CONDEMNED
         ),
         pressure_kept=_pressure_kept(codes, net, error),
         in_open_refill=rows.open_refill,
