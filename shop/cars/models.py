@@ -15,7 +15,7 @@ class Car(models.Model):
     car_class = models.CharField("class", max_length=60, blank=True)
     description = models.CharField(max_length=120, blank=True)
     engine = models.CharField(max_length=200, blank=True)
-    customer = models.ForeignKey(Customer, null=True, blank=True, on_delete=models.PROTECT, related_name="cars")
+    customer = models.ForeignKey(Customer, null=True, blank=True, on_delete=models.PROTECT, related_name="+")
     active = models.BooleanField(default=True)
     version = models.PositiveIntegerField(default=1)
 

@@ -24,7 +24,7 @@ class Migration(migrations.Migration):
                 ('engine', models.CharField(blank=True, max_length=200)),
                 ('active', models.BooleanField(default=True)),
                 ('version', models.PositiveIntegerField(default=1)),
-                ('customer', models.ForeignKey(blank=True, null=True, on_delete=django.db.models.deletion.PROTECT, related_name='cars', to='people.customer')),
+                ('customer', models.ForeignKey(blank=True, null=True, on_delete=django.db.models.deletion.PROTECT, related_name='+', to='people.customer')),
             ],
             options={
                 'constraints': [models.UniqueConstraint(django.db.models.functions.text.Lower('number'), django.db.models.functions.text.Lower('car_class'), condition=models.Q(('active', True)), name='one_car_a_number_and_class')],
