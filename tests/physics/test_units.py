@@ -11,11 +11,10 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from shop.physics.errors import OutOfRange, QuantityError
+from shop.physics.errors import QuantityError
 from shop.physics.unit_table import GAL_ML, IN3_ML, LB_G, LIMITS, NAMES, PSI_PA, UNITS
 from shop.physics.units import (
     Entry,
-    ambient_pressure,
     in_own_unit,
     parse_length,
     parse_mass,
@@ -169,15 +168,6 @@ def test_a_volume_is_understood_as_written(text: str, millilitres: int, unit: st
 )
 def test_a_length_is_understood_as_written(text: str, micrometres: int, unit: str) -> None:
     assert parse_length(text, default_unit="mm") == Entry(micrometres, text, unit)
-
-
-def test_a_shop_below_the_sea_has_a_negative_height() -> None:
-    entry = parse_length("-3 m", default_unit="m", below_zero=True)
-    assert entry.stored == -3_000_000
-    assert in_own_unit(entry.stored, entry.unit) == "-3 m"
-    with pytest.raises(QuantityError) as refused:
-        parse_length("-3 m", default_unit="m")
-    assert refused.value.code == "negative"
 
 
 @pytest.mark.parametrize(
@@ -400,25 +390,3 @@ def test_every_way_of_writing_a_unit_leads_to_it() -> None:
     for word, name in NAMES.items():
         text = f"200 {word}" if name == "K" else f"20 {word}"
         assert parse(UNITS[name].kind, text, units_of(UNITS[name].kind)[0]).unit == name
-
-
-@pytest.mark.parametrize(
-    ("height_m", "pascal"),
-    [
-        # U.S. Standard Atmosphere, 1976, table I, geopotential heights (from memory).
-        (0, 101_325.0),
-        (1_000, 89_874.6),
-        (2_000, 79_495.2),
-        (5_000, 54_019.9),
-        (11_000, 22_632.1),
-    ],
-)
-def test_the_air_thins_with_height_as_published(height_m: int, pascal: float) -> None:
-    assert ambient_pressure(height_m) == pytest.approx(pascal, rel=1e-5)
-
-
-@pytest.mark.parametrize("height_m", [-2_001, 11_001, float("nan")])
-def test_a_height_outside_the_lower_atmosphere_is_refused(height_m: float) -> None:
-    with pytest.raises(OutOfRange) as refused:
-        ambient_pressure(height_m)
-    assert refused.value.code == "height"
