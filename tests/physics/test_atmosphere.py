@@ -4,7 +4,7 @@ import pytest
 
 from shop.physics.atmosphere import ambient_pressure
 from shop.physics.errors import OutOfRange, QuantityError
-from shop.physics.units import parse_length
+from shop.physics.units import in_own_unit, parse_length
 
 
 @pytest.mark.parametrize(
