@@ -172,7 +172,10 @@ AUTHENTICATION_BACKENDS = [
     "django.contrib.auth.backends.ModelBackend",
 ]
 AUTH_PASSWORD_VALIDATORS = [
-    {"NAME": "django.contrib.auth.password_validation.UserAttributeSimilarityValidator"},
+    {
+        "NAME": "django.contrib.auth.password_validation.UserAttributeSimilarityValidator",
+        "OPTIONS": {"user_attributes": ["sign_in_name", "name"]},
+    },
     {"NAME": "django.contrib.auth.password_validation.MinimumLengthValidator"},
     {"NAME": "django.contrib.auth.password_validation.CommonPasswordValidator"},
 ]
@@ -189,6 +192,8 @@ AXES_COOLOFF_TIME = 0.25  # hours
 AXES_LOCKOUT_PARAMETERS = [["username", "ip_address"]]
 AXES_RESET_ON_SUCCESS = True
 AXES_VERBOSE = False
+AXES_USERNAME_FORM_FIELD = "username"  # what authenticate() is given; without it every name counts as none
+AXES_SENSITIVE_PARAMETERS = ["username", "ip_address", "name", "kept"]
 AXES_LOCKOUT_CALLABLE = "shop.people.views.signing_in.locked_out"
 
 # --- headers --------------------------------------------------------------------------------------

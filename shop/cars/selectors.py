@@ -24,7 +24,9 @@ def cars(text: str = "") -> QuerySet[Car]:
 
 def cars_in_use() -> QuerySet[Car]:
     """Cars that come into the shop, in order of number."""
-    return Car.objects.select_related("customer").filter(active=True).order_by(Lower("number"), Lower("car_class"), "pk")
+    return (
+        Car.objects.select_related("customer").filter(active=True).order_by(Lower("number"), Lower("car_class"), "pk")
+    )
 
 
 def cars_starting(text: str) -> QuerySet[Car]:

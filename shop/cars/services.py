@@ -42,14 +42,16 @@ def change_car(*, person: User, key: uuid.UUID, car: Car, version: int, values: 
 
 
 def _refuse_taken(number: str, car_class: str, own: int | None) -> None:
-    taken = (
-        Car.objects.filter(active=True)
-        .alias(low=Lower("number"), low_class=Lower("car_class"))
-        .filter(low=folded(number), low_class=folded(car_class))
-        .exclude(pk=own)
+    others = Car.objects.filter(active=True)
+    if own is not None:
+        others = others.exclude(pk=own)
+    taken = others.alias(low=Lower("number"), low_class=Lower("car_class")).filter(
+        low=folded(number), low_class=folded(car_class)
     )
     if taken.exists():
+        name = str(Car(number=number, car_class=car_class)).capitalize()
         raise Refusal(
-            f"Car {number}{f' ({car_class})' if car_class else ''} is in the book already. Write its class too, or change that car.",
-            code="car taken", field="number",
-        )  # fmt: skip
+            f"{name} is in the book already. Write its class too, or change that one.",
+            code="car taken",
+            field="number",
+        )

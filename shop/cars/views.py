@@ -108,6 +108,10 @@ class CarChange(ActView):
         typed = form.cleaned_data
         names = ("number", "car_class", "description", "engine", "customer", "active")
         services.change_car(
-            person=person, key=key, car=self.car, version=typed["version"] or 0, values={name: typed[name] for name in names}
+            person=person,
+            key=key,
+            car=self.car,
+            version=typed["version"] or 0,
+            values={name: typed[name] for name in names},
         )
         return self.home()

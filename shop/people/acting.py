@@ -58,7 +58,9 @@ class ActForm(forms.Form):
                 label="Your badge or short code",
                 max_length=200,
                 widget=forms.PasswordInput(attrs={"autocomplete": "off"}),
-                error_messages={"required": "Scan your badge or type your short code, so that it's known who did this."},
+                error_messages={
+                    "required": "Scan your badge or type your short code, so that it's known who did this."
+                },
             )
 
     def typed(self, name: str) -> str:
@@ -132,7 +134,12 @@ class ActView(View):
     def form(self, data: Any = None) -> Any:
         """Build the form, bound to what was typed where there is something."""
         return self.form_class(
-            data, person=self.request.user, shop=self.shop, shared=self.shared, initial=self.initial(), **self.form_kwargs()
+            data,
+            person=self.request.user,
+            shop=self.shop,
+            shared=self.shared,
+            initial=self.initial(),
+            **self.form_kwargs(),
         )
 
     def get(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
@@ -141,7 +148,9 @@ class ActView(View):
             return self.show(self.form())
         form = self.form(typed)
         form.is_valid()
-        messages.warning(request, f"{WHY_KEPT[typed.why]} What you typed is here and isn't saved yet: check it and save.")
+        messages.warning(
+            request, f"{WHY_KEPT[typed.why]} What you typed is here and isn't saved yet: check it and save."
+        )
         return self.show(form)
 
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
@@ -159,7 +168,9 @@ class ActView(View):
             return self.show(form, status=409)
         except (Refusal, PhysicsError) as refusal:
             field = getattr(refusal, "field", None)
-            form.add_error(field if field in form.fields else None, forms.ValidationError(refusal.sentence, code=refusal.code))
+            form.add_error(
+                field if field in form.fields else None, forms.ValidationError(refusal.sentence, code=refusal.code)
+            )
             return self.show(form, status=409)
         if self.said:
             messages.success(request, self.said)
@@ -178,11 +189,15 @@ class ActView(View):
         session = self.request.session
         wrong, since = session.get("wrong_codes", (0, 0.0))
         if wrong >= WRONG_CODES and time.time() - since < PAUSE_S:
-            raise NotAllowed("Too many wrong codes. Wait a minute, then scan your badge.", code="too many codes", field="who")
+            raise NotAllowed(
+                "Too many wrong codes. Wait a minute, then scan your badge.", code="too many codes", field="who"
+            )
         person = identify(form.cleaned_data["who"])
         if person is None:
             session["wrong_codes"] = (wrong + 1 if wrong < WRONG_CODES else 1, time.time())
-            raise NotAllowed("No one has that badge or code. Scan it again, or ask a manager.", code="unknown code", field="who")
+            raise NotAllowed(
+                "No one has that badge or code. Scan it again, or ask a manager.", code="unknown code", field="who"
+            )
         session.pop("wrong_codes", None)
         if not self.roles & person.roles:
             raise NotAllowed(f"{person.name} may not do this: another role is needed. Ask a manager.", field="who")
@@ -191,9 +206,19 @@ class ActView(View):
     def keep_both(self, form: ActForm, stale: Stale) -> None:
         """Show what someone else saved beside what was typed; saving again replaces it."""
         form.add_error(None, forms.ValidationError(stale.sentence, code=stale.code))
-        for field, value in stale.theirs.items():
+        for field, raw in stale.theirs.items():
+            value = _shown(form.fields.get(field), raw)
             note = f"Saved meanwhile by someone else: “{value}”. Yours is kept here; save again to put it in its place."
             form.add_error(field if field in form.fields else None, forms.ValidationError(note, code=stale.code))
         data: Any = form.data.copy()  # type: ignore[attr-defined]
         data["version"] = stale.version
         form.data = data
+
+
+def _shown(field: forms.Field | None, value: str) -> str:
+    """Return a saved value as its field would show it."""
+    if isinstance(field, forms.BooleanField):
+        return "ticked" if value == "True" else "not ticked"
+    if isinstance(field, forms.ChoiceField):
+        return str(dict(field.choices).get(value, value))  # type: ignore[arg-type]
+    return value or "nothing"

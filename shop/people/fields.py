@@ -7,6 +7,9 @@ from typing import Any
 
 from django import forms
 from django.core.exceptions import ValidationError
+from django.template.loader import render_to_string
+from django.utils.html import format_html
+from django.utils.safestring import SafeString
 
 from shop.people.models import Customer
 from shop.people.selectors import customers_starting, folded
@@ -17,15 +20,14 @@ OFFERED = 200  # names that a browser is given to choose from; the others are fo
 class ChosenCustomer(forms.TextInput):
     """A text field with names to choose from."""
 
-    template_name = "people/_customer_widget.html"
-
-    def get_context(self, name: str, value: Any, attrs: dict[str, Any] | None) -> dict[str, Any]:
-        context = super().get_context(name, value, attrs)
-        offered = Customer.objects.filter(erased_at__isnull=True).order_by("-pk").values_list("name", "pk")[:OFFERED]
-        context["offered"] = [written(name, pk) for name, pk in sorted(offered)]
-        context["list_id"] = f"{context['widget']['attrs'].get('id', name)}_names"
-        context["widget"]["attrs"]["list"] = context["list_id"]
-        return context
+    def render(self, name: str, value: Any, attrs: dict[str, Any] | None = None, renderer: Any = None) -> SafeString:
+        attrs = attrs or {}
+        list_id = f"{attrs.get('id', name)}_names"
+        latest = Customer.objects.filter(erased_at__isnull=True).order_by("-pk").values_list("name", "pk")[:OFFERED]
+        offered = [written(name, pk) for name, pk in sorted(latest)]
+        field = super().render(name, value, attrs | {"list": list_id}, renderer)
+        names = render_to_string("people/_customer_names.html", {"list_id": list_id, "offered": offered})
+        return format_html("{}{}", field, names)
 
 
 class CustomerField(forms.CharField):
@@ -59,7 +61,9 @@ class CustomerField(forms.CharField):
             return found[0]
         if found:
             names = "; ".join(written(one.name, one.pk) for one in (same or found)[:5])
-            raise ValidationError(f"More than one customer could be meant. Write one of these: {names}.", code="several")
+            raise ValidationError(
+                f"More than one customer could be meant. Write one of these: {names}.", code="several"
+            )
         raise ValidationError(
             f"No customer is called “{text[:60]}”. Add the customer first, or write the name as it stands in the book.",
             code="unknown",

@@ -9,7 +9,8 @@ from django.core import signing
 from django.http import HttpRequest, QueryDict
 
 LONGEST = 64_000  # characters of one form that are kept
-NOT_KEPT = {"csrfmiddlewaretoken", "who", "password", "new_password", "old_password", "again", "new_badge", "new_code"} | {"kept", "form_key"}
+SECRETS = {"who", "password", "new_password", "old_password", "again", "new_badge", "new_code"}
+NOT_KEPT = SECRETS | {"csrfmiddlewaretoken", "kept", "form_key"}
 SALT = "tarebook.kept"
 HOLDS_S = 24 * 60 * 60
 

@@ -18,7 +18,9 @@ class SignInFirst(LoginRequiredMiddleware):
     carries what was typed; signed in, one is back at the form. Nothing is saved on the way.
     """
 
-    def handle_no_permission(self, request: HttpRequest, view_func: Callable[..., Any]) -> HttpResponseBase:
+    def handle_no_permission(  # type: ignore[override]
+        self, request: HttpRequest, view_func: Callable[..., Any]
+    ) -> HttpResponseBase:
         if request.headers.get("HX-Request"):
             return HttpResponse("Sign in first.", status=401, content_type="text/plain")
         if request.method != "POST":

@@ -12,8 +12,8 @@ from shop.rooms import finding
 LISTS = {"matches-frame", "matches-main"}
 
 
-@require_safe
 @allow(EVERYONE)
+@require_safe
 def find(request: HttpRequest) -> HttpResponse:
     """Go to the one exact match, or show what may be meant."""
     text = finding.asked(request.GET.get("q", ""))
@@ -26,8 +26,8 @@ def find(request: HttpRequest) -> HttpResponse:
     return render(request, "rooms/find.html", context)
 
 
-@require_safe
 @allow(EVERYONE)
+@require_safe
 def matches(request: HttpRequest) -> HttpResponse:
     """Offer what may be meant by half-typed text, as the list of the field that asks."""
     text = finding.asked(request.GET.get("q", ""))

@@ -39,7 +39,9 @@ class ShopForm(ActForm):
     """The shop's one row."""
 
     name = forms.CharField(label="Shop's name", max_length=120, error_messages={"required": "Write the shop's name."})
-    units = forms.ChoiceField(choices=Shop.UNITS, widget=forms.RadioSelect, help_text="Each person may choose their own.")
+    units = forms.ChoiceField(
+        choices=Shop.UNITS, widget=forms.RadioSelect, help_text="Each person may choose their own."
+    )
     time_zone = forms.ChoiceField(choices=zones, help_text="The shop's day decides what is due.")
     height = HeightField(
         us="ft", metric="m", label="Height above sea", help_text="A gauge reads against the air here: 180 m, or 590 ft."
@@ -88,7 +90,10 @@ class PolicyForm(ActForm):
     effective_from = forms.DateField(
         label="Holds from",
         widget=forms.DateInput(attrs={"type": "date"}, format="%Y-%m-%d"),
-        error_messages={"required": "Give the day from which it holds.", "invalid": "This isn't a day. Write it as 2026-03-31."},
+        error_messages={
+            "required": "Give the day from which it holds.",
+            "invalid": "This isn't a day. Write it as 2026-03-31.",
+        },
     )
     month_rule = forms.ChoiceField(
         label="When a test falls due", required=False, choices=MONTH_RULES, widget=forms.RadioSelect

@@ -62,9 +62,15 @@ class SettingsChange(ActView):
 
     def act(self, form: Any, person: User, key: uuid.UUID) -> str:
         typed = form.cleaned_data
-        values = {name: typed[name] for name in ("name", "units", "time_zone", "paper", "public_address", "local_notice")}
+        values = {
+            name: typed[name] for name in ("name", "units", "time_zone", "paper", "public_address", "local_notice")
+        }
         services.change_shop(
-            person=person, key=key, shop=self.shop, version=typed["version"] or 0, values=values | {"height_m": typed["height"]}
+            person=person,
+            key=key,
+            shop=self.shop,
+            version=typed["version"] or 0,
+            values=values | {"height_m": typed["height"]},
         )
         return reverse("rooms:settings")
 

@@ -42,7 +42,7 @@ def add_place(*, person: User, key: uuid.UUID, values: dict[str, Any]) -> Place:
     new = Place(**values)
     new.clean_fields()
     with acts.begin(key=key, person=person, code="place.added", subject=f"place:{new.code}"):
-        _refuse_taken(new.code, None)
+        _refuse_taken(new.code)
         new.save(force_insert=True)
     return new
 
@@ -55,6 +55,6 @@ def change_place(*, person: User, key: uuid.UUID, place: Place, version: int, va
         acts.update_master(place, version=version, values=values)
 
 
-def _refuse_taken(code: str, own: int | None) -> None:
-    if Place.objects.filter(code__iexact=code).exclude(pk=own).exists():
+def _refuse_taken(code: str) -> None:
+    if Place.objects.filter(code__iexact=code).exists():
         raise Refusal(f"There is a place “{code}” already. Take another code.", code="place taken", field="code")

@@ -79,7 +79,9 @@ class ChangePersonForm(PersonForm):
 class PasswordForm(ActForm):
     """A password that a manager gives."""
 
-    new_password = _new_password("New password", "At least 8 characters. Wherever the person is signed in, they are out.")
+    new_password = _new_password(
+        "New password", "At least 8 characters. Wherever the person is signed in, they are out."
+    )
 
 
 class BadgeForm(ActForm):
@@ -122,7 +124,9 @@ class OwnPasswordForm(ActForm):
         cleaned = super().clean() or {}
         new, again = cleaned.get("new_password"), cleaned.get("again")
         if new and again and new != again:
-            self.add_error("again", forms.ValidationError("The two aren't alike. Type the new password again.", code="not alike"))
+            self.add_error(
+                "again", forms.ValidationError("The two aren't alike. Type the new password again.", code="not alike")
+            )
         return cleaned
 
 

@@ -12,10 +12,12 @@ from shop.people.models import Consent, Customer, User
 SECRET = frozenset({"name", "phone", "email", "note"})
 
 
-def add_customer(*, person: User, key: uuid.UUID, name: str, phone: str = "", email: str = "", note: str = "") -> Customer:
+def add_customer(
+    *, person: User, key: uuid.UUID, name: str, phone: str = "", email: str = "", note: str = ""
+) -> Customer:
     """Write a customer into the book."""
     new = Customer(name=name, phone=phone, email=email, note=note)
-    new.clean_fields()
+    new.clean_fields(exclude={"erased_at"})
     with acts.begin(key=key, person=person, code="customer.added", subject="customer"):
         new.save(force_insert=True)
     return new

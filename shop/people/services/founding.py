@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import uuid
+from typing import Any
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
 from shop.base import acts, clock
@@ -11,7 +12,7 @@ from shop.base.models import Policy, Shop
 from shop.people.models import User
 
 # The country's rules alone: nothing of the shop's own yet. The keys are those of the rules' Policy.
-FIRST_POLICY = {
+FIRST_POLICY: dict[str, Any] = {
     "month_rule": None,
     "visual_interval_months": None,
     "disc_interval_months": None,

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import uuid
 from collections.abc import Iterable
+from itertools import pairwise
 from typing import Any
 
 from django.contrib.auth.password_validation import validate_password
@@ -44,7 +45,15 @@ def add_person(
 
 
 def change_person(
-    *, person: User, key: uuid.UUID, who: User, version: int, name: str, sign_in: str, roles: Iterable[Role], active: bool
+    *,
+    person: User,
+    key: uuid.UUID,
+    who: User,
+    version: int,
+    name: str,
+    sign_in: str,
+    roles: Iterable[Role],
+    active: bool,
 ) -> None:
     """Change who someone is and what they may do; the last active manager stays one.
 
@@ -68,11 +77,16 @@ def change_person(
         # All who are managers now are locked, in order: of two managers who demote each other
         # one has to wait and then finds itself the last.
         managers = list(
-            User.objects.select_for_update().filter(is_manager=True, is_active=True).order_by("pk").values_list("pk", flat=True)
+            User.objects.select_for_update()
+            .filter(is_manager=True, is_active=True)
+            .order_by("pk")
+            .values_list("pk", flat=True)
         )
         if managers == [who.pk] and not (active and Role.MANAGER in held):
             raise NotAllowed(
-                "This is the last manager who may sign in. Make someone else a manager first.", code="last manager", field="roles"
+                "This is the last manager who may sign in. Make someone else a manager first.",
+                code="last manager",
+                field="roles",
             )
         if User.objects.filter(sign_in_name__iexact=values["sign_in_name"]).exclude(pk=who.pk).exists():
             raise _name_taken(values["sign_in_name"])
@@ -114,14 +128,18 @@ def plain_enough(code: str) -> bool:
     """Return whether a code is digits of the right number that nobody tries first."""
     if not (code.isascii() and code.isdigit() and SHORTEST_CODE <= len(code) <= LONGEST_CODE):
         return False
-    steps = {int(b) - int(a) for a, b in zip(code, code[1:], strict=False)}
+    steps = {int(b) - int(a) for a, b in pairwise(code)}
     return steps not in ({0}, {1}, {-1})
 
 
 def set_units(*, person: User, key: uuid.UUID, units: str) -> None:
     """Choose in which units one's own pages speak; empty: the shop's."""
     with acts.begin(
-        key=key, person=person, code="person.units", subject=f"person:{person.pk}", changes=acts.changed(person, {"units": units})
+        key=key,
+        person=person,
+        code="person.units",
+        subject=f"person:{person.pk}",
+        changes=acts.changed(person, {"units": units}),
     ):
         person.units = units
         person.save(update_fields=["units"])
@@ -153,7 +171,9 @@ def _check_password(password: str, who: User, *, field: str) -> None:
 
 
 def _name_taken(name: str) -> Refusal:
-    return Refusal(f"Someone signs in as “{name}” already. Take another name.", code="sign-in name taken", field="sign_in")
+    return Refusal(
+        f"Someone signs in as “{name}” already. Take another name.", code="sign-in name taken", field="sign_in"
+    )
 
 
 def _stale_roles(stale: Stale, who: User) -> Stale:

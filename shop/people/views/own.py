@@ -52,10 +52,13 @@ class Own(ActView):
     def act(self, form: Any, person: User, key: uuid.UUID) -> str:
         if person != self.request.user:
             raise NotAllowed(
-                "Someone else is signed in on this machine. Sign in as yourself to change your own settings.", field="who"
+                "Someone else is signed in on this machine. Sign in as yourself to change your own settings.",
+                field="who",
             )
         if "old_password" in form.fields and not person.check_password(form.cleaned_data["old_password"]):
-            raise NotAllowed("This isn't your password now. Type it again.", code="wrong password", field="old_password")
+            raise NotAllowed(
+                "This isn't your password now. Type it again.", code="wrong password", field="old_password"
+            )
         self.save(form.cleaned_data, person, key)
         return reverse("people:me")
 

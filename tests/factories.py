@@ -1,0 +1,147 @@
+"""Things that tests stand on, each valid by itself: CustomerFactory(), BottleFactory(code="T-0412").
+
+A fact needs an act; an act made here was the program's own.
+"""
+
+from __future__ import annotations
+
+import uuid
+from datetime import UTC, date, datetime
+from typing import Any
+
+import factory
+from factory.django import DjangoModelFactory
+
+from bottles.models import Bottle, Custody, Ownership, Scale, Tare, Weighing
+from bottles.services.standing import restate
+from shop.base.models import Act, Place, Policy
+from shop.cars.models import Car
+from shop.people.models import Consent, Customer, User
+
+THEN = datetime(2026, 3, 2, 15, 0, tzinfo=UTC)
+
+
+class ActFactory(DjangoModelFactory):
+    class Meta:
+        model = Act
+
+    key = factory.LazyFunction(uuid.uuid4)
+    person = None
+    code = "test.made"
+    subject = "test"
+
+
+class UserFactory(DjangoModelFactory):
+    """A person without a usable password: sign them in with client_of."""
+
+    class Meta:
+        model = User
+
+    sign_in_name = factory.Sequence(lambda n: f"person.{n}")
+    name = factory.Sequence(lambda n: f"Person {n}")
+    password = "!"
+    is_front_desk = True
+
+
+class CustomerFactory(DjangoModelFactory):
+    class Meta:
+        model = Customer
+
+    name = factory.Sequence(lambda n: f"Customer {n}")
+
+
+class ConsentFactory(DjangoModelFactory):
+    class Meta:
+        model = Consent
+
+    act = factory.SubFactory(ActFactory)
+    customer = factory.SubFactory(CustomerFactory)
+    purpose = "fill"
+    given = True
+    on = date(2026, 3, 2)
+
+
+class CarFactory(DjangoModelFactory):
+    class Meta:
+        model = Car
+
+    number = factory.Sequence(lambda n: str(100 + n))
+    car_class = "Sprint"
+    customer = factory.SubFactory(CustomerFactory)
+
+
+class PlaceFactory(DjangoModelFactory):
+    class Meta:
+        model = Place
+
+    code = factory.Sequence(lambda n: f"P{n}")
+    name = factory.Sequence(lambda n: f"shelf {n}")
+    kind = "shelf"
+
+
+class PolicyFactory(DjangoModelFactory):
+    class Meta:
+        model = Policy
+
+    act = factory.SubFactory(ActFactory)
+    effective_from = date(2026, 1, 1)
+    values = factory.LazyFunction(dict)
+
+
+class BottleFactory(DjangoModelFactory):
+    """A registered bottle, nothing else known: give it an owner and a place with the functions below."""
+
+    class Meta:
+        model = Bottle
+
+    code = factory.Sequence(lambda n: f"T-{1000 + n}")
+    maker = "Invented Vessels"
+    serial = factory.Sequence(lambda n: f"IV{n:05}")
+    mark = "DOT-3AL1800"
+    capacity_ml = 6800
+    capacity_basis = "stamped"
+    act = factory.SubFactory(ActFactory)
+
+
+class ScaleFactory(DjangoModelFactory):
+    class Meta:
+        model = Scale
+
+    code = factory.Sequence(lambda n: f"SC-{n}")
+    name = factory.Sequence(lambda n: f"scale {n}")
+    resolution_g = 10
+    resolution_typed = "10 g"
+    error_g = 20
+    error_typed = "20 g"
+    capacity_g = 60_000
+    capacity_typed = "60 kg"
+
+
+def owned(bottle: Bottle, customer: Customer | None = None, *, supplier: str = "") -> Bottle:
+    """Say whose the bottle is: a customer's, a supplier's, else the shop's."""
+    kind = "customer" if customer else "supplier" if supplier else "shop"
+    Ownership.objects.create(
+        act=ActFactory(), bottle=bottle, kind=kind, customer=customer, supplier=supplier, since=date(2026, 1, 1)
+    )
+    restate(bottle)
+    return bottle
+
+
+def placed(bottle: Bottle, kind: str = "in", **where: Any) -> Bottle:
+    """Say where the bottle is: placed(bottle, "in", place=shelf), placed(bottle, "car", car=car)."""
+    if kind in Custody.INSIDE and "place" not in where:
+        where["place"] = PlaceFactory()
+    Custody.objects.create(act=ActFactory(), bottle=bottle, kind=kind, **{"happened_at": THEN} | where)
+    restate(bottle)
+    return bottle
+
+
+def weighed(bottle: Bottle, *, gross_g: int, tare_g: int, error_g: int = 28, scale: Scale | None = None) -> Weighing:
+    """Say what a scale said of the bottle, with a tare of its own."""
+    tare = Tare.objects.create(act=ActFactory(), bottle=bottle, since=THEN, total_g=tare_g, error_g=10, basis="weighed")
+    found = Weighing.objects.create(
+        act=ActFactory(), bottle=bottle, scale=scale or ScaleFactory(), tare=tare, step="arrival", gross_g=gross_g,
+        typed=f"{gross_g} g", net_g=gross_g - tare_g, error_g=error_g, happened_at=THEN,
+    )  # fmt: skip
+    restate(bottle)
+    return found

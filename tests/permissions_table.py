@@ -1,0 +1,105 @@
+"""Who may open which page: every named address, once. Add a row when you add a page.
+
+A row: the address's name, who may open it, and where it needs them the arguments of its address
+out of the small world that `World` lays. `OPEN` needs no sign-in. `get` is what the right person
+gets: 200 a page, 302 on to another, 405 where it only takes forms. `query` is added to the address.
+A row whose answer isn't a page of HTML (a file, a part of a page) says so with html=False.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Any
+
+from shop.base.permissions import BENCH, DESK, EVERYONE, MANAGERS, Role
+from tests import factories
+
+OPEN = None
+
+
+class World:
+    """One of each thing that a page's address can name. Needs the shop. Add what your page needs."""
+
+    def __init__(self) -> None:
+        self.person = factories.UserFactory(name="Ines Aldermoor")
+        self.customer = factories.CustomerFactory(name="Ostrander", phone="555 0100")
+        self.consent = factories.ConsentFactory(customer=self.customer)
+        self.car = factories.CarFactory(number="27", customer=self.customer)
+        self.place = factories.PlaceFactory(code="SHELF", limit_g=20_000)
+        self.bottle = factories.BottleFactory(code="T-0412", serial="88213")
+        factories.owned(self.bottle, self.customer)
+        factories.placed(self.bottle, "in", place=self.place)
+        self.fitted = factories.placed(factories.BottleFactory(code="T-0413"), "car", car=self.car)
+        factories.weighed(self.fitted, gross_g=10_940, tare_g=6_420)
+
+
+@dataclass(frozen=True)
+class Page:
+    """One row."""
+
+    name: str
+    roles: frozenset[Role] | None
+    args: Callable[[World], dict[str, Any]] = lambda world: {}
+    get: int = 200
+    query: str = ""
+    html: bool = True
+
+
+def _of_person(world: World) -> dict[str, Any]:
+    return {"pk": world.person.pk}
+
+
+def _of_customer(world: World) -> dict[str, Any]:
+    return {"pk": world.customer.pk}
+
+
+def _of_car(world: World) -> dict[str, Any]:
+    return {"pk": world.car.pk}
+
+
+PEOPLE = [
+    Page("healthz", OPEN, html=False),
+    Page("people:sign_in", OPEN),
+    Page("people:sign_out", OPEN, get=405),
+    Page("people:me", EVERYONE),
+    Page("people:own_units", EVERYONE),
+    Page("people:own_password", EVERYONE),
+    Page("people:own_code", EVERYONE),
+    Page("people:people", MANAGERS),
+    Page("people:person_new", MANAGERS),
+    Page("people:person", MANAGERS, _of_person),
+    Page("people:person_password", MANAGERS, _of_person),
+    Page("people:person_badge", MANAGERS, _of_person),
+    Page("people:person_code", MANAGERS, _of_person),
+    Page("people:customers", EVERYONE),
+    Page("people:customer_new", DESK),
+    Page("people:customer_change", DESK, _of_customer),
+    Page("people:consent_new", DESK, _of_customer),
+]
+
+CARS = [
+    Page("cars:cars", EVERYONE),
+    Page("cars:car_new", EVERYONE),
+    Page("cars:car_change", EVERYONE, _of_car),
+]
+
+ROOMS = [
+    Page("rooms:home", EVERYONE, get=302),
+    Page("rooms:counter", EVERYONE),
+    Page("rooms:bay", BENCH),
+    Page("rooms:office", MANAGERS),
+    Page("rooms:find", EVERYONE, query="q=T-04"),
+    Page("rooms:matches", EVERYONE, query="q=T-04", html=False),
+    Page("rooms:customer", EVERYONE, _of_customer),
+    Page("rooms:car", EVERYONE, _of_car),
+    Page("rooms:settings", MANAGERS),
+    Page("rooms:settings_change", MANAGERS),
+    Page("rooms:policies", MANAGERS),
+    Page("rooms:policy_new", MANAGERS),
+    Page("rooms:places", MANAGERS),
+    Page("rooms:place_new", MANAGERS),
+    Page("rooms:place", MANAGERS, lambda world: {"pk": world.place.pk}),
+]
+
+TABLE: list[Page] = [*PEOPLE, *CARS, *ROOMS]
