@@ -23,8 +23,8 @@ class OwnerFields(RegisterForm):
         widget=forms.RadioSelect,
         error_messages={"required": "Say whose it is: only its owner's word lets it be filled."},
     )
-    customer = CustomerField(label="Customer", required=False, help_text="Type a part of the name, or pick one.")
-    supplier = text("Supplier", 120, help_text="The name on its label.")
+    customer = CustomerField(label="Customer", required=False, help_text="If it's a customer's: a part of the name, or pick one.")
+    supplier = text("Supplier", 120, help_text="If it's the supplier's: the name on its label.")
 
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean() or {}

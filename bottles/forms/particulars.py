@@ -14,6 +14,7 @@ from shop.base.fields import MassField, VolumeField
 from shop.physics.units import in_own_unit
 
 BASES = [basis for basis in Bottle.CAPACITY_BASES if basis[0] in ("stamped", "measured", "maker")]
+OR_TICK = "Type the {}, or tick that it isn't legible."
 YES_NO = {"yes": True, "no": False}  # anything else isn't known
 GRADES = [("unknown", "not known"), ("yes", "race grade (with SO2)"), ("no", "plain nitrous")]
 
@@ -21,10 +22,11 @@ GRADES = [("unknown", "not known"), ("yes", "race grade (with SO2)"), ("no", "pl
 class ParticularsForm(RegisterForm):
     """The fields of a bottle; serial number and mark may be told to be illegible, all else may wait."""
 
-    serial = text("Serial number", 60)
+    serial = text("Serial number", 60, required=True, error_messages={"required": OR_TICK.format("serial number")})
     serial_illegible = forms.BooleanField(label="The serial number isn't legible", required=False)
     mark = text(
-        "Mark with pressure", 60, help_text="As it's stamped: DOT-3AL1800, TC-3ALM124, UN ISO 7866 PH250.",
+        "Mark with pressure", 60, required=True, error_messages={"required": OR_TICK.format("mark")},
+        help_text="As it's stamped: DOT-3AL1800, TC-3ALM124, UN ISO 7866 PH250.",
         widget=forms.TextInput(attrs={"autocomplete": "off", "autocapitalize": "characters", "spellcheck": "false"}),
     )
     mark_illegible = forms.BooleanField(label="The mark isn't legible", required=False)
@@ -62,15 +64,16 @@ class ParticularsForm(RegisterForm):
         error_messages={"max_length": "That is longer than the 2,000 characters kept here. Write it shorter."},
     )
 
+    def __init__(self, *args: Any, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        for name in ("serial", "mark"):
+            if self.data.get(f"{name}_illegible"):
+                self.fields[name].required = False
+
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean() or {}
         for name, word in (("serial", "serial number"), ("mark", "mark")):
-            illegible = cleaned.get(f"{name}_illegible")
-            if name in self.errors:
-                continue
-            if not cleaned.get(name) and not illegible:
-                self.add_error(name, forms.ValidationError(f"Type the {word}, or tick that it isn't legible.", code="required"))
-            if cleaned.get(name) and illegible:
+            if cleaned.get(name) and cleaned.get(f"{name}_illegible"):
                 self.add_error(name, forms.ValidationError(f"Either the {word} or the tick, not both.", code="both"))
         for name, word in (("capacity", "A capacity"), ("size", "A size")):
             if cleaned.get(name) and cleaned[name].stored == 0:

@@ -76,6 +76,7 @@ class RegisterForm(ActForm):
         self.to_confirm = list(reasons)
         asked: forms.MultipleChoiceField = self.fields.pop("confirmed")  # type: ignore[assignment]
         asked.widget = forms.CheckboxSelectMultiple()
+        asked.required = True  # only said on the page: what was posted has been read already
         asked.choices = [(reason.code, " ".join(filter(None, (reason.sentence, reason.next_step)))) for reason in reasons]
         self.fields["confirmed"] = asked  # the last one, beside the button
         self._bound_fields_cache.pop("confirmed", None)  # type: ignore[attr-defined]

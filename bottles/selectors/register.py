@@ -28,11 +28,11 @@ def standing_of(bottle: Bottle) -> Standing:
     return found or Standing(bottle=bottle)
 
 
-def stamps_of(bottle: Bottle) -> QuerySet[Stamp]:
-    """Every stamp ever read off it, the latest first, struck ones among them."""
-    return Stamp.objects.filter(bottle=bottle).select_related("strike__act__person", "act").order_by(
-        "kind", "-year", "-month", "-id"
-    )
+def stamps_of(bottle: Bottle) -> list[Stamp]:
+    """Every stamp ever read off it by kind, the latest first, struck ones among them."""
+    order = [kind for kind, _ in Stamp.KINDS]
+    found = Stamp.objects.filter(bottle=bottle).select_related("strike__act").order_by("-year", "-month", "-id")
+    return sorted(found, key=lambda stamp: order.index(stamp.kind))
 
 
 def tares_of(bottle: Bottle) -> QuerySet[Tare]:

@@ -121,9 +121,11 @@ def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role]) -> list[
         if bottle.retired_at is not None or not action.roles & roles or action.needs_in not in (None, standing.is_in):
             continue
         try:
-            found.append({"words": action.words, "url": reverse(action.page, args=[bottle.code]), "main": not found})
+            url = reverse(action.page, args=[bottle.code])
         except NoReverseMatch:
             continue
+        heavier = action.likely and not any(each["main"] for each in found)
+        found.append({"words": action.words, "url": url, "main": heavier})
     return found
 
 

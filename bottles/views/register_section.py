@@ -23,7 +23,7 @@ from shop.rules import month as months
 def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop) -> dict[str, Any]:
     """What is missing, tare, stamps, conditions, owner, how it lies."""
     words = words_for(request, shop)
-    stamps = list(stamps_of(bottle))
+    stamps = stamps_of(bottle)
     counted = {stamp.kind for stamp in stamps if not hasattr(stamp, "strike")}
     conditions = list(conditions_of(bottle))
     zone = clock.zone(shop)

@@ -33,12 +33,13 @@ class Action:
     words: str
     roles: frozenset[Role] = EVERYONE
     needs_in: bool | None = None  # True: only while it's in the shop; False: only while it's out
+    likely: bool = False  # the first likely one that can be done is drawn heavier
 
 
 ACTIONS: list[Action] = [
-    Action("bottles:check_in", "Check in", needs_in=False),
-    Action("bottles:weigh", "Weigh"),
-    Action("bottles:forecast", "Forecast and fill", needs_in=True),
+    Action("bottles:check_in", "Check in", needs_in=False, likely=True),
+    Action("bottles:weigh", "Weigh", likely=True),
+    Action("bottles:forecast", "Forecast and fill", needs_in=True, likely=True),
     Action("bottles:hand_over", "Hand over", needs_in=True),
     Action("bottles:move", "Move", needs_in=True),
     Action("bottles:condition", "Note damage"),

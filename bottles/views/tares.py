@@ -22,7 +22,8 @@ class NewTare(BottleActView):
     submit = "Start this tare"
 
     def initial(self) -> dict[str, Any]:
-        return typed_parts(tares_of(self.bottle).first())
+        tare = tares_of(self.bottle).first()
+        return {"tare_basis": tare.basis if tare else "weighed"} | typed_parts(tare)
 
     def context(self) -> dict[str, Any]:
         tare = tares_of(self.bottle).first()
