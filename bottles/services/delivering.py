@@ -10,7 +10,9 @@ import uuid
 from dataclasses import dataclass
 from datetime import datetime
 
-from bottles.models import Bottle, Custody, Delivery, Movement, Supply, Weighing
+from django.db.models import Q
+
+from bottles.models import Bottle, Custody, Delivery, Line, Movement, Supply, Weighing
 from bottles.selectors.history import history_of
 from bottles.services.booking import book
 from bottles.services.moving import OnScale
@@ -51,7 +53,8 @@ def deliver(
     The books take our weighing; without one the ticket's weight. What they still held when it
     went to the supplier's is booked as gone back.
 
-    Raises Retired; NotReady where it stands here with contents; Refusal where neither the scale
+    Raises Retired; NotReady where it stands here with contents, or was weighed or moved later than
+    that; Refusal where neither the scale
     nor the ticket gives a weight; and what `weigh_in` raises.
     """
     happened_at = happened_at or clock.now()
@@ -62,6 +65,7 @@ def deliver(
         )
     with acts.begin(key=key, person=person, code="bottle.delivered", subject=f"bottle:{bottle.code}") as act:
         bottle = locked(bottle)
+        _refuse_out_of_order(bottle, happened_at, moved_too=False)
         standing = restate(bottle)
         holds = account_of(bottle).balance_g
         if standing.is_in and holds:
@@ -71,8 +75,7 @@ def deliver(
                 code="here already",
             )
         refuse_in_refill(bottle)
-        if holds:
-            _post_return(act=act, bottle=bottle, happened_at=happened_at, weighing=None)
+        left = history_of(bottle).level_at((happened_at, act.pk)) if holds else 0
         kept: Weighing | None = None
         net = ticket.net.stored if ticket.net else 0
         error, origin = 0, "entered"
@@ -88,6 +91,8 @@ def deliver(
             act=act, kind="delivery", happened_at=happened_at, weighing=kept, note=f"ticket {ticket.number}"[:200],
             moves=[Move(source=own_account("supplier"), target=account_of(bottle), grams=net, origin=origin, error_g=error)],
         )
+        if left:  # after the delivery, so that what was drawn since then has something to be drawn from
+            _post_return(act=act, bottle=bottle, happened_at=happened_at, grams=left, weighing=None)
         delivery = Delivery(
             act=act, movement=movement, bottle=bottle, supplier=ticket.supplier.strip(), ticket=ticket.number.strip(),
             ticket_net_g=ticket.net.stored if ticket.net else None, ticket_typed=ticket.net.typed if ticket.net else "",
@@ -125,6 +130,7 @@ def give_back(
     ) as act:
         bottle = locked(bottle)
         refuse_in_refill(bottle)
+        _refuse_out_of_order(bottle, happened_at, moved_too=True)
         if not restate(bottle).is_in:
             raise NotReady(f"{bottle.code} isn't in the shop, so it can't go back from here.", code="not in")
         hangs = Supply.objects.filter(bottle=bottle).select_related("station").first()
@@ -136,7 +142,8 @@ def give_back(
                 act=act, bottle=bottle, scale=weighed.scale, gross=weighed.gross, wet=weighed.wet, step="dispatch",
                 happened_at=happened_at, reason=reason,
             )
-        movement = _post_return(act=act, bottle=bottle, happened_at=happened_at, weighing=kept)
+        level = history_of(bottle).level_at((happened_at, act.pk))
+        movement = _post_return(act=act, bottle=bottle, happened_at=happened_at, grams=level, weighing=kept)
         Custody.objects.create(
             act=act, bottle=bottle, kind="supplier", with_whom=supplier.strip()[:120], happened_at=happened_at
         )
@@ -144,17 +151,30 @@ def give_back(
     return movement
 
 
-def _post_return(*, act: Act, bottle: Bottle, happened_at: datetime, weighing: Weighing | None) -> Movement | None:
-    """Post what a bottle holds by then as gone back to the supplier."""
-    history = history_of(bottle)
-    level = history.level_at((happened_at, act.pk))
-    error = weighing.error_g if weighing else 0
+def _refuse_out_of_order(bottle: Bottle, happened_at: datetime, *, moved_too: bool) -> None:
+    """Refuse a coming or going that lies before what is already known of the bottle afterwards."""
+    later = (
+        Custody.objects.filter(bottle=bottle, happened_at__gt=happened_at).exists()
+        or Weighing.objects.filter(bottle=bottle, strike__isnull=True, happened_at__gte=happened_at).exists()
+    )
+    if moved_too and not later:
+        lines = Line.objects.filter(Q(source__bottle=bottle) | Q(target__bottle=bottle))
+        later = lines.filter(movement__happened_at__gt=happened_at).exists()
+    if later:
+        raise NotReady(
+            f"Later than that {bottle.code} was weighed, moved or drawn from already. Give a later time, or leave it empty for now.",
+            code="out of order", field="happened_at",
+        )
+
+
+def _post_return(
+    *, act: Act, bottle: Bottle, happened_at: datetime, grams: int, weighing: Weighing | None
+) -> Movement | None:
+    """Post what a bottle held by then as gone back to the supplier."""
+    origin, error = ("weighed", weighing.error_g) if weighing else ("computed", 0)
     return book(
         act=act, kind="returned", happened_at=happened_at, weighing=weighing, order=act.pk,
         moves=[
-            Move(
-                source=account_of(bottle), target=own_account("returned"), grams=level,
-                origin="weighed" if weighing else "computed", error_g=error,
-            )
+            Move(source=account_of(bottle), target=own_account("returned"), grams=grams, origin=origin, error_g=error)
         ],
     )

@@ -1,20 +1,22 @@
 """A gap between the scale and the books: how large, whether it speaks, and where it went.
 
-- Within the ± of the difference nothing is posted, so that a slow leak adds up instead of being
-  absorbed day by day.
-- Beyond it the other side is the owner's account where a customer's bottle was out (used by its
-  owner, no question asked), the car's where the shop's own was on one, the supplier where only a
-  delivery's ticket spoke so far, else *unaccounted*, with a reason.
-- Heavier than it left means filled elsewhere: what is in it isn't known, and is noted so.
-- The first weighing opens the books: from the owner for a customer's bottle, else the supplier.
+What a weighing says is `bottles.rules.books`; here stands what only the register knows: whose the
+bottle was then, whether it was out, which car it was on. Beyond the rule:
+
+- the shop's own bottle that was on a car and came back lighter was used by that car;
+- where only a delivery's ticket spoke so far, the gap is the supplier's;
+- the shop's own bottle opens its books from the supplier, as the supplier's does.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import cast
 
-from bottles.models import Account, Bottle, Condition, ConditionEnd
+from bottles.models import Account, Bottle, Condition, ConditionEnd, Ownership
 from bottles.physics.weighing import net_uncertainty
+from bottles.rules.books import compare
+from bottles.rules.facts import OwnerKind
 from bottles.selectors.history import History, Spoken
 from bottles.selectors.whose import last_out, owner_at
 from bottles.services.posting import account_of, own_account
@@ -70,24 +72,30 @@ def other_side(bottle: Bottle, history: History, at: Spoken, gap: Gap, *, anew: 
     """
     owner = owner_at(bottle, at.key[0])
     customer = owner.customer if owner and owner.kind == "customer" else None
-    if gap.opening:
-        return Side(account_of(customer) if customer else own_account("supplier"))
-    if history.rests_on_ticket(at):
+    if not gap.opening and history.rests_on_ticket(at):
         return Side(own_account("supplier"))
     since = history.last_ruling(at.key)
     out = last_out(bottle, since.key[0] if since else None, at.key[0])
     heavier = gap.grams > 0
-    if out is None:
-        return Side(own_account("unaccounted"), asks=True)
-    if heavier and out.kind == "supplier" and not anew:
+    if heavier and not gap.opening and out is not None and out.kind == "supplier" and not anew:
         raise NotReady(
             f"{bottle.code} was with the supplier and came back heavier: record its delivery instead.", code="record the delivery"
         )
-    if customer is not None:
-        return Side(account_of(customer), unknown=heavier)
-    if out.car is not None and not heavier:
+    if not heavier and customer is None and out is not None and out.car is not None:
         return Side(account_of(out.car))
-    return Side(own_account("unaccounted"), asks=True, unknown=heavier)
+    answer = compare(
+        books_g=None if gap.opening else max(0, -gap.grams), net_g=max(0, gap.grams), e_net_g=0, e_books_g=0,
+        was_out=out is not None, owner=_kind(owner, opening=gap.opening),
+    )
+    other = answer.source if heavier else answer.target
+    account = account_of(customer) if other == "customer" and customer else own_account(other or "unaccounted")
+    return Side(account, asks=answer.finding == "needs a reason", unknown=answer.contents_unknown)
+
+
+def _kind(owner: Ownership | None, *, opening: bool) -> OwnerKind | None:
+    if owner is None or (opening and owner.kind == "shop"):
+        return "supplier" if opening else None
+    return cast(OwnerKind, owner.kind)
 
 
 def refuse_without_reason(bottle: Bottle, history: History, at: Spoken, gap: Gap, reason: str) -> None:

@@ -178,14 +178,13 @@ def strike(
                 WeighingStrike.objects.create(act=act, weighing=weighing)
         except IntegrityError:
             raise AlreadyStruck from None
-        undone = _undo(act, weighing)
         kept = None
         if right is not None:
             kept = weigh_in(
                 act=act, bottle=bottle, scale=weighing.scale, gross=right, wet=weighing.wet, step=weighing.step,
                 happened_at=weighing.happened_at, settle=False,
             )
-        _post_again(act, weighing, undone, kept)
+        _undo(act, weighing, kept)
         settle_books(act=act, bottle=bottle, reason=reason)
         standing: Standing = restate(bottle)
         return standing.weighing if right is None else kept
@@ -197,45 +196,49 @@ def _others(weighing: Weighing) -> list[Bottle]:
     return [account.bottle for line in lines for account in (line.source, line.target) if account.bottle]
 
 
-def _undo(act: Act, weighing: Weighing) -> list[Movement]:
-    """Reverse what a weighing had moved, newest first; return what was reversed."""
+def _undo(act: Act, weighing: Weighing, right: Weighing | None) -> None:
+    """Reverse what a weighing had moved, newest first; what happened whatever it said is posted anew.
+
+    A delivery is posted anew before the first is reversed, so that what was drawn since then has
+    something to be drawn from all the while; a return after it.
+    """
     standing = weighing.movements.filter(reversal__isnull=True).exclude(kind="reversal")
-    undone = list(standing.select_related("weighing", "refill").order_by("-id"))
-    for movement in undone:
+    for movement in standing.select_related("weighing", "refill").order_by("-id"):
+        if movement.kind == "delivery":
+            _deliver_anew(act, weighing, right)
         reverse(act=act, movement=movement)
+        if movement.kind == "returned":
+            _return_anew(act, weighing, right)
     end_unknown(act=act, bottle=weighing.bottle, noted_by=weighing.act_id, how="the weighing that showed it was struck")
-    return undone
 
 
-def _post_again(act: Act, weighing: Weighing, undone: list[Movement], right: Weighing | None) -> None:
-    """Post anew what happened whatever the scale said: a delivery, a return."""
-    bottle = weighing.bottle
-    kinds = {movement.kind for movement in undone}
-    if "delivery" in kinds:
-        delivery = Delivery.objects.filter(weighing=weighing).first()
-        if right is not None:
-            grams, error, origin = max(0, right.net_g), right.error_g, "weighed"
-        elif delivery is not None and delivery.ticket_net_g:
-            grams, error, origin = delivery.ticket_net_g, 0, "entered"
-        else:
-            raise Refusal(
-                "A delivery rests on this weighing and its ticket gave no weight. Type what the scale really said.",
-                code="delivery without a figure", field="right",
-            )
-        book(
-            act=act, kind="delivery", happened_at=weighing.happened_at, weighing=right, order=right and right.act_id,
-            moves=[Move(source=own_account("supplier"), target=account_of(bottle), grams=grams, origin=origin, error_g=error)],
-            note=act.reason[:200],
+def _deliver_anew(act: Act, weighing: Weighing, right: Weighing | None) -> None:
+    """Post a delivery by the right figure, else by its ticket."""
+    delivery = Delivery.objects.filter(weighing=weighing).first()
+    if right is not None:
+        grams, error, origin = max(0, right.net_g), right.error_g, "weighed"
+    elif delivery is not None and delivery.ticket_net_g:
+        grams, error, origin = delivery.ticket_net_g, 0, "entered"
+    else:
+        raise Refusal(
+            "A delivery rests on this weighing and its ticket gave no weight. Type what the scale really said.",
+            code="delivery without a figure", field="right",
         )
-    if "returned" in kinds:
-        history = history_of(bottle)
-        level = history.level_at((weighing.happened_at, weighing.act_id))
-        grams, error = (max(0, right.net_g), right.error_g) if right is not None else (level, 0)
-        moves = [Move(account_of(bottle), own_account("returned"), grams, "weighed" if right else "computed", error)]
-        if right is not None and (gap := right.net_g - level):
-            pair = (own_account("unaccounted"), account_of(bottle))
-            source, target = pair if gap > 0 else pair[::-1]
-            moves.insert(0, Move(source, target, abs(gap), "weighed", error))
-        book(
-            act=act, kind="returned", happened_at=weighing.happened_at, weighing=right, moves=moves, note=act.reason[:200],
-        )
+    target = account_of(weighing.bottle)
+    book(
+        act=act, kind="delivery", happened_at=weighing.happened_at, weighing=right, note=act.reason[:200],
+        moves=[Move(source=own_account("supplier"), target=target, grams=grams, origin=origin, error_g=error)],
+    )
+
+
+def _return_anew(act: Act, weighing: Weighing, right: Weighing | None) -> None:
+    """Post what went back to the supplier: by the right figure, else what the books held."""
+    own = account_of(weighing.bottle)
+    level = history_of(weighing.bottle).level_at((weighing.happened_at, act.pk))
+    grams, error, origin = (max(0, right.net_g), right.error_g, "weighed") if right is not None else (level, 0, "computed")
+    moves = [Move(source=own, target=own_account("returned"), grams=grams, origin=origin, error_g=error)]
+    if gap := grams - level:
+        pair = (own_account("unaccounted"), own)
+        source, target = pair if gap > 0 else pair[::-1]
+        moves.insert(0, Move(source=source, target=target, grams=abs(gap), origin=origin, error_g=error))
+    book(act=act, kind="returned", happened_at=weighing.happened_at, weighing=right, moves=moves, note=act.reason[:200])
