@@ -133,9 +133,10 @@ class ActView(View):
 
     def form(self, data: Any = None) -> Any:
         """Build the form, bound to what was typed where there is something."""
+        person: User = self.request.user  # type: ignore[assignment]
         return self.form_class(
             data,
-            person=self.request.user,
+            person=person,
             shop=self.shop,
             shared=self.shared,
             initial=self.initial(),

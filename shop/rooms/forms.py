@@ -15,8 +15,9 @@ from shop.people.acting import ActForm
 from shop.physics import units
 
 LOWEST_M, HIGHEST_M = -430, 5500
+BY_THE_RULES = "rules"
 MONTH_RULES = [
-    ("", "as the rule set in force says"),
+    (BY_THE_RULES, "as the rule set in force says"),
     ("through due month", "warn through the month in which the test is due, stop after it"),
     ("from first day", "stop from the first day of that month"),
 ]
@@ -96,7 +97,10 @@ class PolicyForm(ActForm):
         },
     )
     month_rule = forms.ChoiceField(
-        label="When a test falls due", required=False, choices=MONTH_RULES, widget=forms.RadioSelect
+        label="When a test falls due",
+        choices=MONTH_RULES,
+        widget=forms.RadioSelect,
+        error_messages={"required": "Choose what holds in the month in which a test falls due."},
     )
     visual_interval_months = _months("Months between visual inspections", "Empty: only what the rules ask for.")
     disc_interval_months = _months("Months after which a safety disc is replaced", "Empty: no rule of the shop's own.")

@@ -20,7 +20,7 @@ from shop.physics.formatting import format_mass, unit_system
 from shop.physics.units import in_own_unit
 from shop.rooms import services
 from shop.rooms.bay import system_of
-from shop.rooms.forms import MONTH_RULES, ChangePlaceForm, NewPlaceForm, PolicyForm, ShopForm
+from shop.rooms.forms import BY_THE_RULES, MONTH_RULES, ChangePlaceForm, NewPlaceForm, PolicyForm, ShopForm
 
 POLICY_KEYS = ("month_rule", "visual_interval_months", "disc_interval_months")
 
@@ -91,7 +91,9 @@ def policies(request: HttpRequest) -> HttpResponse:
             "since": one.effective_from.isoformat(),
             "state": "in force" if one.pk == in_force else "to come" if one.effective_from > today else "replaced",
             "kind": "yes" if one.pk == in_force else "open",
-            "month_rule": dict(MONTH_RULES).get(one.values.get("month_rule") or "", str(one.values.get("month_rule"))),
+            "month_rule": dict(MONTH_RULES).get(
+                one.values.get("month_rule") or BY_THE_RULES, str(one.values.get("month_rule"))
+            ),
             "visual": _months(one.values.get("visual_interval_months")),
             "disc": _months(one.values.get("disc_interval_months")),
             "own": _own(one.values.get("own_limit_per_mille")),
@@ -124,6 +126,7 @@ class PolicyNew(ActView):
     def initial(self) -> dict[str, Any]:
         latest = Policy.objects.order_by("-effective_from", "-id").first()
         values = {name: latest.values.get(name) for name in POLICY_KEYS} if latest else {}
+        values["month_rule"] = values.get("month_rule") or BY_THE_RULES
         own = latest.values.get("own_limit_per_mille") if latest else None
         return values | {"effective_from": clock.today(self.shop), "own_percent": _percent(own) if own else None}
 
@@ -131,6 +134,8 @@ class PolicyNew(ActView):
         typed = form.cleaned_data
         latest = Policy.objects.order_by("-effective_from", "-id").first()
         values = {name: typed[name] or None for name in POLICY_KEYS}
+        if values["month_rule"] == BY_THE_RULES:
+            values["month_rule"] = None
         values["own_limit_per_mille"] = int(typed["own_percent"] * 10) if typed["own_percent"] else None
         values["overlays"] = latest.values.get("overlays", []) if latest else []  # no page changes them yet
         services.decide_policy(

@@ -69,6 +69,12 @@ def test_a_taken_number_is_said_beside_the_number(technician: User, client_of: C
     assert answer.context["form"].has_error("number", "car taken")
 
 
+def test_cars_stand_in_the_order_of_their_numbers(shop: object) -> None:
+    for number in ("108", "9", "27a", "31"):
+        CarFactory(number=number)
+    assert [car.number for car in selectors.cars_in_use()] == ["9", "31", "108", "27a"]
+
+
 def test_cars_are_found_by_number_class_description_and_owner(shop: object) -> None:
     car = CarFactory(
         number="27", car_class="Sprint", description="red coupe", customer=CustomerFactory(name="Ostrander")

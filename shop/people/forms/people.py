@@ -58,9 +58,9 @@ class PersonForm(ActForm):
     roles = forms.TypedMultipleChoiceField(
         choices=[(role.value, word[0].upper() + word[1:]) for role, word in ROLE_WORDS.items()],
         coerce=Role,
-        required=False,
         widget=forms.CheckboxSelectMultiple,
         help_text="One person may hold several.",
+        error_messages={"required": "Give at least one role: without one, no page opens."},
     )
 
 
@@ -105,12 +105,14 @@ class CodeForm(ActForm):
 class UnitsForm(ActForm):
     """The units of one's own pages."""
 
-    units = forms.ChoiceField(required=False, widget=forms.RadioSelect)
+    SHOPS = "shop"
+
+    units = forms.ChoiceField(widget=forms.RadioSelect, error_messages={"required": "Choose the units, or the shop's."})
 
     def __init__(self, *args: Any, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
         shops = dict(Shop.UNITS)[self.shop.units]
-        self.fields["units"].choices = [("", f"the shop's ({shops})"), *Shop.UNITS]  # type: ignore[attr-defined]
+        self.fields["units"].choices = [(self.SHOPS, f"the shop's ({shops})"), *Shop.UNITS]  # type: ignore[attr-defined]
 
 
 class OwnPasswordForm(ActForm):

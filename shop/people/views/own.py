@@ -75,10 +75,10 @@ class OwnUnits(Own):
     heading = "My units"
 
     def initial(self) -> dict[str, Any]:
-        return {"units": self.request.user.units}  # type: ignore[union-attr]
+        return {"units": self.request.user.units or UnitsForm.SHOPS}  # type: ignore[union-attr]
 
     def save(self, typed: dict[str, Any], person: User, key: uuid.UUID) -> None:
-        services.set_units(person=person, key=key, units=typed["units"])
+        services.set_units(person=person, key=key, units="" if typed["units"] == UnitsForm.SHOPS else typed["units"])
 
 
 class OwnPassword(Own):
