@@ -12,7 +12,7 @@ from typing import Any
 import factory
 from factory.django import DjangoModelFactory
 
-from bottles.models import Bottle, Custody, Ownership, Scale, Tare, Weighing
+from bottles.models import Bottle, Condition, Custody, Ownership, Scale, Stamp, Tare, Weighing
 from bottles.services.standing import restate
 from shop.base.models import Act, Place, Policy
 from shop.cars.models import Car
@@ -115,6 +115,28 @@ class ScaleFactory(DjangoModelFactory):
     error_typed = "20 g"
     capacity_g = 60_000
     capacity_typed = "60 kg"
+
+
+class StampFactory(DjangoModelFactory):
+    class Meta:
+        model = Stamp
+
+    act = factory.SubFactory(ActFactory)
+    bottle = factory.SubFactory(BottleFactory)
+    kind = "test"
+    year = 2024
+    month = 6
+    typed = "06/2024"
+
+
+class ConditionFactory(DjangoModelFactory):
+    class Meta:
+        model = Condition
+
+    act = factory.SubFactory(ActFactory)
+    bottle = factory.SubFactory(BottleFactory)
+    code = "dent"
+    seen_on = date(2026, 3, 2)
 
 
 def owned(bottle: Bottle, customer: Customer | None = None, *, supplier: str = "") -> Bottle:

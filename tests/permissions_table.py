@@ -30,6 +30,8 @@ class World:
         self.bottle = factories.BottleFactory(code="T-0412", serial="88213")
         factories.owned(self.bottle, self.customer)
         factories.placed(self.bottle, "in", place=self.place)
+        self.stamp = factories.StampFactory(bottle=self.bottle)
+        self.condition = factories.ConditionFactory(bottle=self.bottle)
         self.fitted = factories.placed(factories.BottleFactory(code="T-0413"), "car", car=self.car)
         factories.weighed(self.fitted, gross_g=10_940, tare_g=6_420)
 
@@ -56,6 +58,10 @@ def _of_customer(world: World) -> dict[str, Any]:
 
 def _of_car(world: World) -> dict[str, Any]:
     return {"pk": world.car.pk}
+
+
+def _of_bottle(world: World) -> dict[str, Any]:
+    return {"code": world.bottle.code}
 
 
 PEOPLE = [
@@ -102,4 +108,20 @@ ROOMS = [
     Page("rooms:place", MANAGERS, lambda world: {"pk": world.place.pk}),
 ]
 
-TABLE: list[Page] = [*PEOPLE, *CARS, *ROOMS]
+REGISTER = [
+    Page("bottles:bottles", EVERYONE),
+    Page("bottles:register", EVERYONE),
+    Page("bottles:bottle", EVERYONE, _of_bottle),
+    Page("bottles:history", EVERYONE, _of_bottle),
+    Page("bottles:edit", EVERYONE, _of_bottle),
+    Page("bottles:tare", EVERYONE, _of_bottle),
+    Page("bottles:stamps", EVERYONE, _of_bottle),
+    Page("bottles:strike_stamp", EVERYONE, lambda world: {"code": world.bottle.code, "pk": world.stamp.pk}),
+    Page("bottles:owner", DESK, _of_bottle),
+    Page("bottles:condition", EVERYONE, _of_bottle),
+    Page("bottles:end_condition", BENCH, lambda world: {"code": world.bottle.code, "pk": world.condition.pk}),
+    Page("bottles:condemn", MANAGERS, _of_bottle),
+    Page("bottles:retire", MANAGERS, _of_bottle),
+]
+
+TABLE: list[Page] = [*PEOPLE, *CARS, *ROOMS, *REGISTER]
