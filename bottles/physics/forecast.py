@@ -313,8 +313,8 @@ def _reading_parts(
     )  # fmt: skip
     parts = []
     for name, new_source, new_receiver in changed:
-        new = Transfer(new_source, new_receiver)
-        new.line_kg = transfer.line_kg
+        path = transfer.path if new_source is source else None
+        new = Transfer(new_source, new_receiver, transfer.line_volume_m3, path=path)
         parts.append((name, min(abs(new.surplus(moved) - there) / slope, moved)))
     return parts
 

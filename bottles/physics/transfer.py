@@ -72,6 +72,7 @@ class Transfer:
             source = replace(source, net_kg=_EMPTY)
         self.source, self.receiver = source, receiver
         self.path = path or Adiabatic(source)
+        self.line_volume_m3 = line_volume_m3
         self.line_kg = line_loss(source, line_volume_m3)
         self._wall = receiver.wall_j_k + 2.5 * receiver.air  # air's own heat, 5/2 R a mole
         self._energy = (
@@ -79,6 +80,8 @@ class Transfer:
             + self._wall * receiver.temperature_k
         )
         self._guess = receiver.temperature_k
+        # The line's own contents leave with the energy that they took from the supply.
+        self._line_j = self.path.after(self.line_kg).energy_given_j if self.line_kg else 0.0
         self._marks: list[Mark] | None = None
         self._mixed: float | None = None
 
@@ -96,9 +99,7 @@ class Transfer:
     def mixed_receiver(self, moved_kg: float) -> tuple[float, float]:
         """Temperature and pressure of the receiver, uniform with its wall [K, Pa]."""
         receiver = self.receiver
-        # The line's own contents leave with the energy that they took from the supply.
-        first = self.path.after(self.line_kg).energy_given_j if self.line_kg else 0.0
-        gained = self.path.after(self.line_kg + moved_kg).energy_given_j - first
+        gained = self.path.after(self.line_kg + moved_kg).energy_given_j - self._line_j
         t, p = settle(
             receiver.volume_m3,
             self._wall,
@@ -132,12 +133,19 @@ class Transfer:
         start = self.surplus(0.0)
         if most <= 0.0 or start <= 0.0:
             return 0.0
-        # A receiver full of liquid stands at any pressure; look for where it does, not beyond.
-        high = most * (1.0 - 1e-9)
-        at_high = self.surplus(high)
-        if at_high > 0.0:
-            return most
-        return find_root(self.surplus, 0.0, high, tolerance=_RESOLUTION * most, at_low=start, at_high=at_high)
+        # Try first where liquid of the colder bottle's temperature would fill the receiver:
+        # further on pressures climb by thousands of bars, which no root finder likes.
+        coldest = min(self.source.temperature_k, self.receiver.temperature_k, T_SATURATION_MAX)
+        full = self.receiver.volume_m3 * engine().saturation(coldest)[1] - self.receiver.net_kg
+        low, at_low = 0.0, start
+        for high in (full, most * (1.0 - 1e-9)):
+            if not low < high < most:
+                continue
+            at_high = self.surplus(high)
+            if at_high <= 0.0:
+                return find_root(self.surplus, low, high, tolerance=_RESOLUTION * most, at_low=at_low, at_high=at_high)
+            low, at_low = high, at_high
+        return most
 
 
 def line_loss(source: Vessel, line_volume_m3: float) -> float:

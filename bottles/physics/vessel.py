@@ -186,7 +186,8 @@ def settle(
             break
         f_new = surplus(new)
         if abs(new - old) < 1e-7 or f_new == 0.0:
-            return new, pressure_and_energy(volume, mass, new, air)[0]
+            # The state just asked for is this one; only air needs its share of the space.
+            return new, pressure_and_energy(volume, mass, new, air)[0] if air else engine().pressure()
         if f_new == f_old:
             break
         old, f_old, new = new, f_new, new - f_new * (new - old) / (f_new - f_old)

@@ -143,14 +143,20 @@ class _TwoPhase:
         self._top = (mass, temperature)
         self._drain = Drain(withdrawal_table(liquid=liquid), volume, wall, mass, temperature)
         self._end: tuple[float, float] | None = None
-        self._known: tuple[float, float] = self._top
+        self._known = (mass, temperature, engine().saturation(temperature))
+
+    def _at(self, left: float) -> tuple[float, float, tuple[float, float, float, float, float]]:
+        """Mass, temperature and saturated states, kept for the next question of the same mass."""
+        if self._known[0] != left:
+            temperature = self._drain.temperature_at(left)
+            self._known = (left, temperature, engine().saturation(temperature))
+        return self._known
 
     def reaches(self, left: float) -> bool:
         """Say whether both phases are still there with a mass left."""
         if self._end is None:
-            temperature = self._drain.temperature_at(left)
-            self._known = (left, temperature)
-            if temperature > T_TRIPLE and left >= engine().saturation(temperature)[2] * self._v:
+            _, temperature, side = self._at(left)
+            if temperature > T_TRIPLE and left >= side[2] * self._v:
                 return True
             return left >= self.end[0]
         return left >= self._end[0]
@@ -181,9 +187,7 @@ class _TwoPhase:
 
     def state(self, left: float) -> tuple[float, float, float, float, bool]:
         """Temperature, pressure, energy, enthalpy of what leaves, liquid or not."""
-        known = self._known[0] == left
-        temperature = self._known[1] if known else self._drain.temperature_at(left)
-        p, rho_l, rho_v, h_l, h_v = engine().saturation(temperature)
+        _, temperature, (p, rho_l, rho_v, h_l, h_v) = self._at(left)
         q = (h_v - h_l) / (1.0 / rho_v - 1.0 / rho_l)
         energy = left * (h_l - q / rho_l) + self._v * (q - p)
         liquid = self._liquid and left > rho_v * self._v * (1.0 + 1e-9)

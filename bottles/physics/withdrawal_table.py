@@ -82,13 +82,13 @@ class WithdrawalTable:
 class Drain:
     """One bottle giving one saturated phase: mass left against temperature, both ways."""
 
-    __slots__ = ("_c", "_g0", "_h0", "_m0", "_s0", "_table", "_v")
+    __slots__ = ("_c", "_g0", "_h0", "_m0", "_near", "_s0", "_table", "_v")
 
     def __init__(self, table: WithdrawalTable, volume: float, wall: float, mass: float, temperature: float) -> None:
         """Fix the start."""
         self._table = table
         self._v, self._c = volume, wall
-        self._s0 = to_s(temperature)
+        self._s0 = self._near = to_s(temperature)
         exponent, self._g0, self._h0, _, _, _ = table.integrals(self._s0)
         self._m0 = mass * exp(-exponent)
 
@@ -100,7 +100,7 @@ class Drain:
         """Temperature when a mass is left [K]."""
         # Newton's steps kept in a bracket that shrinks: mass falls with rising s all the way.
         low, high = self._s0, self._table.s_cold
-        s = low
+        s = self._near
         for _ in range(60):
             value, slope = self._mass(s)
             gap = value - mass
@@ -112,10 +112,11 @@ class Drain:
             new = s - step
             if not low <= new <= high:
                 new = 0.5 * (low + high)
-            if abs(new - s) < 1e-12:
-                s = new
-                break
+            small = abs(new - s) < 1e-7  # the next step would be its square
             s = new
+            if small:
+                break
+        self._near = s
         return to_t(s)
 
     def _mass(self, s: float) -> tuple[float, float]:

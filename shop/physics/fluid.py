@@ -1,8 +1,8 @@
 """States of nitrous oxide by the equation of state of Lemmon and Span (2006).
 
 The only place that imports CoolProp, and only inside functions: loading it costs
-seconds, and most processes never need it. Every number is checked against the range
-of the equation before the call, because CoolProp answers quietly outside of it.
+seconds, and most processes never need it. Every number is checked against the range of the
+equation before the call, because CoolProp answers quietly outside of it.
 
 There are two ways in: public functions with frozen records that name what they refuse, and
 `engine`, the thread's own low-level state for what balances ask thousands of times.
@@ -84,6 +84,10 @@ class _Engine:
         raw.update(self._dt, density if density > _DENSITY_MIN else _DENSITY_MIN, temperature)
         return raw.p(), raw.umass()
 
+    def pressure(self) -> float:
+        """Pressure of the state last asked for."""
+        return float(self.raw.p())
+
     def quality(self) -> float | None:
         """Share of vapour of the state last asked for; None with one phase."""
         quality = float(self.raw.Q())
@@ -110,7 +114,7 @@ class _Engine:
         return float(self.raw.rhomass())
 
     def flash_energy(self, density: float, energy: float) -> None:
-        """Set the state by density and internal energy."""
+        """Set the state by density and energy."""
         self.raw.update(self._du, density, energy)
 
 
@@ -130,7 +134,7 @@ def engine() -> _Engine:
 
     Assumptions
     -----------
-    A low-level state isn't safe between threads; each thread owns one.
+    A low-level state isn't safe between threads.
 
     Valid for
     ---------
@@ -163,7 +167,7 @@ def load() -> None:
 
     Assumptions
     -----------
-    The first flash by energy builds tables of its own; it's made here.
+    The first flash by energy builds tables of its own.
 
     Valid for
     ---------
@@ -201,8 +205,7 @@ def saturation_pressure(temperature_k: float) -> float:
 
     Raises
     ------
-    OutOfRange
-        `no_saturation` outside of that.
+    OutOfRange, `no_saturation` outside of that.
 
     References
     ----------
@@ -232,8 +235,7 @@ def saturation_at_temperature(temperature_k: float) -> Saturation:
 
     Raises
     ------
-    OutOfRange
-        `no_saturation` outside of that.
+    OutOfRange, `no_saturation` outside of that.
 
     References
     ----------
@@ -263,8 +265,7 @@ def saturation_at_pressure(pressure_pa: float) -> Saturation:
 
     Raises
     ------
-    OutOfRange
-        `no_saturation` outside of that.
+    OutOfRange, `no_saturation` outside of that.
 
     References
     ----------
@@ -374,8 +375,7 @@ def state_by_pressure_temperature(pressure_pa: float, temperature_k: float) -> S
 
     Raises
     ------
-    OutOfRange
-        `temperature_range`, `pressure_range`.
+    OutOfRange, `temperature_range`, `pressure_range`.
     NoSolution
         `on_saturation`: there pressure and temperature don't tell the share of vapour.
 
