@@ -23,7 +23,18 @@ SENTENCES: dict[str, str] = {
     "bottle.wanted": "changed what it waits for",
     "bottle.handed over": "handed it over",
     "bottle.weighed": "weighed it",
-    "bottle.weighing struck": "struck a weighing that was mistyped",
+    "bottle.used": "recorded what was used",
+    "bottle.vented": "recorded what was vented",
+    "bottle.delivered": "recorded a delivery",
+    "bottle.given back": "gave it back to the supplier",
+    "weighing.struck": "struck a weighing that was mistyped",
+    "movement.reversed": "reversed a movement of nitrous",
+    "refill.refused": "was told that it isn't filled",
+    "refill.opened": "opened a refill",
+    "refill.weighed": "weighed it in a refill",
+    "refill.waits": "let the refill wait",
+    "refill.supply changed": "took another supply bottle",
+    "refill.closed": "closed the refill",
 }
 
 FIELDS: dict[str, str] = {

@@ -34,6 +34,8 @@ class NewBottleForm(ParticularsForm, TareFields, OwnerFields):
 
     def __init__(self, *args: Any, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
+        if not self.is_bound:
+            self.fields["serial"].widget.attrs["autofocus"] = True
         supply = next_code("supply")
         self.fields["code"].help_text = f"Empty: the next free one, {next_code('car')}, or {supply} for a supply bottle."
 

@@ -79,8 +79,11 @@ def bottles_matching(
 
 def with_open_condition(found: QuerySet[Bottle]) -> QuerySet[Bottle]:
     """The same, each told whether something is wrong with it, and whether it's condemned."""
-    wrong = Condition.objects.filter(bottle=OuterRef("pk"), end__isnull=True)
-    return found.annotate(is_stopped=Exists(wrong), is_condemned=Exists(wrong.filter(code="condemned")))
+    return found.annotate(is_stopped=Exists(_wrong()), is_condemned=Exists(_wrong().filter(code="condemned")))
+
+
+def _wrong() -> QuerySet[Condition]:
+    return Condition.objects.filter(bottle=OuterRef("pk"), end__isnull=True)
 
 
 def _in_state(found: QuerySet[Bottle], state: str) -> QuerySet[Bottle]:
@@ -93,11 +96,11 @@ def _in_state(found: QuerySet[Bottle], state: str) -> QuerySet[Bottle]:
     if state == "unweighed":
         return found.filter(standing__weighing__isnull=True)
     if state == "stopped":
-        return with_open_condition(found).filter(is_stopped=True)
+        return found.filter(Exists(_wrong()))
     if state == "incomplete":
         tested = Stamp.objects.filter(bottle=OuterRef("pk"), kind="test", strike__isnull=True)
-        return found.annotate(is_tested=Exists(tested)).filter(
-            Q(serial="") | Q(mark="") | Q(capacity_ml__isnull=True) | Q(standing__tare__isnull=True) | Q(is_tested=False)
+        return found.filter(
+            Q(serial="") | Q(mark="") | Q(capacity_ml__isnull=True) | Q(standing__tare__isnull=True) | ~Exists(tested)
         )
     return found
 

@@ -14,6 +14,7 @@ from bottles.models import Bottle
 from bottles.rules.register import contradictions
 from bottles.selectors.facts import facts_of
 from bottles.selectors.judging import rulebook
+from bottles.selectors.twins import twins_of
 from bottles.services.refusals import Contradicted, Unconfirmed
 from bottles.services.standing import restate
 from shop.base.models import Shop
@@ -23,13 +24,13 @@ IMPOSSIBLE = frozenset({"test-before-manufacture", "life-before-manufacture", "t
 LATER = frozenset({"composite-without-life", "permit-missing", "wall-needed", "stamp-without-month"})
 
 
-def unusual(bottle: Bottle) -> Sequence[Reason]:
+def unusual(bottle: Bottle) -> list[Reason]:
     """Return what contradicts itself or the rules in what is written of a bottle now."""
     book = rulebook(Shop.objects.get())
     tare = restate(bottle).tare
     facts = facts_of([bottle])[bottle.pk]
     found = contradictions(facts, book.edition, book.on, tare_g=tare.total_g if tare else None)
-    return [reason for reason in found if reason.code not in LATER]
+    return _told_twice(bottle) + [reason for reason in found if reason.code not in LATER]
 
 
 def refuse_contradictions(
@@ -43,3 +44,20 @@ def refuse_contradictions(
         raise Contradicted(impossible)
     if {reason.code for reason in found} - set(confirmed):
         raise Unconfirmed(found)
+
+
+def _told_twice(bottle: Bottle) -> list[Reason]:
+    twin = twins_of(maker=bottle.maker, mark=bottle.mark, serial=bottle.serial, but=bottle.pk).perhaps
+    if twin is None:
+        return []
+    return [
+        Reason(
+            code="serial-known",
+            severity="warns",
+            sentence=f"{twin.code} has the same serial number, and maker or mark isn't known of both.",
+            next_step="Right only if it's another bottle: compare maker and mark on the metal.",
+            citation="",
+            basis="entered",
+            values=(("code", twin.code),),
+        )
+    ]

@@ -24,6 +24,7 @@ from bottles.rules.marks import read_mark
 from bottles.rules.register import infer_capacity
 from bottles.selectors.codes import as_code, is_code, next_code
 from bottles.selectors.judging import rulebook
+from bottles.selectors.twins import twins_of
 from bottles.services.cleaning import clean
 from bottles.services.contradictions import refuse_contradictions, unusual
 from bottles.services.owners import Owner, write_owner
@@ -68,7 +69,10 @@ class Particulars:
 
     def tidy(self) -> Particulars:
         """The same with one space where there were several, as it's kept and compared."""
-        return replace(self, **{name: " ".join(getattr(self, name).split()) for name in ("serial", "mark", "maker", "alloy")})
+        return replace(
+            self, serial=_one_space(self.serial), mark=_one_space(self.mark), maker=_one_space(self.maker),
+            alloy=_one_space(self.alloy),
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -150,11 +154,8 @@ def change_bottle(
         restate(bottle)
 
 
-def known_as(*, maker: str, mark: str, serial: str) -> Bottle | None:
-    """Return the bottle that has this maker, mark and serial number, whatever their capitals."""
-    if not serial:
-        return None
-    return Bottle.objects.filter(maker__iexact=maker, mark__iexact=mark, serial__iexact=serial).first()
+def _one_space(text: str) -> str:
+    return " ".join(text.split())
 
 
 def _with_capacity(particulars: Particulars) -> Particulars:
@@ -185,6 +186,8 @@ def _create(act: Act, code: str, particulars: Particulars) -> Bottle:
 
 
 def _refuse_known(particulars: Particulars, *, but: Bottle | None) -> None:
-    known = known_as(maker=particulars.maker, mark=particulars.mark, serial=particulars.serial)
-    if known is not None and (but is None or known.pk != but.pk):
-        raise BottleKnown(known)
+    twins = twins_of(
+        maker=particulars.maker, mark=particulars.mark, serial=particulars.serial, but=but.pk if but else None
+    )
+    if twins.same is not None:
+        raise BottleKnown(twins.same)

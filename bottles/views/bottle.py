@@ -116,7 +116,7 @@ def history_rows(acts: list[Act], words: Words, shop: Shop) -> list[dict[str, An
 
 def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role]) -> list[dict[str, Any]]:
     """What this person may do with the bottle now, the likeliest first."""
-    found = []
+    found: list[dict[str, Any]] = []
     for action in ACTIONS:
         if bottle.retired_at is not None or not action.roles & roles or action.needs_in not in (None, standing.is_in):
             continue

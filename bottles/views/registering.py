@@ -9,6 +9,7 @@ from django.urls import reverse
 
 from bottles.forms.particulars import ChangeForm, particulars_typed
 from bottles.forms.registering import NewBottleForm
+from bottles.models import Bottle
 from bottles.services import registering
 from bottles.services.refusals import BottleKnown, Contradicted, Unconfirmed
 from bottles.views.of_bottle import BottleActView
@@ -48,6 +49,8 @@ def asking(form: Any, refusal: Exception) -> None:
     """Let the form show what a refusal asks for: ticks, or the bottle that is known already."""
     if isinstance(refusal, Unconfirmed):
         form.ask(refusal.reasons)
+        codes = [dict(reason.values).get("code") for reason in refusal.reasons if reason.code == "serial-known"]
+        form.known = Bottle.objects.filter(code__in=codes).first()
     elif isinstance(refusal, Contradicted):
         refusal.field = FIELD_OF_CODE.get(refusal.code)
     elif isinstance(refusal, BottleKnown):

@@ -137,6 +137,23 @@ def test_a_serial_known_for_that_maker_and_mark_leads_to_its_bottle(desk: Any) -
     assert 'href="/b/T-0001"' in answer.content.decode()
 
 
+def test_how_a_mark_is_spaced_makes_no_other_bottle(desk: Any) -> None:
+    bottle()
+    assert desk.post(URL, form_data(mark="DOT 3AL 1800")).context["form"].has_error("serial", "bottle known")
+
+
+@pytest.mark.parametrize(
+    "typed", [{"maker": ""}, {"maker": "Invented Cylinder Co", "mark": "", "mark_illegible": "on"}], ids=["no maker", "no mark"]
+)
+def test_where_maker_or_mark_isn_t_known_a_person_says_whether_it_is_the_same(desk: Any, typed: dict[str, str]) -> None:
+    bottle(maker="Invented Cylinder Co")
+    answer = desk.post(URL, form_data(**typed))
+    form = answer.context["form"]
+    assert answer.status_code == 409 and [reason.code for reason in form.to_confirm] == ["serial-known"]
+    assert 'href="/b/T-0001"' in answer.content.decode()
+    assert desk.post(URL, form_data(**typed, confirmed=["serial-known"])).url == "/b/T-0002"
+
+
 def test_the_same_serial_of_another_maker_is_another_bottle(shop: Any) -> None:
     bottle(maker="Invented Cylinder Co")
     assert bottle(maker="Other Cylinder Co").code == "T-0002"
@@ -243,7 +260,7 @@ TOO_LONG = "9" * (3 * 1024 * 1024)
     ],
     ids=lambda value: value if isinstance(value, str) and len(value) < 30 else "",
 )
-def test_bad_input_gets_a_sentence_and_comes_back(desk: Any, field: str, typed: str, code: str) -> None:
+def test_a_bad_entry_gets_a_sentence_and_nothing_is_registered(desk: Any, field: str, typed: str, code: str) -> None:
     answer = desk.post(URL, form_data(**{field: typed}))
     assert answer.status_code == 422
     form = answer.context["form"]

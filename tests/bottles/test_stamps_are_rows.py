@@ -84,7 +84,7 @@ def test_an_end_of_life_may_be_still_to_come(desk: Any) -> None:
         ({"facility": "y" * 41}, 422, "facility", "max_length"),
     ],
 )
-def test_bad_input_gets_a_sentence_and_comes_back(desk: Any, typed: dict[str, str], status: int, field: str, code: str) -> None:
+def test_a_bad_stamp_gets_a_sentence_and_comes_back(desk: Any, typed: dict[str, str], status: int, field: str, code: str) -> None:
     bottle()
     answer = desk.post("/b/T-0001/stamps", form_data(**typed))
     assert answer.status_code == status

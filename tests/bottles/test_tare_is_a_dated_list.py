@@ -110,7 +110,7 @@ def test_a_tare_that_was_on_at_a_lighter_weighing_can_t_be(shop: Any) -> None:
         ({"tare": "14.2 lb", "tare_error": "a bit"}, "tare_error", "not_a_number"),
     ],
 )
-def test_bad_input_gets_a_sentence_and_comes_back(
+def test_a_bad_tare_gets_a_sentence_and_comes_back(
     shop: Any, client_of: Any, technician: Any, typed: dict[str, str], field: str, code: str
 ) -> None:
     bottle(tare=None)
