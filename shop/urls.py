@@ -1,7 +1,5 @@
 """Every address of the shop."""
 
-from importlib.util import find_spec
-
 from django.contrib.auth.decorators import login_not_required
 from django.http import HttpRequest, HttpResponse
 from django.urls import include, path
@@ -17,7 +15,6 @@ urlpatterns = [
     path("healthz", healthz, name="healthz"),
     path("", include("shop.people.urls")),
     path("", include("shop.cars.urls")),
+    path("", include("bottles.urls")),
     path("", include("shop.rooms.urls")),
 ]
-if find_spec("bottles.urls"):
-    urlpatterns.append(path("", include("bottles.urls")))

@@ -3,9 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Callable
 from html.parser import HTMLParser
-from typing import Any
 
 import pytest
 from django.test import Client
@@ -62,16 +60,20 @@ def is_page(page: Page) -> bool:
     return page.html and page.get == 200
 
 
+READ: dict[str, Reader] = {}  # each page is asked for once, whatever is looked at on it
+
+
 @pytest.fixture(params=[page for page in TABLE if is_page(page)], ids=lambda page: page.name)
-def read(
-    request: pytest.FixtureRequest, shop: Any, make_user: Callable[..., Any], client_of: Callable[..., Client]
-) -> Reader:
+def read(request: pytest.FixtureRequest) -> Reader:
     page: Page = request.param
-    all_roles = make_user("front_desk", "technician", "manager", name="Mara K.")
-    answer = client_of(None if page.roles is OPEN else all_roles).get(address_of(page, World()))
-    assert answer.status_code == 200
-    assert "content-security-policy" in {name.lower() for name in answer.headers}
-    return Reader(answer.content.decode())
+    if page.name not in READ:
+        all_roles = request.getfixturevalue("make_user")("front_desk", "technician", "manager", name="Mara K.")
+        client: Client = request.getfixturevalue("client_of")(None if page.roles is OPEN else all_roles)
+        answer = client.get(address_of(page, World()))
+        assert answer.status_code == 200
+        assert "content-security-policy" in {name.lower() for name in answer.headers}
+        READ[page.name] = Reader(answer.content.decode())
+    return READ[page.name]
 
 
 def test_a_page_is_well_formed_and_says_what_it_is(read: Reader) -> None:

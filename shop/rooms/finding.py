@@ -11,7 +11,7 @@ from dataclasses import dataclass
 from urllib.parse import unquote
 
 from django.db.models import Q
-from django.urls import NoReverseMatch, reverse
+from django.urls import reverse
 
 from bottles.models import Bottle
 from shop.cars.selectors import cars_starting
@@ -91,10 +91,7 @@ def _owner(one: Bottle) -> str:
 
 def bottle_url(code: str) -> str:
     """Return the address of a bottle's page."""
-    try:
-        return reverse("bottles:bottle", args=[code])
-    except NoReverseMatch:
-        return f"/b/{code}"
+    return reverse("bottles:bottle", args=[code])
 
 
 def _cars(text: str, limit: int) -> list[Match]:

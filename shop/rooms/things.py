@@ -45,10 +45,12 @@ def car(request: HttpRequest, pk: int) -> HttpResponse:
     """A car: its owner and engine, and the bottle that is on it now."""
     one = get_object_or_404(Car.objects.select_related("customer"), pk=pk)
     system = system_of(request)
+    on = bottles_on_cars([one.pk], system=system).get(one.pk, [])
+    owned = bottles_of_customer(one.customer_id, system=system) if one.customer_id else []
     context = {
         "one": one,
-        "bottles": bottles_on_cars([one.pk], system=system).get(one.pk, []),
-        "owners": bottles_of_customer(one.customer_id, system=system) if one.customer_id else [],
+        "bottles": on,
+        "others": [bottle for bottle in owned if bottle not in on],
         "acts": history_of(f"car:{one.pk}"),
     }
     return render(request, "rooms/car.html", context)

@@ -106,7 +106,8 @@ def test_a_cars_page_shows_what_is_on_it_and_its_owners_other_bottles(
     owner = CustomerFactory()
     car = CarFactory(customer=owner)
     on = placed(owned(BottleFactory(), owner), "car", car=car)
+    other = placed(owned(BottleFactory(), owner), "car", car=CarFactory(number="31", car_class=""))
     page = client_of(technician).get(f"/cars/{car.pk}")
     assert [row.code for row in page.context["bottles"]] == [on.code]
-    assert page.context["owners"][0].where == f"on {car}"
+    assert [(row.code, row.where) for row in page.context["others"]] == [(other.code, "on car 31")]
     assert client_of(technician).get("/cars/999999").status_code == 404
