@@ -24,7 +24,9 @@ def twins_of(*, maker: str, mark: str, serial: str, but: int | None = None) -> T
     if not serial:
         return Twins(None, None)
     same = perhaps = None
-    for other in Bottle.objects.filter(serial__iexact=serial).exclude(pk=but).order_by("pk"):
+    for other in Bottle.objects.filter(serial__iexact=serial).order_by("pk"):
+        if other.pk == but:
+            continue
         makers = _alike(maker, other.maker)
         marks = _alike(mark, other.mark) or _read_alike(mark, other.mark)
         if makers and marks:
