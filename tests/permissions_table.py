@@ -120,6 +120,10 @@ REGISTER = [
     Page("bottles:owner", DESK, _of_bottle),
     Page("bottles:condition", EVERYONE, _of_bottle),
     Page("bottles:end_condition", BENCH, lambda world: {"code": world.bottle.code, "pk": world.condition.pk}),
+    Page("bottles:check_in", EVERYONE, _of_bottle),
+    Page("bottles:move", EVERYONE, _of_bottle),
+    Page("bottles:wanted", EVERYONE, _of_bottle),
+    Page("bottles:hand_over", EVERYONE, _of_bottle),
     Page("bottles:condemn", MANAGERS, _of_bottle),
     Page("bottles:retire", MANAGERS, _of_bottle),
 ]

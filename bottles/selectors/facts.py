@@ -97,8 +97,8 @@ def _read_stars(found: dict[int, _Rows], star_items: Collection[str]) -> None:
         return
     done: dict[int, set[str]] = defaultdict(set)
     checks = RefillCheck.objects.filter(refill__bottle__in=starred, item__in=star_items, passed=True)
-    for refill, item in checks.values_list("refill_id", "item"):
-        done[refill].add(item)
+    for key, item in checks.values_list("refill_id", "item"):
+        done[key].add(item)
     since = {stamp.id: stamp for rows in found.values() for stamp in rows.stamps}
     for refill in Refill.objects.filter(bottle__in=starred).exclude(ended_by="abandoned").order_by("id"):
         stamp = since[starred[refill.bottle_id]]

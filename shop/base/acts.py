@@ -10,21 +10,24 @@ from __future__ import annotations
 import uuid
 from collections.abc import Iterator
 from contextlib import contextmanager
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-from django.contrib.auth.base_user import AbstractBaseUser
 from django.db import IntegrityError, models, transaction
 
 from shop.base import clock
 from shop.base.errors import AlreadyDone, Stale
 from shop.base.models import Act
 
+if TYPE_CHECKING:
+    # For the checker alone: who acts is whatever the settings name as the user.
+    from shop.people.models import User
+
 
 @contextmanager
 def begin(
     *,
     key: uuid.UUID,
-    person: AbstractBaseUser | None,
+    person: User | None,
     code: str,
     subject: str,
     reason: str = "",

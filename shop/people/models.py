@@ -44,7 +44,7 @@ class User(AbstractBaseUser):
     objects = UserManager()
 
     USERNAME_FIELD = "sign_in_name"
-    REQUIRED_FIELDS: list[str] = []
+    REQUIRED_FIELDS: list[str] = []  # type: ignore[misc]
 
     class Meta:
         constraints = [models.UniqueConstraint(Lower("sign_in_name"), name="one_person_a_sign_in_name")]

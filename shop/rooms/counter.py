@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from typing import Any
+from typing import Any, cast
 
 from django.http import HttpRequest, HttpResponse
 from django.shortcuts import render
 from django.urls import reverse
 
-from bottles.models import Refill, Standing, Supply
+from bottles.models import Refill, Scale, Standing, Supply
 from bottles.rules.fitness import Judgement
 from bottles.selectors import counter as selected
 from bottles.selectors.judging import judge_many
@@ -17,7 +17,7 @@ from bottles.views.wording import Words, words_for
 from shop.base import clock
 from shop.base.models import Shop
 from shop.base.permissions import EVERYONE, allow
-from shop.physics.weights import reading_not_above
+from shop.physics.weights import MassStyle, format_mass, reading_not_above
 
 
 @allow(EVERYONE, room="counter")
@@ -47,11 +47,18 @@ def _refill(refill: Refill, shop: Shop) -> dict[str, Any]:
         "code": refill.bottle.code,
         "station": refill.station.name,
         "source": draws[-1].source.code if draws else "",
-        "stop_at": reading_not_above(refill.stop_at_g, scale.style, scale.resolution_g) if scale else f"{refill.stop_at_g} g",
+        "stop_at": _reading(refill.stop_at_g, scale),
         "waits": (
             f"{refill.wait_note} until {refill.wait_until.astimezone(clock.zone(shop)):%H:%M}" if refill.wait_until else ""
         ),
     }
+
+
+def _reading(grams: int, scale: Scale | None) -> str:
+    """A gross weight as that scale writes it."""
+    if scale is None:
+        return format_mass(grams, "kg")
+    return reading_not_above(grams, cast(MassStyle, scale.style), scale.resolution_g)
 
 
 def _bottle(one: Standing, judgement: Judgement, words: Words, shop: Shop) -> dict[str, Any]:
