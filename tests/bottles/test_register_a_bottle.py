@@ -306,3 +306,13 @@ def test_a_bottle_known_to_the_service_is_refused_with_itself(shop: Any) -> None
     with pytest.raises(BottleKnown) as refused:
         bottle(stamps={"test": seen("test", "05/2023").date.typed})
     assert refused.value.bottle == first
+
+
+def test_a_code_that_another_desk_took_a_moment_ago_is_followed_by_the_next(shop: Any, monkeypatch: Any) -> None:
+    first = bottle()
+    seen_then = iter([first.code])  # what this desk saw before the other one saved
+    monkeypatch.setattr("bottles.services.registering.next_code", lambda use: next(seen_then, None) or next_code(use))
+    second = bottle(serial="2")
+    assert second.code == "T-0002"
+    assert second.act.subject == "bottle:T-0002"
+    assert Act.objects.filter(code="bottle.registered").count() == 2
