@@ -84,14 +84,7 @@ def answers(options: dict[str, Any]) -> dict[str, Any]:
             f"This shop is new and nobody is at the terminal to ask: give {flags}, or use --demo for the invented shop."
         )
     for question in QUESTIONS:
-        given = options.get(question.option)
-        if given is None:
-            found[question.option] = _ask(question)
-            continue
-        try:
-            found[question.option] = question.read(given)
-        except ValueError as error:
-            raise CannotOpen(f"{_flag(question)} {error}.") from error
+        found[question.option] = _ask(question) if question in missing else _read(question, options)
     return {
         "name": found["shop_name"],
         "country": found["country"],
@@ -101,6 +94,18 @@ def answers(options: dict[str, Any]) -> dict[str, Any]:
         "manager_name": found["manager"],
         "manager_password": _password(asked=bool(missing)),
     }
+
+
+def demo_wishes(options: dict[str, Any]) -> dict[str, Any]:
+    """Return what flags say about the invented shop; its name and its people are given.
+
+    Raises CannotOpen.
+    """
+    given = [question for question in QUESTIONS if options.get(question.option) is not None]
+    for question in given:
+        if question.option in ("shop_name", "manager"):
+            raise CannotOpen(f"{_flag(question)} is for a shop of your own: leave it out, or leave --demo out.")
+    return {question.option: _read(question, options) for question in given}
 
 
 def new_password() -> str:
@@ -116,6 +121,13 @@ def _password(*, asked: bool) -> str:
     if given and len(given) < 8:
         raise CannotOpen("The manager's password must have at least 8 characters.")
     return given or new_password()
+
+
+def _read(question: Question, options: dict[str, Any]) -> Any:
+    try:
+        return question.read(options[question.option])
+    except ValueError as error:
+        raise CannotOpen(f"{_flag(question)} {error}.") from error
 
 
 def _ask(question: Question) -> Any:

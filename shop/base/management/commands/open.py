@@ -204,6 +204,7 @@ def _found(options: dict[str, Any], say: Callable[[str], None]) -> list[tuple[st
         except (Refusal, ValidationError) as error:
             raise CannotOpen(getattr(error, "sentence", "") or "; ".join(getattr(error, "messages", []))) from error
         return [("manager", manager.sign_in_name, new["manager_password"])]
+    wishes = founding.demo_wishes(options)
     # The job first: should this be cut off between the two, the next start finds no shop and goes on.
     jobs.ask("demo.fill", "demo")
-    return list(import_module("shop.demo.people").demo_people())
+    return list(import_module("shop.demo.people").demo_people(**wishes))
