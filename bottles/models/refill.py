@@ -92,7 +92,7 @@ class Forecast(Fact):
     readings = models.JSONField()  # {name: {"typed": …, "stored": …}}
     physics_version = models.CharField(max_length=20)
     low_g = models.PositiveIntegerField()
-    likely_g = models.PositiveIntegerField()
+    likely_g = models.PositiveIntegerField(null=True)  # null: the supply bottle was known by a reading alone
     high_g = models.PositiveIntegerField()
     result = models.JSONField()
 

@@ -11,7 +11,7 @@ from datetime import datetime
 
 from django.db import IntegrityError, transaction
 
-from bottles.models import Bottle, Delivery, Draw, Movement, Refill, Scale, Standing, Tare, Weighing, WeighingStrike
+from bottles.models import Bottle, Delivery, Draw, Refill, Scale, Standing, Tare, Weighing, WeighingStrike
 from bottles.physics import weighing as physics
 from bottles.selectors.history import history_of
 from bottles.selectors.scales import last_check, scale_uncertainty
@@ -19,6 +19,7 @@ from bottles.services.booking import book, reverse
 from bottles.services.gaps import end_unknown
 from bottles.services.locking import lock
 from bottles.services.posting import Move, account_of, own_account
+from bottles.services.refill_books import post_flows
 from bottles.services.refusals import locked
 from bottles.services.settling import settle as settle_books
 from bottles.services.standing import restate
@@ -168,11 +169,12 @@ def strike(
     if not reason.strip():
         raise Refusal("Say why it's struck: what was mistyped, which bottle was on the scale.", code="no reason", field="reason")
     bottle = weighing.bottle
+    refill = weighing.refill or Refill.objects.filter(act_id=weighing.act_id, bottle=bottle).first()
     with acts.begin(
         key=key, person=person, code="weighing.struck", subject=f"bottle:{bottle.code}", reason=reason.strip(),
         changes={"weighing": weighing.pk},
     ) as act:
-        lock([bottle, *_others(weighing)])
+        lock([bottle, *_others(weighing, refill)])
         try:
             with transaction.atomic():
                 WeighingStrike.objects.create(act=act, weighing=weighing)
@@ -182,18 +184,25 @@ def strike(
         if right is not None:
             kept = weigh_in(
                 act=act, bottle=bottle, scale=weighing.scale, gross=right, wet=weighing.wet, step=weighing.step,
-                happened_at=weighing.happened_at, settle=False,
+                happened_at=weighing.happened_at, refill=refill, settle=False,
             )
         _undo(act, weighing, kept)
+        if refill is not None:
+            post_flows(act=act, refill=refill, weighing=kept)
         settle_books(act=act, bottle=bottle, reason=reason)
         standing: Standing = restate(bottle)
         return standing.weighing if right is None else kept
 
 
-def _others(weighing: Weighing) -> list[Bottle]:
-    """Return the other bottles that its movements touched."""
-    lines = [line for movement in weighing.movements.all() for line in movement.lines.select_related("source__bottle", "target__bottle")]
-    return [account.bottle for line in lines for account in (line.source, line.target) if account.bottle]
+def _others(weighing: Weighing, refill: Refill | None) -> list[Bottle]:
+    """Return the other bottles that its movements touched, or that its refill drew on."""
+    lines = [
+        line
+        for movement in weighing.movements.all()
+        for line in movement.lines.select_related("source__bottle", "target__bottle")
+    ]
+    drawn = [draw.source for draw in refill.draws.select_related("source")] if refill else []
+    return [*drawn, *(account.bottle for line in lines for account in (line.source, line.target) if account.bottle)]
 
 
 def _undo(act: Act, weighing: Weighing, right: Weighing | None) -> None:
@@ -203,6 +212,8 @@ def _undo(act: Act, weighing: Weighing, right: Weighing | None) -> None:
     something to be drawn from all the while; a return after it.
     """
     standing = weighing.movements.filter(reversal__isnull=True).exclude(kind="reversal")
+    # What a refill moved is worked out anew from its weighings left: only the difference is posted.
+    standing = standing.exclude(refill__isnull=False, kind__in=("refill", "vent"))
     for movement in standing.select_related("weighing", "refill").order_by("-id"):
         if movement.kind == "delivery":
             _deliver_anew(act, weighing, right)

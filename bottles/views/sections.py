@@ -18,7 +18,9 @@ from shop.base.permissions import EVERYONE, Role
 
 SECTIONS: list[tuple[str, str]] = [
     ("bottles/_judgement.html", "bottles.views.judgement.section"),
+    ("bottles/_contents.html", "bottles.views.contents.section"),
     ("bottles/_register.html", "bottles.views.register_section.section"),
+    ("bottles/_refills.html", "bottles.views.refills.section"),
 ]
 
 # The answer stands above what can be done; all else below.
@@ -39,7 +41,7 @@ class Action:
 ACTIONS: list[Action] = [
     Action("bottles:check_in", "Check in", needs_in=False, likely=True),
     Action("bottles:weigh", "Weigh", likely=True),
-    Action("bottles:forecast", "Forecast and fill", needs_in=True, likely=True),
+    Action("bottles:fill", "Forecast and fill", needs_in=True, likely=True),
     Action("bottles:hand_over", "Hand over", needs_in=True),
     Action("bottles:move", "Move", needs_in=True),
     Action("bottles:condition", "Note damage"),

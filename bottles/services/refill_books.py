@@ -1,0 +1,129 @@
+"""Post what a refill moved: at each weighing the difference to what was posted before.
+
+What the whole refill moved so far is worked out anew from all its weighings (`rules.refill_flows`)
+and compared with the movements that carry its key. So an open refill's books are right at every
+moment, and a weighing that was struck or came late is put right by the next one.
+
+Called inside an act's transaction, after its bottles are locked.
+"""
+
+from __future__ import annotations
+
+import math
+from collections import defaultdict
+from collections.abc import Container
+
+from django.db.models import Q
+
+from bottles.models import Account, Line, Movement, Refill, Weighing
+from bottles.physics.weighing import net_uncertainty
+from bottles.rules.refill_flows import Flow, Read, Source, flows
+from bottles.selectors.refills import Course, course_of, net_without_hose, source_weighings
+from bottles.services.booking import book
+from bottles.services.posting import Move, account_of, own_account
+from shop.base.models import Act
+
+# A line's loss is known to about a half: liquid when the valve is shut, vapour once it has warmed
+# (common practice, no source).
+LINE_SHARE = 2
+
+Pair = tuple[int, int]  # keys of two accounts: from, to
+
+
+def post_flows(*, act: Act, refill: Refill, weighing: Weighing | None) -> list[Movement]:
+    """Bring the books of a refill to its weighings; return what was posted, nothing where they agree."""
+    course = course_of(refill)
+    if course.before is None or not course.draws:
+        return []
+    wanted = _wanted(course)
+    posted = _posted(refill, wanted)
+    happened_at = weighing.happened_at if weighing else act.recorded_at
+    filled: list[Move] = []
+    vented: list[Move] = []
+    for pair in sorted(wanted.keys() | posted.keys()):
+        grams, error, origin = wanted.get(pair, (0, 0, "computed"))
+        difference = grams - posted.get(pair, 0)
+        if not difference:
+            continue
+        source, target = (Account.objects.get(pk=key) for key in (pair if difference > 0 else pair[::-1]))
+        move = Move(source=source, target=target, grams=abs(difference), origin=origin, error_g=error)
+        (vented if "vented" in (source.kind, target.kind) else filled).append(move)
+    made = [
+        book(act=act, kind=kind, happened_at=happened_at, moves=moves, refill=refill, weighing=weighing)
+        for kind, moves in (("refill", filled), ("vent", vented))
+        if moves
+    ]
+    return [movement for movement in made if movement is not None]
+
+
+def flows_of(course: Course) -> list[Flow]:
+    """Return all that a refill moved so far, by its weighings."""
+    if course.before is None:
+        return []
+    before = Read(net_without_hose(course.refill, course.before), course.before.error_g, 0, line_off=True)
+    reads = [
+        Read(
+            net_without_hose(course.refill, row), row.error_g, course.draw_at(row.happened_at, row.act_id),
+            line_off=row.step == "disconnected",
+        )
+        for row in course.reads
+    ]
+    return flows(before, reads, [_source(course, number) for number in range(len(course.draws))])
+
+
+def line_loss_of(course: Course, number: int) -> tuple[int, int]:
+    """Return the line loss of a draw, as entered for its station or as forecast, and its ±."""
+    station, draw = course.refill.station, course.draws[number]
+    if station.line_loss_g is not None:
+        return station.line_loss_g, math.ceil(station.line_loss_g / LINE_SHARE)
+    grams = int(draw.forecast.result.get("line_g", 0)) if draw.forecast else 0
+    return grams, math.ceil(grams / LINE_SHARE)
+
+
+def _source(course: Course, number: int) -> Source:
+    line_g, line_error_g = line_loss_of(course, number)
+    moved_on = number + 1 < len(course.draws)
+    rows = source_weighings(course, number)
+    if len(rows) < 2:
+        return Source(line_g=line_g, line_error_g=line_error_g, moved_on=moved_on)
+    first, last = rows[0], rows[-1]
+    return Source(
+        lost_g=max(0, first.net_g) - max(0, last.net_g), lost_error_g=net_uncertainty(first.error_g, last.error_g),
+        line_g=line_g, line_error_g=line_error_g, moved_on=moved_on,
+    )  # fmt: skip
+
+
+def _wanted(course: Course) -> dict[Pair, tuple[int, int, str]]:
+    """Grams from one account to another over the whole refill, with their ± and origin."""
+    receiver = account_of(course.refill.bottle)
+    found: dict[Pair, tuple[int, int, str]] = {}
+    for flow in flows_of(course):
+        supply = account_of(course.draws[flow.draw].source) if flow.draw is not None else receiver
+        source, target = {
+            "arrived": lambda s: (s, receiver),
+            "line": lambda s: (s, own_account("line")),
+            "missing": lambda s: (s, own_account("unaccounted")),
+            "found": lambda s: (own_account("scale"), receiver),
+            "found beyond": lambda s: (own_account("unaccounted"), receiver),
+            "vented": lambda s: (receiver, own_account("vented")),
+        }[flow.kind](supply)
+        before = found.get((source.pk, target.pk), (0, 0, flow.origin))
+        found[source.pk, target.pk] = (before[0] + flow.grams, net_uncertainty(before[1], flow.error_g), flow.origin)
+    return found
+
+
+def _posted(refill: Refill, wanted: Container[Pair]) -> dict[Pair, int]:
+    """Grams between two accounts that carry this refill, counted the way they're wanted.
+
+    What had to be booked as found because some books fell short (it comes from *unaccounted* and is
+    computed) is no flow of the refill and mustn't be taken back by the next weighing.
+    """
+    net: dict[Pair, int] = defaultdict(int)
+    rows = Line.objects.filter(movement__refill=refill, movement__kind__in=("refill", "vent", "reversal"))
+    rows = rows.exclude(Q(source__kind="unaccounted") | Q(target__kind="unaccounted"), origin="computed")
+    for source, target, grams in rows.values_list("source_id", "target_id", "grams"):
+        if (target, source) in net:
+            net[target, source] -= grams
+        else:
+            net[source, target] += grams
+    return {pair[::-1] if pair[::-1] in wanted else pair: -grams if pair[::-1] in wanted else grams for pair, grams in net.items()}

@@ -1,0 +1,230 @@
+"""What happens while a refill is open: weigh, wait, go on from another supply bottle, close.
+
+Guarantees: nitrous is posted at each weighing, closing posts nothing; a refill closes only on a
+weighing with the line disconnected, at or below the limit; a wet weighing lets it close (ice only
+adds to the reading) but never as *full*; what a scale said is kept whatever follows from it.
+"""
+
+from __future__ import annotations
+
+import uuid
+from dataclasses import dataclass
+from datetime import datetime
+
+from bottles.models import Draw, Refill, Supply, Weighing
+from bottles.selectors.refills import Course, course_of
+from bottles.services.forecasting import Answer, Asked, DangerSign
+from bottles.services.locking import lock
+from bottles.services.refill_books import post_flows
+from bottles.services.refilling import draw_on, refuse_source
+from bottles.services.standing import restate
+from bottles.services.weighing import weigh_in
+from shop.base import acts, clock
+from shop.base.errors import NotReady, Refusal
+from shop.base.models import Act
+from shop.people.models import User
+from shop.physics.units import Entry
+
+
+class Closed(NotReady):
+    """This refill is closed. Its receipt says how it ended."""
+
+    code = "refill closed"
+
+
+class Overfull(NotReady):
+    """The bottle holds more than its limit. Let nitrous out outdoors until it weighs no more than that, then close."""
+
+    code = "overfull"
+
+
+class NotDisconnected(NotReady):
+    """Disconnect the line, weigh the bottle so, and close then: the weight without the line counts."""
+
+    code = "not disconnected"
+
+
+class WetProvesNothing(NotReady):
+    """Wet or frosted, a bottle can't be proven full: ice counts as grams. Dry it and weigh again, or close it otherwise."""
+
+    code = "wet"
+
+
+@dataclass(frozen=True, slots=True)
+class Weight:
+    """What the scale says while a refill is open."""
+
+    gross: Entry
+    line_off: bool
+    wet: bool = False
+    supply_gross: Entry | None = None
+    happened_at: datetime | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Weighed:
+    """The weighing; whether the refill was closed by it, and else the sentence why not."""
+
+    weighing: Weighing
+    closed: bool = False
+    why_not: str = ""
+
+
+def weigh_refill(
+    *, key: uuid.UUID, person: User | None, refill: Refill, weight: Weight, ended_by: str = ""
+) -> Weighed:
+    """Weigh the bottle being filled, post what moved, and close the refill where that was asked for.
+
+    The weighing is kept even where the refill can't be closed on it. Raises Closed; NotReady where
+    the supply bottle changed meanwhile; what `weigh_in` raises.
+    """
+    draw = _draw_in_force(refill)
+    with acts.begin(
+        key=key, person=person, code="refill.weighed", subject=f"bottle:{refill.bottle.code}",
+        changes={"refill": refill.pk, "line_off": weight.line_off},
+    ) as act:
+        refill = _locked(refill, draw)
+        weighing = _weigh(act, refill, draw, weight)
+        if not ended_by:
+            return Weighed(weighing)
+        try:
+            _close(refill, ended_by)
+        except (Overfull, NotDisconnected, WetProvesNothing) as why:
+            return Weighed(weighing, why_not=why.sentence)
+    return Weighed(weighing, closed=True)
+
+
+def wait(
+    *, key: uuid.UUID, person: User | None, refill: Refill, version: int, until: datetime | None, note: str = ""
+) -> None:
+    """Let a refill wait ("chill until 15:40"), or go on where no time is given.
+
+    Raises Closed; Stale where someone else changed it meanwhile.
+    """
+    if until is not None and until <= clock.now():
+        raise Refusal("That time is past. Give a time to come, or leave it empty to go on.", code="past", field="until")
+    if until is not None and (until - clock.now()).days >= 3:
+        raise Refusal("That's longer than three days. Close the refill instead.", code="too long", field="until")
+    with acts.begin(
+        key=key, person=person, code="refill.waits", subject=f"bottle:{refill.bottle.code}",
+        changes={"refill": refill.pk, "until": until.isoformat() if until else None, "note": note.strip()},
+    ):
+        current = _locked(refill, None)
+        acts.update_master(current, version=version, values={"wait_until": until, "wait_note": note.strip()[:80] if until else ""})
+
+
+def add_draw(
+    *, key: uuid.UUID, person: User | None, refill: Refill, version: int, asked: Asked, answer: Answer, weight: Weight
+) -> Draw:
+    """Go on from another supply bottle: weigh first, so that what arrived belongs to the one before.
+
+    Raises Closed, Overfull, DangerSign; Stale where someone else went on meanwhile; NotReady where
+    the supply bottle was taken off or may not be emptied.
+    """
+    draw = _draw_in_force(refill)
+    supply = asked.supply
+    with acts.begin(
+        key=key, person=person, code="refill.supply changed", subject=f"bottle:{refill.bottle.code}",
+        changes={"refill": refill.pk, "from": draw.source.code, "to": supply.bottle.code},
+    ) as act:
+        current = _locked(refill, draw, also=supply)
+        acts.update_master(current, version=version, values={"wait_until": None, "wait_note": ""})
+        if supply.bottle_id == draw.source_id:
+            raise NotReady(f"It's being filled from {supply.bottle.code} already.", code="same supply", field="supply")
+        if supply.bottle_id == current.bottle_id:
+            raise NotReady("A bottle isn't filled from itself. Choose a supply bottle.", code="same bottle", field="supply")
+        if not Supply.objects.filter(pk=supply.pk, station_id=current.station_id).exists():
+            raise NotReady(
+                f"{supply.bottle.code} isn't connected to this station any more.", code="taken off", field="supply"
+            )
+        if answer.blocked:
+            raise DangerSign(field="gauge")
+        refuse_source(supply.bottle, asked.shop)
+        _weigh(act, current, draw, weight)
+        if course_of(current).overfull is not None:
+            raise Overfull
+        new = draw_on(
+            act=act, refill=current, asked=asked, answer=answer, reason="", happened_at=weight.happened_at or clock.now()
+        )
+        # What is posted once the line was taken over: the loss of the one before.
+        post_flows(act=act, refill=current, weighing=None)
+    return new
+
+
+def close_refill(*, key: uuid.UUID, person: User | None, refill: Refill, version: int, ended_by: str) -> None:
+    """Close a refill on the weighing that was made with the line disconnected.
+
+    Raises Closed, NotDisconnected, Overfull, WetProvesNothing, Stale.
+    """
+    with acts.begin(
+        key=key, person=person, code="refill.closed", subject=f"bottle:{refill.bottle.code}",
+        changes={"refill": refill.pk, "ended_by": ended_by},
+    ):
+        current = _locked(refill, None)
+        _close(current, ended_by, version=version)
+
+
+def may_close(course: Course, ended_by: str) -> None:
+    """Raise where a refill can't be closed: by its latest weighing, and as what."""
+    last = course.reads[-1] if course.reads else None
+    if course.overfull is not None:
+        raise Overfull
+    if last is None or last.step != "disconnected":
+        raise NotDisconnected
+    if last.wet and ended_by == "limit":
+        raise WetProvesNothing(field="ended_by")
+
+
+def _close(refill: Refill, ended_by: str, *, version: int | None = None) -> None:
+    if ended_by not in dict(Refill.ENDS):
+        raise Refusal("Say what ended the refill.", code="no end", field="ended_by")
+    course = course_of(refill)
+    may_close(course, ended_by)
+    acts.update_master(
+        refill, version=refill.version if version is None else version,
+        values={
+            "closed_at": max(clock.now(), course.reads[-1].happened_at), "ended_by": ended_by, "wait_until": None, "wait_note": "",
+        },
+    )  # fmt: skip
+    restate(refill.bottle)
+
+
+def _weigh(act: Act, refill: Refill, draw: Draw, weight: Weight) -> Weighing:
+    station = refill.station
+    if station.scale is None:
+        raise NotReady(f"{station} has no scale any more. A manager can give it one.", code="no scale")
+    pull = abs(station.hose_pull_g)
+    weighing = weigh_in(
+        act=act, bottle=refill.bottle, scale=station.scale, gross=weight.gross, wet=weight.wet,
+        step="disconnected" if weight.line_off else "after", happened_at=weight.happened_at, refill=refill, settle=False,
+        wider_g=0 if weight.line_off else pull,
+    )  # fmt: skip
+    if weight.supply_gross is not None:
+        if station.supply_scale is None:
+            raise Refusal("This station has no scale for its supply bottles.", code="no supply scale", field="supply_gross")
+        weigh_in(
+            act=act, bottle=draw.source, scale=station.supply_scale, gross=weight.supply_gross, wet=False, step="after",
+            happened_at=weight.happened_at, refill=refill, settle=False,
+        )  # fmt: skip
+    post_flows(act=act, refill=refill, weighing=weighing)
+    return weighing
+
+
+def _draw_in_force(refill: Refill) -> Draw:
+    return refill.draws.select_related("source", "forecast").order_by("-id")[0]
+
+
+def _locked(refill: Refill, draw: Draw | None, *, also: Supply | None = None) -> Refill:
+    """Lock the bottles and return the refill as it stands now; raise Closed, or NotReady where it moved on."""
+    others = [one.source for one in refill.draws.select_related("source")]
+    lock([refill.bottle, *others, *([also.bottle] if also else [])])
+    current = Refill.objects.select_related("bottle", "station__scale", "station__supply_scale").get(pk=refill.pk)
+    if current.closed_at is not None:
+        raise Closed
+    if draw is not None and _draw_in_force(current).pk != draw.pk:
+        raise NotReady(
+            "Someone went on from another supply bottle meanwhile. Look at the page again, then weigh.", code="moved on"
+        )
+    return current
+
+

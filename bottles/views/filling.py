@@ -1,0 +1,226 @@
+"""The page that forecasts a refill and opens it, and the part of it that answers while one types."""
+
+from __future__ import annotations
+
+import uuid
+from typing import Any
+
+from django.contrib import messages
+from django.http import HttpRequest, HttpResponse, HttpResponseRedirect
+from django.shortcuts import render
+from django.urls import reverse
+
+from bottles.forms.filling import FillForm, ReadingsForm
+from bottles.models import Bottle, Refill, Station, Supply
+from bottles.rules.conditions import label_of
+from bottles.rules.fitness import Judgement
+from bottles.selectors.filling_offers import readings_offered, supplies_offered
+from bottles.selectors.judging import judge_bottle
+from bottles.selectors.scales import scale_checked
+from bottles.services.forecasting import Asked, work_out
+from bottles.services.refilling import Opening, look_items, open_refill
+from bottles.services.scales import check_scale
+from bottles.views.forecast_words import forecast_context, stop_figure
+from bottles.views.judgement import verdict
+from bottles.views.of_bottle import BottleActView, bottle_or_404
+from bottles.views.refill_words import RefillWords, refill_words
+from shop.base.errors import AlreadyDone, Refusal
+from shop.base.models import Shop
+from shop.base.permissions import EVERYONE, allow
+from shop.people.models import User
+from shop.physics.errors import NoSolution, PhysicsError
+
+CAUTIONS = (
+    "Nitrous is an oxidiser and is heavier than air: doors open, no oil or grease on any fitting, no flame, no inhaling.",
+    "Liquid freezes skin at once: gloves and eye protection on. The bottle stands free on its scale and can't fall.",
+    "By weight, never by pressure; never above the limit. Nothing is warmed above 52 °C (125 °F).",
+)
+
+
+class Fill(BottleActView):
+    """Forecast, and open the refill."""
+
+    form_class = FillForm
+    template_name = "bottles/fill.html"
+    submit = "Open the refill"
+    said = ""
+    supply: Supply | None
+    judgement: Judgement
+
+    def find(self, **kwargs: Any) -> None:
+        super().find(**kwargs)
+        self.judgement = judge_bottle(self.bottle, shop=self.shop)
+        self.supply = chosen_supply(self.request, self.bottle)
+
+    def get(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
+        opened = Refill.objects.filter(bottle=self.bottle, closed_at__isnull=True).first()
+        if opened is not None:
+            return HttpResponseRedirect(reverse("bottles:refill", args=[opened.pk]))
+        return super().get(request, *args, **kwargs)
+
+    def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
+        if "forecast" in request.POST:
+            form = self.form(request.POST)
+            form.is_valid()
+            return self.show(form)
+        return super().post(request, *args, **kwargs)
+
+    def initial(self) -> dict[str, Any]:
+        values: dict[str, Any] = dict(readings_offered(self.supply.station if self.supply else None).values)
+        return values | {"supply": self.supply.pk if self.supply else None}
+
+    def form_kwargs(self) -> dict[str, Any]:
+        return fill_form_kwargs(self.request, self.bottle, self.shop, self.supply, self.judgement)
+
+    def act(self, form: FillForm, person: User, key: uuid.UUID) -> str:
+        self._check(form, person, key)
+        asked = self.asked(form)
+        readings = form.readings()
+        if readings is None:
+            raise Refusal("Read both temperatures first.", code="reading missing")
+        answer = work_out(asked, readings)
+        data = form.cleaned_data
+        pressure = data.get("pressure")
+        found = open_refill(
+            key=key, person=person,
+            opening=Opening(
+                asked=asked, answer=answer, method=data["method"], look=form.look(), wet=data["wet"],
+                pressure_kept=None if not pressure else pressure == "kept", dried_and_purged=pressure == "purged",
+                happened_at=data["happened_at"], reason=data["reason"],
+            ),
+        )  # fmt: skip
+        if found.refill is None:
+            what = ", ".join(label_of(code) for code in found.noted)
+            messages.error(self.request, f"Not filled. Noted on the bottle: {what}. Keep it apart and tell its owner.")
+            return self.bottle.get_absolute_url()
+        return reverse("bottles:refill", args=[found.refill.pk])
+
+    def _check(self, form: FillForm, person: User, key: uuid.UUID) -> None:
+        """Record the scale's check that came with the form: an act of its own, whatever follows."""
+        data = form.cleaned_data
+        supply: Supply = data["supply"]
+        if not form.check_due or supply.station.scale is None:
+            return
+        try:
+            check = check_scale(
+                key=uuid.uuid5(key, "scale check"), person=person, scale=supply.station.scale, known=data["check_known"],
+                read=data["check_read"], happened_at=data["happened_at"],
+            )  # fmt: skip
+        except AlreadyDone:
+            return
+        if not check.passed:
+            raise Refusal(
+                f"{supply.station.scale} is out by more than it may be. The check is kept; use another scale until it's put right.",
+                code="scale failed its check", field="check_read",
+            )  # fmt: skip
+
+    def asked(self, form: ReadingsForm) -> Asked:
+        """What the forecast is asked for."""
+        return asked_for(self.bottle, form.cleaned_data["supply"], self.judgement, self.shop)
+
+    def first_page(self, act: Any) -> str:
+        refill = Refill.objects.filter(act=act).first()
+        return reverse("bottles:refill", args=[refill.pk]) if refill else self.bottle.get_absolute_url()
+
+    def context(self) -> dict[str, Any]:
+        answer = verdict(self.judgement)
+        reasons = [one for one in self.judgement.reasons if "filling" in one.about and one.severity not in ("explains", "warns")]
+        return {
+            "bottle": self.bottle, "cautions": CAUTIONS, "kind": answer.kind, "word": answer.word,
+            "reasons": [one for one in reasons if one.code not in ("look-owed", "star-check-owed")],
+            "refused": self.judgement.may_be_filled in ("no", "unknown"), "has_supplies": self.supply is not None,
+        }  # fmt: skip
+
+    def show(self, form: Any, *, status: int = 200) -> HttpResponse:
+        words = refill_words(self.request, self.shop)
+        context = {"form": form, "submit": self.submit} | self.context()
+        context |= forecast_part(form, self.bottle, self.judgement, self.shop, words)
+        return render(self.request, self.template_name, context, status=status)
+
+
+@allow(EVERYONE, room="counter")
+def forecast_live(request: HttpRequest, code: str) -> HttpResponse:
+    """The forecast's part alone, from what is typed so far; nothing is saved."""
+    bottle = bottle_or_404(code)
+    shop = Shop.objects.get()
+    request.shop = shop  # type: ignore[attr-defined]
+    judgement = judge_bottle(bottle, shop=shop)
+    supply = chosen_supply(request, bottle)
+    form = FillForm(
+        request.POST, person=request.user, shop=shop, **fill_form_kwargs(request, bottle, shop, supply, judgement)  # type: ignore[arg-type]
+    )
+    form.is_valid()
+    words = refill_words(request, shop)
+    return render(request, "bottles/_forecast.html", {"bottle": bottle} | forecast_part(form, bottle, judgement, shop, words))
+
+
+def chosen_supply(request: HttpRequest, bottle: Bottle, station: Station | None = None) -> Supply | None:
+    """The supply bottle that the form or the address names; else the weakest."""
+    asked = request.POST.get("supply") or request.GET.get("supply") or ""
+    offered = supplies_offered(bottle, station)
+    found = offered.filter(pk=int(asked)).first() if asked.isdigit() and len(asked) < 18 else None
+    return found or offered.first()
+
+
+def fill_form_kwargs(
+    request: HttpRequest, bottle: Bottle, shop: Shop, supply: Supply | None, judgement: Judgement
+) -> dict[str, Any]:  # fmt: skip
+    """What the form needs to know of bottle, station and day."""
+    scale = supply.station.scale if supply else None
+    due = str(scale) if scale is not None and not scale_checked(scale, shop).passed_today else ""
+    return {
+        "bottle": bottle, "offered": readings_offered(supply.station if supply else None),
+        "mass": refill_words(request, shop).mass, "items": look_items(bottle, shop),
+        "ask_pressure": asks_pressure(judgement), "check_due": due,
+    }  # fmt: skip
+
+
+def asks_pressure(judgement: Judgement) -> bool:
+    """Whether it isn't known that the bottle kept its pressure: an empty or open one."""
+    return "pressure kept" in judgement.not_judged or any(reason.code == "dry-and-purge" for reason in judgement.reasons)
+
+
+def asked_for(bottle: Bottle, supply: Supply, judgement: Judgement, shop: Shop) -> Asked:
+    """What a forecast is asked for, with both bottles' limits."""
+    source = judge_bottle(supply.bottle, shop=shop)
+    return Asked(bottle, supply, judgement.limit.grams or 0, source.limit.grams, shop)
+
+
+def forecast_part(
+    form: ReadingsForm, bottle: Bottle, judgement: Judgement, shop: Shop, words: RefillWords
+) -> dict[str, Any]:  # fmt: skip
+    """The variables of the forecast's part: the answer, or what it waits for."""
+    limit = judgement.limit.grams
+    if not limit:
+        return {"forecast": None, "trouble": ["This bottle has no fill limit yet. Complete its record first."]}
+    if not form.is_bound:
+        offered = supplies_offered(bottle).filter(pk=form.initial.get("supply") or 0).first()
+        stop = stop_figure(bottle, offered, limit, words) if offered else None
+        waits = [str(form.fields[name].label) for name in ("supply_temperature", "bottle_temperature")]
+        return {"forecast": None, "stop": stop, "waits": waits}
+    wrong = [
+        f"{form.fields[name].label}: {error}"
+        for name, errors in form.errors.items()
+        if name in form.fields and form.data.get(name) and name in _READ
+        for error in errors
+    ]
+    readings = form.readings()
+    supply = form.cleaned_data.get("supply")
+    target = form.cleaned_data.get("target")
+    stop = stop_figure(bottle, supply, min(limit, target.stored) if target else limit, words) if supply else None
+    if readings is None or supply is None or wrong:
+        return {"forecast": None, "stop": stop, "trouble": wrong, "waits": form.missing}
+    asked = asked_for(bottle, supply, judgement, shop)
+    try:
+        answer = work_out(asked, readings)
+    except (Refusal, PhysicsError) as refusal:
+        sentence = refusal.sentence
+        if isinstance(refusal, NoSolution):
+            sentence += " Fill by weight without a forecast, with care."
+        return {"forecast": None, "stop": stop, "trouble": [sentence]}
+    return {"forecast": forecast_context(asked, answer, words), "stop": None}
+
+
+_READ = frozenset({
+    "supply", "gauge", "supply_temperature", "supply_weight", "bottle_temperature", "bottle_weight", "target",
+})  # fmt: skip

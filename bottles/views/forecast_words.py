@@ -1,0 +1,206 @@
+"""A forecast as its page says it: words and figures, ready to be drawn."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from bottles.models import Bottle, Supply
+from bottles.physics.contents import Contents
+from bottles.services.forecasting import BOOKS, Answer, Asked
+from bottles.services.refilling import stop_at
+from bottles.views.refill_words import RefillWords, style_of
+from shop.base.errors import Refusal
+from shop.physics.errors import PhysicsError
+from shop.physics.weights import format_mass
+
+REACHES = {
+    "in every case": ("yes", "The limit is reached in every case"),
+    "likely": ("yes", "The limit is likely reached"),
+    "at best": ("after", "The limit is reached at best"),
+    "no": ("after", "A short fill: the limit isn't reached"),
+    "already": ("no", "It holds its limit already: don't add to it"),
+}
+STOPPED = {
+    "fill limit": "the fill limit: close by the scale",
+    "pressures equal": "pressures equal: the flow ceases",
+    "source out of liquid": "the supply's liquid runs out",
+    "no pressure difference": "no pressure difference: nothing goes over",
+}
+REGIONS = {
+    "saturated": "liquid and vapour together",
+    "vapour": "vapour alone, no liquid",
+    "liquid-full": "above the vapour pressure",
+    "supercritical": "above the critical point",
+    "contradictory": "the readings contradict each other",
+}
+WIDTHS = {
+    "condensation": "how much vapour condenses",
+    "source temperature": "the supply bottle's temperature",
+    "source weight": "the supply bottle's weight",
+    "receiver temperature": "the temperature of the bottle to fill",
+    "receiver weight": "the weight of the bottle to fill",
+}
+HIDDEN = {"condensation_prior", "source_unknown", "can_pass_limit"}  # said elsewhere on the page
+HOTTEST_C = 51.9
+
+
+def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[str, Any]:
+    """Everything that the forecast's part of the page shows."""
+    found, supply = answer.transferred, asked.supply
+    kind, reached = REACHES[found.reaches_limit]
+    warnings = [sentence for code, sentence in found.warnings if code not in HIDDEN]
+    reading = [sentence for code, sentence in (answer.contents.warnings if answer.contents else ())]
+    return {
+        "stop": stop_figure(asked.bottle, supply, answer.target_g, words),
+        "danger": reading if answer.danger else [],
+        "blocked": answer.blocked,
+        "span": words.span(answer.low_g, answer.high_g),
+        "likely": words.mass(answer.likely_g) if answer.likely_g is not None else "",
+        "inputs": _inputs(asked, answer, words),
+        "method": _method(answer),
+        "kind": kind,
+        "reached": reached,
+        "limits": _limits(answer, words),
+        "cold": _cold(answer, words),
+        "left": _left(answer, supply, words),
+        "line": words.mass(answer.line_g),
+        "line_origin": "entered" if supply.station.line_loss_g is not None else "computed",
+        "reading": _reading(answer, words) if answer.contents else [],
+        "reading_warnings": [] if answer.danger else reading,
+        "warnings": [*warnings, *(sentence for _, sentence in answer.notes)],
+        "width": WIDTHS.get(found.width[0][0], "") if found.width and found.width[0][1] > 0 else "",
+        "band": _band(answer, words),
+        "prior": any(code == "condensation_prior" for code, _ in found.warnings),
+    }  # fmt: skip
+
+
+def stop_figure(bottle: Bottle, supply: Supply, target_g: int, words: RefillWords) -> dict[str, str]:
+    """The scale reading to stop at, with how it's made; or the sentence why there is none."""
+    station = supply.station
+    scale = station.scale
+    if scale is None:
+        return {"why_not": f"{station} has no scale yet, so there is no reading to stop at."}
+    try:
+        gross = stop_at(bottle, scale, target_g=target_g, hose_pull_g=station.hose_pull_g)
+    except (Refusal, PhysicsError) as refusal:
+        return {"why_not": refusal.sentence}
+    return stop_words(bottle, gross, target_g, station, words)
+
+
+def stop_words(bottle: Bottle, gross_g: int, target_g: int, station: Any, words: RefillWords) -> dict[str, str]:
+    """A stop reading in the scale's own style, and the sum behind it."""
+    from bottles.selectors.scales import scale_uncertainty
+    from bottles.services.weighing import tare_at
+    from shop.base import clock
+
+    scale = station.scale
+    style = style_of(scale)
+    tare = tare_at(bottle, clock.now())
+    parts = [f"{format_mass(tare.total_g, style)} tare as fitted", f"+ {format_mass(target_g, style)} target"]
+    parts.append(f"− {format_mass(scale_uncertainty(scale), style, scale.resolution_g)} the scale's ±")
+    if station.hose_pull_g:
+        sign = "+" if station.hose_pull_g > 0 else "−"
+        parts.append(f"{sign} {format_mass(abs(station.hose_pull_g), style)} pull of the hose")
+    return {
+        "figure": words.on_scale(gross_g, scale), "scale": str(scale), "other": words.other(gross_g, scale),
+        "sum": " ".join(parts) + ", rounded down to what the scale shows",
+    }  # fmt: skip
+
+
+def _inputs(asked: Asked, answer: Answer, words: RefillWords) -> list[dict[str, str]]:
+    readings, condensation = answer.readings, answer.transferred.condensation
+    rows = [
+        ("Supply bottle", f"{asked.supply.bottle.code}, {words.temperature(readings.supply_temperature.stored)}"),
+        ("holds", held_words(answer, words)),
+        ("Bottle to fill", f"{asked.bottle.code}, {words.temperature(readings.bottle_temperature.stored)}"),
+        ("holds", words.mass(answer.start_g)),
+        ("Target", words.mass(answer.target_g)),
+        ("Condensation figure", f"{condensation.figure:.2f} ±{2 * condensation.deviation:.2f}"),
+    ]
+    return [{"name": name, "value": value} for name, value in rows]
+
+
+def _method(answer: Answer) -> str:
+    return (
+        "Two bottles, each a volume with its wall; mass and energy conserved; between the transfer that mixes at once (quick) "
+        "and the one in which vapour condenses on the wall alone (slow to condense)."
+        + (" How much condenses is midway between the two until the shop's own refills tell (common practice, no source)."
+           if answer.transferred.condensation.is_prior else "")
+    )  # fmt: skip
+
+
+def held_words(answer: Answer, words: RefillWords) -> str:
+    """What the supply bottle is taken to hold, and where that comes from."""
+    held = answer.source
+    if held is None:
+        return "not known but for its gauge"
+    return f"{words.mass(held.grams, plus_minus_g=held.error_g)} {held.origin}"
+
+
+def _limits(answer: Answer, words: RefillWords) -> list[tuple[str, str, str]]:
+    found = answer.transferred
+    named = (("quick", found.mixed), ("slow to condense", found.wall_condensing), ("kept at temperature", found.held))
+    return [(name, words.mass(round(one.moved_kg * 1000)), STOPPED[one.stopped_by]) for name, one in named if one]
+
+
+def _cold(answer: Answer, words: RefillWords) -> str:
+    found = answer.transferred
+    if found.reaches_limit == "already":
+        return ""
+    if answer.likely_g is None:
+        return "How cold it must be for a full fill can't be said before the supply bottle is weighed."
+    if found.warmest_receiver_k is None:
+        return "No cooling will do: even at −40 the supply bottle doesn't hold enough for a full fill."
+    if found.warmest_receiver_k - 273.15 > HOTTEST_C:
+        return "It needs no cooling for a full fill, done quickly."
+    at = words.temperature(found.warmest_receiver_k * 1000)
+    return (
+        f"For a full fill it must be at {at} or colder when the valve is opened (quick transfer); "
+        "colder still where vapour is slow to condense."
+    )
+
+
+def _left(answer: Answer, supply: Supply, words: RefillWords) -> str:
+    if answer.source_left_g is None:
+        return f"What {supply.bottle.code} will have left isn't known: weigh it."
+    left = f"{supply.bottle.code} will have {words.mass(answer.source_left_g)} left"
+    fills = answer.transferred.full_fills
+    if fills is not None and fills > 1:
+        return f"{left}; from here it gives {fills} full fills like this one, warmed up again between them."
+    return f"{left}."
+
+
+def _reading(answer: Answer, words: RefillWords) -> list[tuple[str, str]]:
+    contents: Contents | None = answer.contents
+    if contents is None:
+        return []
+    rows = [("Its gauge and temperature say", REGIONS[contents.region])]
+    if contents.saturation_pa is not None:
+        rows.append(("Vapour pressure at that temperature", words.pressure(contents.saturation_pa)))
+    if contents.expected_pa is not None:
+        rows.append(("By its weight the gauge should show", words.pressure(contents.expected_pa)))
+    if answer.source is None:
+        rows.append(("So it holds anything from", words.span(round(contents.least_kg * 1000), round(contents.most_kg * 1000))))
+    else:
+        origin = "weight" if answer.source.origin != BOOKS else "books"
+        agrees = {True: f"reading and {origin} agree", False: f"reading and {origin} contradict each other", None: ""}
+        rows.append((f"Holds, {answer.source.origin}", f"{words.mass(answer.source.grams, plus_minus_g=answer.source.error_g)}: "
+                     f"{agrees[contents.agrees]}"))  # fmt: skip
+    return rows
+
+
+def _band(answer: Answer, words: RefillWords) -> dict[str, Any]:
+    """Where low, likely and high stand between nothing and the room there is, for the band's drawing."""
+    room = max(answer.target_g - answer.start_g, answer.high_g, 1)
+    width = 600
+
+    def place(grams: int) -> float:
+        return round(20 + (width - 40) * grams / room, 1)
+
+    low, high = place(answer.low_g), place(answer.high_g)
+    free = max(0, answer.target_g - answer.start_g)
+    return {
+        "low": low, "width": max(2.0, round(high - low, 1)), "limit": place(free), "limit_words": words.mass(free),
+        "likely": place(answer.likely_g) if answer.likely_g is not None else None, "low_words": words.mass(answer.low_g),
+        "likely_words": words.mass(answer.likely_g) if answer.likely_g is not None else "", "high_words": words.mass(answer.high_g),
+    }  # fmt: skip

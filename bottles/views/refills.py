@@ -1,0 +1,214 @@
+"""Pages of refills: what is going on, the steps of one, its receipt, and a bottle's own section."""
+
+from __future__ import annotations
+
+import uuid
+from typing import Any
+
+from django.contrib import messages
+from django.http import Http404, HttpRequest, HttpResponse
+from django.shortcuts import render
+from django.urls import reverse
+
+from bottles.forms.refills import AnotherSupplyForm, CloseForm, WaitForm, WeighForm
+from bottles.models import Bottle, Refill, Standing
+from bottles.selectors import refills as selected
+from bottles.selectors.filling_offers import readings_offered
+from bottles.selectors.judging import judge_bottle
+from bottles.services import refill_steps as steps
+from bottles.services.forecasting import Asked, work_out
+from bottles.views.filling import asked_for, chosen_supply, forecast_part
+from bottles.views.refill_rows import page_context, refill_rows, section_rows
+from bottles.views.refill_words import refill_words
+from shop.base.errors import Refusal
+from shop.base.models import Shop
+from shop.base.paging import page_of
+from shop.base.permissions import EVERYONE, allow
+from shop.people.acting import ActView
+from shop.people.models import User
+
+LATEST = 5
+
+
+@allow(EVERYONE, room="counter")
+def refills(request: HttpRequest) -> HttpResponse:
+    """What is being filled now, and what was."""
+    shop = Shop.objects.get()
+    words = refill_words(request, shop)
+    page = page_of(request, selected.closed_refills())
+    now = refill_rows(list(selected.open_refills()), words, shop)
+    context = {"open": now, "closed": refill_rows(list(page), words, shop), "page": page}
+    return render(request, "bottles/refills.html", context)
+
+
+def refill_or_404(pk: int) -> Refill:
+    """Return a refill with all that its pages name."""
+    named = ("bottle", "station__scale", "station__supply_scale", "decision", "person")
+    found = Refill.objects.select_related(*named).filter(pk=pk).first()
+    if found is None:
+        raise Http404
+    return found
+
+
+class OfRefill(ActView):
+    """What the pages of one refill share: everyone at the desk and the bench fills."""
+
+    roles = EVERYONE
+    room = "counter"
+    refill: Refill
+
+    def find(self, **kwargs: Any) -> None:
+        self.refill = refill_or_404(kwargs["pk"])
+
+    @property
+    def home(self) -> str:
+        """The refill's own page."""
+        return reverse("bottles:refill", args=[self.refill.pk])
+
+    def first_page(self, act: Any) -> str:
+        return self.home
+
+    def initial(self) -> dict[str, Any]:
+        return {"version": self.refill.version}
+
+    def context(self) -> dict[str, Any]:
+        return {"refill": self.refill, "bottle": self.refill.bottle, "back_url": self.home}
+
+
+class RefillPage(OfRefill):
+    """The open refill: where to stop, what the scale said, weigh."""
+
+    form_class = WeighForm
+    template_name = "bottles/refill.html"
+    submit = "Save the weight"
+    said = ""
+
+    def form_kwargs(self) -> dict[str, Any]:
+        return {"supply_scale": self.refill.station.supply_scale}
+
+    def act(self, form: WeighForm, person: User, key: uuid.UUID) -> str:
+        found = steps.weigh_refill(
+            key=key, person=person, refill=self.refill, weight=form.weight(), ended_by=form.cleaned_data["ended_by"]
+        )
+        if found.closed:
+            messages.success(self.request, "Weighed and closed.")
+            return reverse("bottles:receipt", args=[self.refill.pk]) if "receipt" in self.request.POST else self.home
+        if found.why_not:
+            messages.error(self.request, f"The weight is kept, the refill stays open. {found.why_not}")
+        else:
+            messages.success(self.request, "Weighed.")
+        return self.home
+
+    def context(self) -> dict[str, Any]:
+        words = refill_words(self.request, self.shop)
+        return super().context() | page_context(self.refill, words, self.shop)
+
+
+class Wait(OfRefill):
+    """Let it wait, or go on."""
+
+    form_class = WaitForm
+    said = ""
+
+    def initial(self) -> dict[str, Any]:
+        return super().initial() | {"note": self.refill.wait_note or "chill"}
+
+    def context(self) -> dict[str, Any]:
+        return super().context() | {"heading": f"Let {self.refill.bottle.code} wait"}
+
+    def act(self, form: WaitForm, person: User, key: uuid.UUID) -> str:
+        data = form.cleaned_data
+        steps.wait(
+            key=key, person=person, refill=self.refill, version=data["version"] or 0, until=data["until"], note=data["note"]
+        )
+        return self.home
+
+
+class AnotherSupply(OfRefill):
+    """Go on from another supply bottle."""
+
+    form_class = AnotherSupplyForm
+    template_name = "bottles/another_supply.html"
+    submit = "Go on from it"
+    said = ""
+
+    def initial(self) -> dict[str, Any]:
+        supply = chosen_supply(self.request, self.refill.bottle, self.refill.station)
+        offered = readings_offered(self.refill.station)
+        return super().initial() | offered.values | {"supply": supply.pk if supply else None}
+
+    def form_kwargs(self) -> dict[str, Any]:
+        return {
+            "bottle": self.refill.bottle, "offered": readings_offered(self.refill.station),
+            "mass": refill_words(self.request, self.shop).mass, "station": self.refill.station,
+        }  # fmt: skip
+
+    def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
+        if "forecast" in request.POST:
+            form = self.form(request.POST)
+            form.is_valid()
+            return self.show(form)
+        return super().post(request, *args, **kwargs)
+
+    def asked(self, form: AnotherSupplyForm) -> Asked:
+        """What the forecast is asked for: the limit that the refill was opened with."""
+        judgement = judge_bottle(self.refill.bottle, shop=self.shop)
+        found = asked_for(self.refill.bottle, form.cleaned_data["supply"], judgement, self.shop)
+        return Asked(found.bottle, found.supply, self.refill.target_g, found.source_limit_g, self.shop)
+
+    def act(self, form: AnotherSupplyForm, person: User, key: uuid.UUID) -> str:
+        readings = form.readings(bottle_weight=form.cleaned_data["gross"])
+        if readings is None:
+            raise Refusal("Read both temperatures first.", code="reading missing")
+        asked = self.asked(form)
+        answer = work_out(asked, readings)
+        steps.add_draw(
+            key=key, person=person, refill=self.refill, version=form.cleaned_data["version"] or 0, asked=asked, answer=answer,
+            weight=form.weight(),
+        )  # fmt: skip
+        return self.home
+
+    def context(self) -> dict[str, Any]:
+        return super().context() | {"heading": f"Fill {self.refill.bottle.code} on from another supply bottle"}
+
+    def show(self, form: Any, *, status: int = 200) -> HttpResponse:
+        words = refill_words(self.request, self.shop)
+        judgement = judge_bottle(self.refill.bottle, shop=self.shop)
+        part = forecast_part(form, self.refill.bottle, judgement, self.shop, words) if form.is_bound else {"forecast": None}
+        context = {"form": form, "submit": self.submit} | self.context() | part
+        return render(self.request, self.template_name, context, status=status)
+
+
+class Close(OfRefill):
+    """Close it on the weighing that was made with the line disconnected."""
+
+    form_class = CloseForm
+    submit = "Close"
+    said = "Closed."
+
+    def context(self) -> dict[str, Any]:
+        return super().context() | {"heading": f"Close the refill of {self.refill.bottle.code}"}
+
+    def act(self, form: CloseForm, person: User, key: uuid.UUID) -> str:
+        data = form.cleaned_data
+        steps.close_refill(
+            key=key, person=person, refill=self.refill, version=data["version"] or 0, ended_by=data["ended_by"]
+        )
+        return self.home
+
+
+@allow(EVERYONE, room="counter")
+def receipt(request: HttpRequest, pk: int) -> HttpResponse:
+    """A plain sheet of one refill, to print."""
+    refill = refill_or_404(pk)
+    shop = Shop.objects.get()
+    words = refill_words(request, shop)
+    context = {"refill": refill, "bottle": refill.bottle, "shop": shop, "back_url": reverse("bottles:refill", args=[pk])}
+    return render(request, "bottles/receipt.html", context | page_context(refill, words, shop))
+
+
+def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop) -> dict[str, Any]:
+    """The bottle's last refills, forecast against what came."""
+    words = refill_words(request, shop)
+    found = list(selected.refills_of(bottle)[: LATEST + 1])
+    return {"refills": section_rows(found[:LATEST], words, shop), "more_refills": len(found) > LATEST}
