@@ -162,7 +162,8 @@ def _refuse_out_of_order(bottle: Bottle, happened_at: datetime, *, moved_too: bo
         later = lines.filter(movement__happened_at__gt=happened_at).exists()
     if later:
         raise NotReady(
-            f"Later than that {bottle.code} was weighed, moved or drawn from already. Give a later time, or leave it empty for now.",
+            f"Later than that {bottle.code} was weighed, moved or drawn from already. Give a later time, or leave it "
+            "empty for now.",
             code="out of order", field="happened_at",
         )
 

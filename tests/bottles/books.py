@@ -56,7 +56,9 @@ def place(code: str = "C") -> Place:
     return Place.objects.get_or_create(code=code, defaults={"name": "Counter", "kind": "counter"})[0]
 
 
-def bottle(code: str = "T-0001", *, owner: str = "customer", is_in: bool = True, tare: bool = True, capacity_ml: int = 6_800) -> Bottle:
+def bottle(
+    code: str = "T-0001", *, owner: str = "customer", is_in: bool = True, tare: bool = True, capacity_ml: int = 6_800
+) -> Bottle:
     row = act()
     made = Bottle.objects.create(code=code, capacity_ml=capacity_ml, capacity_basis="stamped", act=row, serial=code)
     customer = Customer.objects.create(name=f"Owner of {code}") if owner == "customer" else None
