@@ -12,7 +12,21 @@ from typing import Any
 import factory
 from factory.django import DjangoModelFactory
 
-from bottles.models import Bottle, Condition, Custody, Ownership, Scale, Stamp, Tare, Weighing
+from bottles.models import (
+    Bottle,
+    Condition,
+    Custody,
+    Decision,
+    Draw,
+    Ownership,
+    Refill,
+    Scale,
+    Stamp,
+    Station,
+    Supply,
+    Tare,
+    Weighing,
+)
 from bottles.services.standing import restate
 from shop.base.models import Act, Place, Policy
 from shop.cars.models import Car
@@ -115,6 +129,82 @@ class ScaleFactory(DjangoModelFactory):
     error_typed = "20 g"
     capacity_g = 60_000
     capacity_typed = "60 kg"
+
+
+class StationFactory(DjangoModelFactory):
+    class Meta:
+        model = Station
+
+    code = factory.Sequence(lambda n: f"ST{n}")
+    name = factory.Sequence(lambda n: f"station {n}")
+    scale = factory.SubFactory(ScaleFactory)
+    hose_length_um = 1_500_000
+    hose_length_typed = "1.5 m"
+    hose_bore_um = 4_800
+    hose_bore_typed = "4.8 mm"
+
+
+class SupplyFactory(DjangoModelFactory):
+    """A supply bottle on a station, weighed; give it what else a test asks for."""
+
+    class Meta:
+        model = Supply
+
+    station = factory.SubFactory(StationFactory)
+
+    @factory.lazy_attribute
+    def bottle(self) -> Bottle:
+        found = BottleFactory(use="supply", capacity_ml=29_000, wall="steel", dip_tube="dip", mark="DOT-3AA2015")
+        owned(found)
+        placed(found, "in")
+        weighed(found, gross_g=48_500, tare_g=33_500)
+        return found
+
+
+class DecisionFactory(DjangoModelFactory):
+    class Meta:
+        model = Decision
+
+    act = factory.SubFactory(ActFactory)
+    bottle = factory.SubFactory(BottleFactory)
+    on = date(2026, 3, 2)
+    edition = "us-2026-01"
+    edition_sha256 = "0" * 64
+    inputs = factory.LazyFunction(dict)
+    may_fill = "yes"
+    may_empty = "yes"
+    limit_g = 4_614
+    binds = "filling density"
+    reasons = factory.LazyFunction(list)
+
+
+class RefillFactory(DjangoModelFactory):
+    """An open refill with its first weighing and draw; say from what: source=bottle."""
+
+    class Meta:
+        model = Refill
+    act = factory.SubFactory(ActFactory)
+    decision = factory.SubFactory(DecisionFactory)
+    bottle = factory.SelfAttribute("decision.bottle")
+    station = factory.SubFactory(StationFactory)
+    method = "pressure"
+    limit_g = 4_614
+    target_g = 4_614
+    stop_at_g = 11_010
+    opened_at = THEN
+
+    @classmethod
+    def _create(cls, model_class: Any, *args: Any, **kwargs: Any) -> Refill:
+        source = kwargs.pop("source", None)  # not a column: what it draws on
+        made: Refill = super()._create(model_class, *args, **kwargs)
+        tare = Tare.objects.create(act=made.act, bottle=made.bottle, since=THEN, total_g=6_420, error_g=10, basis="weighed")
+        Weighing.objects.create(
+            act=made.act, bottle=made.bottle, scale=made.station.scale, tare=tare, step="before", gross_g=6_720, typed="6720 g",
+            net_g=300, error_g=24, happened_at=THEN,
+        )  # fmt: skip
+        restate(made.bottle)
+        Draw.objects.create(act=made.act, refill=made, source=source or BottleFactory(use="supply"), happened_at=THEN)
+        return made
 
 
 class StampFactory(DjangoModelFactory):

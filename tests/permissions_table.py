@@ -34,6 +34,8 @@ class World:
         self.condition = factories.ConditionFactory(bottle=self.bottle)
         self.fitted = factories.placed(factories.BottleFactory(code="T-0413"), "car", car=self.car)
         factories.weighed(self.fitted, gross_g=10_940, tare_g=6_420)
+        self.supply = factories.SupplyFactory()
+        self.refill = factories.RefillFactory(station=self.supply.station, source=self.supply.bottle)
 
 
 @dataclass(frozen=True)
@@ -128,4 +130,20 @@ REGISTER = [
     Page("bottles:retire", MANAGERS, _of_bottle),
 ]
 
-TABLE: list[Page] = [*PEOPLE, *CARS, *ROOMS, *REGISTER]
+REFILLS = [
+    Page("bottles:stations", EVERYONE),
+    Page("bottles:station_add", MANAGERS),
+    Page("bottles:station", MANAGERS, lambda world: {"pk": world.supply.station.pk}),
+    Page("bottles:connect", EVERYONE, lambda world: {"pk": world.supply.station.pk}),
+    Page("bottles:disconnect", EVERYONE, lambda world: {"pk": world.supply.pk}),
+    Page("bottles:fill", EVERYONE, _of_bottle),
+    Page("bottles:forecast_live", EVERYONE, _of_bottle, html=False),
+    Page("bottles:refills", EVERYONE),
+    Page("bottles:refill", EVERYONE, lambda world: {"pk": world.refill.pk}),
+    Page("bottles:refill_wait", EVERYONE, lambda world: {"pk": world.refill.pk}),
+    Page("bottles:refill_supply", EVERYONE, lambda world: {"pk": world.refill.pk}),
+    Page("bottles:refill_close", EVERYONE, lambda world: {"pk": world.refill.pk}),
+    Page("bottles:receipt", EVERYONE, lambda world: {"pk": world.refill.pk}),
+]
+
+TABLE: list[Page] = [*PEOPLE, *CARS, *ROOMS, *REGISTER, *REFILLS]
