@@ -18,6 +18,7 @@ from bottles.models import (
     Custody,
     Decision,
     Draw,
+    Movement,
     Ownership,
     Refill,
     Scale,
@@ -27,6 +28,7 @@ from bottles.models import (
     Tare,
     Weighing,
 )
+from bottles.services.posting import Move, account_of, own_account, post
 from bottles.services.standing import restate
 from shop.base.models import Act, Place, Policy
 from shop.cars.models import Car
@@ -257,3 +259,11 @@ def weighed(bottle: Bottle, *, gross_g: int, tare_g: int, error_g: int = 28, sca
     )  # fmt: skip
     restate(bottle)
     return found
+
+
+def delivered(bottle: Bottle, *, grams: int) -> Movement:
+    """Post so much from the supplier into the bottle."""
+    moves = [Move(own_account("supplier"), account_of(bottle), grams, "entered")]
+    made = post(act=ActFactory(), kind="delivery", happened_at=THEN, moves=moves)
+    assert made is not None
+    return made

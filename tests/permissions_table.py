@@ -33,7 +33,8 @@ class World:
         self.stamp = factories.StampFactory(bottle=self.bottle)
         self.condition = factories.ConditionFactory(bottle=self.bottle)
         self.fitted = factories.placed(factories.BottleFactory(code="T-0413"), "car", car=self.car)
-        factories.weighed(self.fitted, gross_g=10_940, tare_g=6_420)
+        self.weighing = factories.weighed(self.fitted, gross_g=10_940, tare_g=6_420)
+        self.movement = factories.delivered(self.fitted, grams=4_520)
         self.supply = factories.SupplyFactory()
         self.refill = factories.RefillFactory(station=self.supply.station, source=self.supply.bottle)
 
@@ -146,4 +147,21 @@ REFILLS = [
     Page("bottles:receipt", EVERYONE, lambda world: {"pk": world.refill.pk}),
 ]
 
-TABLE: list[Page] = [*PEOPLE, *CARS, *ROOMS, *REGISTER, *REFILLS]
+BOOKS = [
+    Page("bottles:weigh", EVERYONE, _of_bottle),
+    Page("bottles:strike_weighing", EVERYONE, lambda world: {"pk": world.weighing.pk}),
+    Page("bottles:deliver", EVERYONE, _of_bottle),
+    Page("bottles:give_back", EVERYONE, _of_bottle),
+    Page("bottles:use", EVERYONE, _of_bottle),
+    Page("bottles:vent", EVERYONE, _of_bottle),
+    Page("bottles:scales", EVERYONE),
+    Page("bottles:scale_add", MANAGERS),
+    Page("bottles:scale_change", MANAGERS, lambda world: {"pk": world.weighing.scale_id}),
+    Page("bottles:scale_check", EVERYONE, lambda world: {"pk": world.weighing.scale_id}),
+    Page("bottles:balance", MANAGERS),
+    Page("bottles:movement", MANAGERS, lambda world: {"pk": world.movement.pk}),
+    Page("bottles:reverse_movement", MANAGERS, lambda world: {"pk": world.movement.pk}),
+    Page("bottles:stock_take", EVERYONE),
+]
+
+TABLE: list[Page] = [*PEOPLE, *CARS, *ROOMS, *REGISTER, *BOOKS, *REFILLS]
