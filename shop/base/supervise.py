@@ -28,7 +28,7 @@ class Child:
     argv: Sequence[str]
     env: dict[str, str]
     fds: Sequence[int] = ()
-    before: Callable[[], None] = lambda: None
+    before_restart: Callable[[], None] = lambda: None
     process: subprocess.Popen[bytes] | None = None
     faults: int = 0
     started: float = 0.0
@@ -36,7 +36,6 @@ class Child:
 
     def start(self) -> None:
         """Start it in a process group of its own, so that a Ctrl-C reaches only us."""
-        self.before()
         self.process = subprocess.Popen(
             self.argv,
             env=self.env,
@@ -100,6 +99,7 @@ class Supervisor:
                 child.due = now + pause
                 self.say(f"The {child.name} stopped ({_ending(code)}); it is started again in {pause:.0f} s.")
             elif now >= child.due:
+                child.before_restart()
                 child.start()
                 self.say(f"The {child.name} was started again.")
 

@@ -59,6 +59,8 @@ class Command(BaseCommand):
         datafolder.prepare()
         lock = datafolder.hold()
         try:
+            if _embedded():
+                datafolder.empty_bells(control=True)
             listening = _listen(options["host"], options["port"])
             with listening:
                 env = self._environment(options, listening)
@@ -98,16 +100,10 @@ class Command(BaseCommand):
     def _serve(
         self, env: dict[str, str], listening: socket.socket, host: str, sign_ins: list[tuple[str, str, str]]
     ) -> None:
-        embedded = settings.BROKER_URL.startswith("filesystem:")
-        if embedded:
-            datafolder.empty_bells(control=True)
-            if connection.vendor == "sqlite":  # the lock is ours, so no worker of this database is alive
-                jobs.release_all()
+        if _embedded() and connection.vendor == "sqlite":
+            jobs.release_all()  # the lock is ours, so no worker of this database is alive
+        jobs.sweep()  # what an earlier day left open goes on at once
         connection.close()
-
-        def ring_afresh() -> None:
-            if embedded:
-                datafolder.empty_bells(control=False)
 
         supervisor = Supervisor(self._say)
         supervisor.listen()
@@ -126,7 +122,7 @@ class Command(BaseCommand):
                 supervisor.add(
                     Child("background worker", [*celery, "worker", "--loglevel", "WARNING", "--concurrency", "2",
                                                 "--without-gossip", "--without-mingle", "--without-heartbeat"],
-                          env, before=ring_afresh)
+                          env, before_restart=_drop_torn_bells)
                 )  # fmt: skip
                 supervisor.add(Child("clock", [*celery, "beat", "--loglevel", "WARNING", "--pidfile", ""], env))
         finally:
@@ -148,6 +144,15 @@ class Command(BaseCommand):
             self._say("Sign in as (role name password; printed this once):")
             for sign_in in sign_ins:
                 self._say(" ".join(sign_in))
+
+
+def _embedded() -> bool:
+    return bool(settings.BROKER_URL.startswith("filesystem:"))
+
+
+def _drop_torn_bells() -> None:
+    if _embedded():
+        datafolder.empty_bells(control=False)
 
 
 def _listen(host: str, port: int) -> socket.socket:
