@@ -8,6 +8,7 @@ from django import forms
 
 from bottles.forms.parts import text
 from bottles.models import Scale, Weighing
+from bottles.selectors.scales import Checked, checked_scales
 from bottles.services.moving import OnScale
 from shop.base.fields import HappenedField, MassField
 from shop.people.acting import ActForm
@@ -46,9 +47,10 @@ class OnScaleForm(ActForm):
 
     def __init__(self, *args: Any, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
-        only = list(Scale.objects.filter(active=True)[:2])
-        if len(only) == 1:
-            self.fields["scale"].initial = only[0]
+        checked = {one.scale.pk: one for one in checked_scales(self.shop)}
+        if len(checked) == 1:
+            self.fields["scale"].initial = next(iter(checked))
+        self.fields["scale"].label_from_instance = lambda scale: _told(checked.get(scale.pk), scale)  # type: ignore[attr-defined]
         for name in ("scale", "gross") if self.optional else ():
             self.fields[name].required = False
 
@@ -69,6 +71,13 @@ class OnScaleForm(ActForm):
         return OnScale(scale=data["scale"], gross=data["gross"], wet=data["wet"])
 
 
+def _told(checked: Checked | None, scale: Scale) -> str:
+    """A scale's name, with what its last check says where that isn't a pass of today."""
+    if checked is None or checked.passed_today:
+        return scale.name
+    return f"{scale.name} ({'failed its check' if checked.failed else 'not checked today'})"
+
+
 class WeighForm(OnScaleForm):
     """What a scale says of a bottle."""
 
@@ -78,6 +87,11 @@ class WeighForm(OnScaleForm):
         help_text="Only asked where scale and books differ beyond their ± and the bottle never left the shop.",
     )  # fmt: skip
     happened_at = HappenedField(help_text="A weighing older than the latest one is kept and moves nothing in the books.")
+
+    def __init__(self, *args: Any, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        if not self.is_bound:  # where something is to be put right that takes the focus
+            self.fields["gross"].widget.attrs["autofocus"] = True
 
 
 class StrikeWeighingForm(ActForm):

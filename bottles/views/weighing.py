@@ -52,12 +52,14 @@ class Weigh(BottleActView):
             except QuantityError as wrong:
                 trouble = wrong.sentence
         tare = self.standing.tare
+        scales = [check_words(checked, self.shop) for checked in checked_scales(self.shop)]
         return super().context() | {
             "heading": f"Weigh {self.bottle.code}",
             "holds": tell(holding, limit, words, self.shop),
             "tare": words.tare(tare),
             "has_tare": tare is not None,
-            "scales": [check_words(checked, self.shop) for checked in checked_scales(self.shop)],
+            "scales": scales,
+            "not_checked": ", ".join(row["scale"].name for row in scales if row["kind"] == "after"),
             "at_typed": typed,
             "expects": expects,
             "trouble": trouble,
