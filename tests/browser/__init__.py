@@ -1,0 +1,1 @@
+"""Whole jobs in a real browser, by the person who does them."""

@@ -1,0 +1,80 @@
+"""What a person does at a page, and what is looked at on the way: small steps for whole jobs."""
+
+from __future__ import annotations
+
+import re
+from typing import Any
+
+from axe_playwright_python.sync_playwright import Axe
+from playwright.sync_api import Page, expect
+
+from tests.conftest import PASSWORD
+
+DOOR = re.compile("/sign-in")
+
+# What a finger must hit: everything pressed or filled in that shows. A link within a line of text is let
+# through, as WCAG 2.2, success criterion 2.5.8, does (exception "inline"); a tick's or choice's target is its label.
+TARGETS = """least => {
+  const small = [];
+  for (const one of document.querySelectorAll("a[href], button, input:not([type=hidden]), select, textarea, summary")) {
+    if (!one.checkVisibility({ visibilityProperty: true })) continue;
+    if (one.closest(".visually-hidden, .skip") || one.matches(".visually-hidden-until-focus, .skip")) continue;
+    if (one.tagName === "A" && getComputedStyle(one).display === "inline") continue;
+    const target = one.matches("[type=checkbox], [type=radio]") ? one.closest("label") ?? one : one;
+    const box = target.getBoundingClientRect();
+    if (box.height === 0) continue;
+    const wanted = one.closest("main") ? least : 44;
+    if (box.height < wanted - 0.5 || box.width < Math.min(wanted, 44) - 0.5) {
+      small.push(`${one.tagName} ${(target.innerText || one.name || "").trim().slice(0, 40)}: ${box.width}×${box.height}`);
+    }
+  }
+  return small;
+}"""
+
+
+def sign_in(page: Page, name: str, *, password: str = PASSWORD, shared: bool = False) -> None:
+    """Sign in at the door, by keyboard."""
+    if not DOOR.search(page.url):
+        page.goto("/sign-in")
+    page.get_by_label("Name", exact=True).focus()
+    page.keyboard.type(name)
+    page.keyboard.press("Tab")
+    page.keyboard.type(password)
+    if shared:
+        page.keyboard.press("Tab")
+        page.keyboard.press("Space")
+    page.keyboard.press("Enter")
+    expect(page).not_to_have_url(DOOR)
+
+
+def let_in(page: Page, client: Any, address: str) -> None:
+    """Give the browser the sign-in of a test's client, where signing in isn't what is tested."""
+    cookie = client.cookies["sessionid"]
+    page.context.add_cookies([{"name": cookie.key, "value": cookie.value, "url": address}])
+
+
+def h1(page: Page) -> str:
+    """The page's one heading."""
+    heading = page.locator("h1")
+    expect(heading).to_have_count(1)
+    return heading.inner_text()
+
+
+def too_small(page: Page) -> list[str]:
+    """What a finger, or at the Counter a gloved one, would miss."""
+    counter = "counter" in (page.locator("body").get_attribute("class") or "").split()
+    found: list[str] = page.evaluate(TARGETS, 60 if counter else 44)
+    return found
+
+
+def overflow(page: Page) -> int:
+    """By how many pixels the page is wider than its window."""
+    wide: int = page.evaluate("document.scrollingElement.scrollWidth - document.documentElement.clientWidth")
+    return max(0, wide)
+
+
+def violations(page: Page, *, only: str = "") -> list[str]:
+    """What axe finds, a line each: rule, help, where."""
+    options = {"runOnly": [only]} if only else None
+    found: list[dict[str, Any]] = Axe().run(page, options=options).response["violations"]
+    return [f"{one['id']}: {one['help']}: {[node['target'] for node in one['nodes'][:4]]}" for one in found]
