@@ -334,9 +334,10 @@ def _warmest(
             return -1e9
         other = Transfer(transfer.source, receiver, line_volume_m3, path=transfer.path)
         room = limit_kg - receiver.net_kg
-        if room <= 0.0 or room > other.capacity_kg or other.surplus(0.0) <= 0.0:
+        if room <= 0.0 or room > other.capacity_kg:
             return -1e9
-        return other.surplus(room)
+        full = other.surplus(room)
+        return -1e9 if full >= 0.0 and other.surplus(0.0) <= 0.0 else full
 
     if limit_kg <= transfer.receiver.net_kg:
         return None
@@ -365,7 +366,8 @@ def _least_source(transfer: Transfer, limit_kg: float, line_volume_m3: float) ->
         if net_kg - line_loss(new, line_volume_m3) <= room * (1.0 + 1e-9):
             return -1e9
         other = Transfer(new, receiver, line_volume_m3)
-        return min(other.surplus(room), other.surplus(0.0))
+        full = other.surplus(room)
+        return full if full < 0.0 else min(full, other.surplus(0.0))
 
     if most <= room or surplus(most) < 0.0:
         return None

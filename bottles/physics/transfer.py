@@ -75,11 +75,11 @@ class Transfer:
         self.line_volume_m3 = line_volume_m3
         self.line_kg = line_loss(source, line_volume_m3)
         self._wall = receiver.wall_j_k + 2.5 * receiver.air  # air's own heat, 5/2 R a mole
-        self._energy = (
-            pressure_and_energy(receiver.volume_m3, receiver.net_kg, receiver.temperature_k)[1]
-            + self._wall * receiver.temperature_k
-        )
-        self._guess = receiver.temperature_k
+        t = receiver.temperature_k
+        pressure, energy = pressure_and_energy(receiver.volume_m3, receiver.net_kg, t, receiver.air)
+        self._energy = energy + self._wall * t
+        self._rest = t, pressure
+        self._guess = t
         # The line's own contents leave with the energy that they took from the supply.
         self._line_j = self.path.after(self.line_kg).energy_given_j if self.line_kg else 0.0
         self._marks: list[Mark] | None = None
@@ -98,6 +98,8 @@ class Transfer:
 
     def mixed_receiver(self, moved_kg: float) -> tuple[float, float]:
         """Temperature and pressure of the receiver, uniform with its wall [K, Pa]."""
+        if moved_kg == 0.0:
+            return self._rest
         receiver = self.receiver
         gained = self.path.after(self.line_kg + moved_kg).energy_given_j - self._line_j
         t, p = settle(

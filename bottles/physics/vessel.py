@@ -172,8 +172,8 @@ def settle(
     if mass <= 0.0:
         temperature = energy / wall if wall > 0.0 else guess
         return temperature, air * temperature / volume
-    density = mass / volume
-    pair = engine().pressure_energy
+    density, fluid = mass / volume, engine()
+    pair = fluid.pressure_energy
 
     def surplus(t: float) -> float:
         return mass * pair(density, t)[1] + wall * t - energy
@@ -185,12 +185,13 @@ def settle(
         if not T_TRIPLE < new < T_MAX:
             break
         f_new = surplus(new)
-        if abs(new - old) < 1e-7 or f_new == 0.0:
-            # The state just asked for is this one; only air needs its share of the space.
-            return new, pressure_and_energy(volume, mass, new, air)[0] if air else engine().pressure()
-        if f_new == f_old:
+        if f_new == f_old and f_new != 0.0:
             break
-        old, f_old, new = new, f_new, new - f_new * (new - old) / (f_new - f_old)
+        step = f_new * (new - old) / (f_new - f_old) if f_new != f_old else 0.0
+        if abs(step) < 1e-7:
+            # The state just asked for is this one; only air needs its share of the space.
+            return new, pressure_and_energy(volume, mass, new, air)[0] if air else fluid.pressure()
+        old, f_old, new = new, f_new, new - step
     cold, hot = surplus(T_TRIPLE), surplus(T_MAX)
     if cold >= 0.0:
         new = T_TRIPLE

@@ -143,21 +143,25 @@ class _TwoPhase:
         self._top = (mass, temperature)
         self._drain = Drain(withdrawal_table(liquid=liquid), volume, wall, mass, temperature)
         self._end: tuple[float, float] | None = None
-        self._known = (mass, temperature, engine().saturation(temperature))
+        self._past = T_TRIPLE  # a temperature at which the liquid is out, where one was met
+        self._saturation = engine().saturation
+        self._known = (mass, temperature, self._saturation(temperature))
 
     def _at(self, left: float) -> tuple[float, float, tuple[float, float, float, float, float]]:
         """Mass, temperature and saturated states, kept for the next question of the same mass."""
         if self._known[0] != left:
             temperature = self._drain.temperature_at(left)
-            self._known = (left, temperature, engine().saturation(temperature))
+            self._known = (left, temperature, self._saturation(temperature))
         return self._known
 
     def reaches(self, left: float) -> bool:
         """Say whether both phases are still there with a mass left."""
         if self._end is None:
             _, temperature, side = self._at(left)
-            if temperature > T_TRIPLE and left >= side[2] * self._v:
-                return True
+            if temperature > T_TRIPLE:
+                if left >= side[2] * self._v:
+                    return True
+                self._past = temperature
             return left >= self.end[0]
         return left >= self._end[0]
 
@@ -165,19 +169,25 @@ class _TwoPhase:
     def end(self) -> tuple[float, float]:
         """Mass and temperature where vapour alone fills the bottle."""
         if self._end is None:
-            saturation = engine().saturation
+            saturation = self._saturation
 
             def liquid_left(t: float) -> float:
                 return self._drain.mass_at(t) - saturation(t)[2] * self._v
 
-            if liquid_left(T_TRIPLE) >= 0.0:
+            past = self._past
+            at_past = liquid_left(past)
+            if at_past >= 0.0 and past > T_TRIPLE:
+                past, at_past = T_TRIPLE, liquid_left(T_TRIPLE)
+            if at_past >= 0.0:
                 self._end = (0.0, T_TRIPLE)
             else:
                 # A sliver of liquid may end just below the start; what gathers begins there.
                 start = self._top[1]
                 below = start - 1e-3
-                if liquid_left(below) > 0.0:
-                    t = find_root(liquid_left, T_TRIPLE, below, tolerance=1e-7)
+                at_below = liquid_left(below)
+                if at_below > 0.0:
+                    # Cooler than where the liquid is out, whichever side of `past` that is.
+                    t = find_root(liquid_left, past, below, tolerance=1e-7, at_low=at_past, at_high=at_below)
                 elif liquid_left(start) > 0.0:
                     t = find_root(liquid_left, below, start, tolerance=1e-9)
                 else:
