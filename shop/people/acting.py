@@ -21,7 +21,7 @@ from django.views import View
 from shop.base import clock
 from shop.base.errors import AlreadyDone, NotAllowed, Refusal, Stale
 from shop.base.fields import InstantField, QuantityField
-from shop.base.models import Shop
+from shop.base.models import Act, Shop
 from shop.base.permissions import MANAGERS, Role
 from shop.people import kept
 from shop.people.models import User
@@ -157,7 +157,7 @@ class ActView(View):
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
         form = self.form(request.POST)
         if not form.is_valid():
-            return self.show(form, status=422)
+            return self.answer_of_first() or self.show(form, status=422)
         try:
             person = self.who(form)
             address = self.act(form, person, form.cleaned_data["form_key"])
@@ -168,6 +168,8 @@ class ActView(View):
             self.keep_both(form, stale)
             return self.show(form, status=409)
         except (Refusal, PhysicsError) as refusal:
+            if first := self.answer_of_first():
+                return first
             field = getattr(refusal, "field", None)
             form.add_error(
                 field if field in form.fields else None, forms.ValidationError(refusal.sentence, code=refusal.code)
@@ -176,6 +178,18 @@ class ActView(View):
         if self.said:
             messages.success(request, self.said)
         return HttpResponseRedirect(address)
+
+    def answer_of_first(self) -> HttpResponse | None:
+        """The answer to a second arrival whose words no longer fit, as the first one changed what they name."""
+        try:
+            key = uuid.UUID(self.request.POST.get("form_key", ""))
+        except ValueError:
+            return None
+        act = Act.objects.filter(key=key).first()
+        if act is None:
+            return None
+        messages.info(self.request, AlreadyDone(act).sentence)
+        return HttpResponseRedirect(self.first_page(act))
 
     def show(self, form: Any, *, status: int = 200) -> HttpResponse:
         """Draw the page."""
