@@ -6,7 +6,7 @@ import re
 from typing import Any
 
 from axe_playwright_python.sync_playwright import Axe
-from playwright.sync_api import Page, expect
+from playwright.sync_api import Locator, Page, expect
 
 from tests.conftest import PASSWORD
 
@@ -78,3 +78,58 @@ def violations(page: Page, *, only: str = "") -> list[str]:
     options = {"runOnly": [only]} if only else None
     found: list[dict[str, Any]] = Axe().run(page, options=options).response["violations"]
     return [f"{one['id']}: {one['help']}: {[node['target'] for node in one['nodes'][:4]]}" for one in found]
+
+
+def field(page: Page, label: str) -> Locator:
+    """The field of that label, whether or not it says that it's optional."""
+    return page.get_by_label(re.compile(rf"^\s*{re.escape(label)}(\s+optional)?\s*$"))
+
+
+def tab_to(page: Page, what: Locator, *, at_most: int = 40) -> None:
+    """Press Tab until the focus is there, and see that it shows."""
+    for _ in range(at_most):
+        if what.evaluate("one => one === document.activeElement"):
+            assert what.evaluate("one => one.matches(':focus-visible')")
+            return
+        page.keyboard.press("Tab")
+    raise AssertionError(f"{what} isn't reached by {at_most} presses of Tab")
+
+
+def tab_and_type(page: Page, label: str, text: str) -> None:
+    """Go to a field by Tab and type over what it holds."""
+    tab_to(page, field(page, label))
+    page.keyboard.press("Control+a")
+    page.keyboard.type(text)
+
+
+def press(page: Page, name: str, role: Any = "link") -> None:
+    """Go to a link or button by Tab and press Enter; wait for the page that follows."""
+    tab_to(page, page.get_by_role(role, name=name, exact=True).first)
+    enter(page)
+
+
+def enter(page: Page) -> None:
+    """Press Enter, and wait for the page that follows."""
+    with page.expect_navigation():
+        page.keyboard.press("Enter")
+
+
+def scan(page: Page, code: str) -> None:
+    """Scan at the Counter: its field has the focus by itself, and a scanner types and presses Enter."""
+    expect(page.locator("#scan-main")).to_be_focused()
+    page.keyboard.type(code)
+    enter(page)
+
+
+def largest(page: Page) -> str:
+    """The text of the largest letters on the page."""
+    found: str = page.evaluate("""() => {
+      let best = null, size = 0;
+      for (const one of document.querySelectorAll("main *")) {
+        const own = [...one.childNodes].some(node => node.nodeType === 3 && node.data.trim());
+        const now = parseFloat(getComputedStyle(one).fontSize);
+        if (own && one.checkVisibility() && now > size) [best, size] = [one, now];
+      }
+      return best.innerText.trim();
+    }""")
+    return found
