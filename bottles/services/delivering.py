@@ -155,7 +155,7 @@ def _refuse_out_of_order(bottle: Bottle, happened_at: datetime, *, moved_too: bo
     """Refuse a coming or going that lies before what is already known of the bottle afterwards."""
     later = (
         Custody.objects.filter(bottle=bottle, happened_at__gt=happened_at).exists()
-        or Weighing.objects.filter(bottle=bottle, strike__isnull=True, happened_at__gte=happened_at).exists()
+        or Weighing.objects.filter(bottle=bottle, strike__isnull=True, happened_at__gt=happened_at).exists()
     )
     if moved_too and not later:
         lines = Line.objects.filter(Q(source__bottle=bottle) | Q(target__bottle=bottle))
