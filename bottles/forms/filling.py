@@ -57,22 +57,24 @@ class ReadingsForm(ActForm):
     supply_temperature = TemperatureField(
         label="Its temperature", error_messages={"required": "Read the supply bottle's temperature."}
     )
-    taken = forms.ChoiceField(label="How it was taken", choices=TEMPERATURES, initial="wall")
+    taken = forms.ChoiceField(label="Taken on the supply bottle", choices=TEMPERATURES, initial="wall")
     supply_weight = MassField(
         label="The supply bottle weighs", required=False, help_text="Where it stands on the station's own scale."
     )
     bottle_temperature = TemperatureField(
         label="Temperature of the bottle to fill", error_messages={"required": "Read the temperature of the bottle to fill."}
     )
-    bottle_taken = forms.ChoiceField(label="How it was taken", choices=TEMPERATURES, initial="wall")
+    bottle_taken = forms.ChoiceField(label="Taken on the bottle to fill", choices=TEMPERATURES, initial="wall")
 
-    def __init__(self, *args: Any, bottle: Bottle, offered: Offered, mass: Any, station: Any = None, **kwargs: Any) -> None:
+    def __init__(
+        self, *args: Any, bottle: Bottle, offered: Offered, mass: Any, station: Any = None, but: Bottle | None = None, **kwargs: Any
+    ) -> None:  # fmt: skip
         super().__init__(*args, **kwargs)
         self.bottle = bottle
         self.offered = offered
         supply: Any = self.fields["supply"]
         supply.mass = mass
-        supply.queryset = supplies_offered(bottle, station)
+        supply.queryset = supplies_offered(bottle, station, but)
         for name, words in offered.ages.items():
             self.fields[name].help_text = words
         if not offered.supply_scales:
@@ -102,7 +104,8 @@ class FillForm(ReadingsForm):
     """Everything that opens a refill."""
 
     bottle_weight = MassField(
-        label="The bottle to fill weighs", error_messages={"required": "Weigh the bottle with everything of its tare list on it."}
+        label="The bottle to fill weighs", error_messages={"required": "Weigh the bottle with everything of its tare list on it."},
+        widget=forms.TextInput(attrs={"autocomplete": "off", "autofocus": True}),
     )
     wet = forms.BooleanField(label="It's wet or frosted", required=False)
     start = forms.ChoiceField(label="How it starts", choices=STARTS, initial=WEIGHED)

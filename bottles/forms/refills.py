@@ -19,7 +19,10 @@ ENDS = [("", "not finished yet"), *Refill.ENDS]
 class WeighForm(ActForm):
     """What the scale says, and whether that was all."""
 
-    gross = MassField(label="The scale reads", error_messages={"required": "Type what the scale reads."})
+    gross = MassField(
+        label="The scale reads", error_messages={"required": "Type what the scale reads."},
+        widget=forms.TextInput(attrs={"autocomplete": "off", "autofocus": True}),
+    )
     line = forms.ChoiceField(label="The line is", choices=LINE, widget=forms.RadioSelect, initial="off")
     ended_by = forms.ChoiceField(
         label="What ended it", choices=ENDS, required=False, help_text="Closes the refill, once the line is disconnected."

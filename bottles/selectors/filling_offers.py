@@ -24,9 +24,13 @@ class Offered:
     supply_scales: bool = False
 
 
-def supplies_offered(bottle: Bottle, station: Station | None = None) -> QuerySet[Supply]:
+def supplies_offered(
+    bottle: Bottle, station: Station | None = None, but: Bottle | None = None
+) -> QuerySet[Supply]:  # fmt: skip
     """Return the supply bottles on the stations in use, the weakest first: it's drawn on first."""
     found = Supply.objects.filter(station__active=True, bottle__retired_at__isnull=True).exclude(bottle=bottle)
+    if but is not None:
+        found = found.exclude(bottle=but)
     if station is not None:
         found = found.filter(station=station)
     return found.select_related("station__scale", "station__supply_scale", "bottle__account").order_by(

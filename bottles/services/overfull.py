@@ -16,6 +16,7 @@ from bottles.selectors.refills import Course, net_without_hose
 from shop.base import clock
 
 ROOM_MK = 293_150  # where no reading of the supply bottle, which stands in the room, is at hand
+WARMS_MK = 3_000  # by so much a room may warm in the meantime (common practice, no source)
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,6 +43,7 @@ def timer_of(course: Course, weighing: Weighing) -> Timer:
     refill = course.refill
     bottle = refill.bottle
     start_mk, room_mk, read = _temperatures(course)
+    room_mk += WARMS_MK
     net = net_without_hose(refill, weighing)
     vessel = Vessel(
         (bottle.capacity_ml or 1) / 1e6, min(walls_of(bottle).heat_j_k), (net + weighing.error_g) / 1000,

@@ -154,10 +154,12 @@ def forecast_live(request: HttpRequest, code: str) -> HttpResponse:
     return render(request, "bottles/_forecast.html", {"bottle": bottle} | forecast_part(form, bottle, judgement, shop, words))
 
 
-def chosen_supply(request: HttpRequest, bottle: Bottle, station: Station | None = None) -> Supply | None:
+def chosen_supply(
+    request: HttpRequest, bottle: Bottle, station: Station | None = None, but: Bottle | None = None
+) -> Supply | None:  # fmt: skip
     """The supply bottle that the form or the address names; else the weakest."""
     asked = request.POST.get("supply") or request.GET.get("supply") or ""
-    offered = supplies_offered(bottle, station)
+    offered = supplies_offered(bottle, station, but)
     found = offered.filter(pk=int(asked)).first() if asked.isdigit() and len(asked) < 18 else None
     return found or offered.first()
 

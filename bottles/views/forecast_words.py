@@ -54,6 +54,7 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
         "stop": stop_figure(asked.bottle, supply, answer.target_g, words),
         "danger": reading if answer.danger else [],
         "blocked": answer.blocked,
+        "contradiction": bool(answer.contents and answer.contents.agrees is False and not answer.danger),
         "span": words.span(answer.low_g, answer.high_g),
         "likely": words.mass(answer.likely_g) if answer.likely_g is not None else "",
         "inputs": _inputs(asked, answer, words),
@@ -63,7 +64,7 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
         "limits": _limits(answer, words),
         "cold": _cold(answer, words),
         "left": _left(answer, supply, words),
-        "line": words.mass(answer.line_g),
+        "line": words.small(answer.line_g),
         "line_origin": "entered" if supply.station.line_loss_g is not None else "computed",
         "reading": _reading(answer, words) if answer.contents else [],
         "reading_warnings": [] if answer.danger else reading,
@@ -150,7 +151,12 @@ def _cold(answer: Answer, words: RefillWords) -> str:
     if answer.likely_g is None:
         return "How cold it must be for a full fill can't be said before the supply bottle is weighed."
     if found.warmest_receiver_k is None:
-        return "No cooling will do: even at −40 the supply bottle doesn't hold enough for a full fill."
+        if found.held and found.held.stopped_by == "fill limit":
+            return (
+                "No cooling beforehand will do for a full fill. Kept as cold as it is now, in its bath or freezer, for as long "
+                "as it takes, it would fill."
+            )
+        return "No cooling will do: the supply bottle doesn't hold enough for a full fill however cold this one is."
     if found.warmest_receiver_k - 273.15 > HOTTEST_C:
         return "It needs no cooling for a full fill, done quickly."
     at = words.temperature(found.warmest_receiver_k * 1000)

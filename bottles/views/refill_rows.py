@@ -9,6 +9,7 @@ from typing import Any
 from django.urls import reverse
 
 from bottles.models import Refill, Weighing
+from bottles.physics.filling import percent_of_limit
 from bottles.rules.refill_flows import Flow
 from bottles.selectors.refills import Course, course_of, last_sources, last_weighings, net_without_hose
 from bottles.selectors.scales import scale_uncertainty
@@ -68,7 +69,7 @@ def page_context(refill: Refill, words: RefillWords, shop: Shop) -> dict[str, An
         "waits": wait_words(refill, shop), "wait_over": bool(refill.wait_until and refill.wait_until <= clock.now()),
         "closable": _closable(course), "why_not": _why_not(course),
         "net": _net(refill, last, words),
-        "percent": f"{max(0, net_without_hose(refill, last)) * 100 // refill.limit_g} %" if last and refill.limit_g else "",
+        "percent": f"{percent_of_limit(net_without_hose(refill, last), refill.limit_g)} %" if last else "",
         "limit": words.mass(refill.limit_g), "target": words.mass(refill.target_g),
         "binds": BINDS.get(refill.decision.binds, refill.decision.binds), "edition": refill.decision.edition,
         "empty_weight": _as_read(course.before, course.before.tare.total_g if course.before else 0, refill, words),
@@ -131,7 +132,7 @@ def _timer(course: Course, over: Weighing, words: RefillWords) -> dict[str, Any]
         found = timer_of(course, over)
     except PhysicsError as error:
         return {"over": words.mass(over.net_g - course.refill.limit_g), "troubles": error.sentence}
-    room = f"a room of {words.temperature(found.room_mk)}" + ("" if found.room_read else " (taken, not read)")
+    room = f"a room that warms to {words.temperature(found.room_mk)}" + ("" if found.room_read else " (taken, not read)")
     return {
         "over": words.mass(found.over_g), "out": words.mass(found.out_g), "full_now": found.full_now, "how": found.how,
         "full_at": words.temperature(found.full_at_mk) if found.full_at_mk is not None else "",
@@ -152,7 +153,7 @@ def _minutes(left: timedelta) -> str:
 
 def _weighing(refill: Refill, row: Weighing, words: RefillWords, shop: Shop) -> list[str]:
     return [
-        at(row.happened_at, shop), row.get_step_display(), words.on_scale(row.gross_g, row.scale),
+        at(row.happened_at, shop), row.get_step_display(), words.read(row.gross_g, row.scale),
         words.mass(net_without_hose(refill, row), plus_minus_g=row.error_g) + (", wet" if row.wet else ""), str(row.scale),
     ]  # fmt: skip
 
@@ -170,7 +171,7 @@ def _draw(course: Course, number: int, words: RefillWords, shop: Shop) -> dict[s
 
 def _moved(course: Course, flow: Flow, words: RefillWords) -> tuple[str, str, str]:
     source = course.draws[flow.draw].source.code if flow.draw is not None else ""
-    return (words.mass(flow.grams, plus_minus_g=flow.error_g), WENT[flow.kind].format(source=source), flow.origin)
+    return (words.small(flow.grams, plus_minus_g=flow.error_g), WENT[flow.kind].format(source=source), flow.origin)
 
 
 def _closable(course: Course) -> bool:
@@ -200,9 +201,9 @@ def _as_read(weighing: Weighing | None, grams: int, refill: Refill, words: Refil
 
 def _left_at(course: Course, words: RefillWords) -> str:
     last = course.reads[-1] if course.reads else None
-    return words.on_scale(last.gross_g, last.scale) if last else ""
+    return words.read(last.gross_g, last.scale) if last else ""
 
 
 def _looked(refill: Refill) -> str:
     passed = refill.checks.filter(passed=True).count()
-    return f"{passed} items in order, looked at by {refill.person or 'Tarebook'}"
+    return f"{passed} items in order, looked at by {refill.person or 'Tarebook'}".rstrip(".") + "."

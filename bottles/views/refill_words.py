@@ -29,6 +29,12 @@ class RefillWords(Words):
         """A pressure as a gauge shows it."""
         return format_pressure(round(pascal), self.units.pressure, self.ambient_pa)
 
+    def small(self, grams: int, *, plus_minus_g: int | None = None) -> str:
+        """A weight that may be a few grams: those in grams or ounces."""
+        if abs(grams) >= 450:
+            return self.mass(grams, plus_minus_g=plus_minus_g)
+        return format_mass(grams, "oz" if self.units.name == "us" else "g", plus_minus_g=plus_minus_g)
+
     def span(self, low_g: int, high_g: int) -> str:
         """Two weights with one dash, or one where they're written alike."""
         low, high = self.mass(low_g), self.mass(high_g)
@@ -39,6 +45,10 @@ class RefillWords(Words):
         if scale is None:
             return self.mass(grams)
         return reading_not_above(max(0, grams), style_of(scale), scale.resolution_g)
+
+    def read(self, grams: int, scale: Scale) -> str:
+        """A reading as a scale wrote it."""
+        return format_mass(grams, style_of(scale), scale.resolution_g)
 
     def other(self, grams: int, scale: Scale | None) -> str:
         """The same weight in the other unit system, for whoever reads that."""

@@ -133,15 +133,20 @@ class AnotherSupply(OfRefill):
     said = ""
 
     def initial(self) -> dict[str, Any]:
-        supply = chosen_supply(self.request, self.refill.bottle, self.refill.station)
+        supply = chosen_supply(self.request, self.refill.bottle, self.refill.station, self.in_force)
         offered = readings_offered(self.refill.station)
         return super().initial() | offered.values | {"supply": supply.pk if supply else None}
 
     def form_kwargs(self) -> dict[str, Any]:
         return {
             "bottle": self.refill.bottle, "offered": readings_offered(self.refill.station),
-            "mass": refill_words(self.request, self.shop).mass, "station": self.refill.station,
+            "mass": refill_words(self.request, self.shop).mass, "station": self.refill.station, "but": self.in_force,
         }  # fmt: skip
+
+    @property
+    def in_force(self) -> Bottle:
+        """The supply bottle that it's filled from now."""
+        return self.refill.draws.select_related("source").order_by("-id")[0].source
 
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
         if "forecast" in request.POST:

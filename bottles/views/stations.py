@@ -13,8 +13,10 @@ from django.urls import reverse
 from bottles.forms.stations import ConnectForm, DisconnectForm, StationForm, station_as_typed
 from bottles.models import Station, Supply
 from bottles.rules.lying import how_it_lies
+from bottles.selectors.filling_facts import takes_liquid
 from bottles.services import stations as service
 from bottles.views.refill_words import RefillWords, refill_words
+from shop.base.errors import NotReady
 from shop.base.models import Shop
 from shop.base.permissions import EVERYONE, MANAGERS, allow
 from shop.people.acting import ActView
@@ -144,8 +146,6 @@ class Disconnect(ActView):
 
     def act(self, form: DisconnectForm, person: User, key: uuid.UUID) -> str:
         if self.supply is None:
-            from shop.base.errors import NotReady
-
             raise NotReady("It was taken off already.", code="taken off")
         service.disconnect(key=key, person=person, supply=self.supply, place=form.cleaned_data["place"])
         return reverse("bottles:stations")
@@ -190,10 +190,15 @@ def _supply(supply: Supply, words: RefillWords) -> dict[str, Any]:
     bottle = supply.bottle
     account, standing = getattr(bottle, "account", None), getattr(bottle, "standing", None)
     weighing = standing.weighing if standing else None
-    lies = how_it_lies("supply", bottle.dip_tube)
+    stands = "upside down" if supply.inverted else "upright"
+    gives = {
+        True: f"Stands {stands} and gives liquid.", False: f"Stands {stands} and gives vapour only.",
+        None: f"Stands {stands}; whether it gives liquid isn't known.",
+    }[takes_liquid(bottle, inverted=supply.inverted)]  # fmt: skip
+    lies = how_it_lies("supply", bottle.dip_tube).sentence if not gives.endswith("gives liquid.") else ""
     return {
         "pk": supply.pk, "code": bottle.code, "url": bottle.get_absolute_url(),
         "books": words.mass(account.balance_g) if account else "unknown",
         "weighed": words.mass(weighing.net_g, plus_minus_g=weighing.error_g) if weighing else "never weighed",
-        "stands": "upside down" if supply.inverted else "upright", "lies": lies.sentence,
+        "stands": f"{gives} {lies}".strip(),
     }  # fmt: skip
