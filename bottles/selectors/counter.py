@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from django.db.models import QuerySet
+from django.db.models import F, QuerySet
 
 from bottles.models import Refill, Standing, Station, Supply
 
@@ -29,7 +29,7 @@ def waiting() -> Sequence[Standing]:
     return list(
         _standings()
         .filter(is_in=True, waits=True, bottle__retired_at__isnull=True)
-        .order_by("custody__promised_at", "custody__happened_at", "bottle__code")[:SHOWN]
+        .order_by(F("custody__promised_at").asc(nulls_last=True), "custody__happened_at", "bottle__code")[:SHOWN]
     )
 
 

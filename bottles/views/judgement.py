@@ -25,12 +25,12 @@ class Verdict:
 
 
 FILLING = {
-    "yes": Verdict("yes", "May be filled"),
     "only after": Verdict("after", "Fill only after…"),
     "no": Verdict("no", "Must not be filled"),
     "unknown": Verdict("unknown", "Can't be judged: not filled until it can"),
 }
 AFTER_THE_LOOK = Verdict("yes", "May be filled, after the filler's look")
+IN_ITS_MONTH = Verdict("after", "May be filled; its test is due this month")
 EMPTYING = {
     "yes": "It may be emptied into another bottle.",
     "only after": "It may be emptied into another bottle only after what is marked below.",
@@ -44,8 +44,8 @@ def verdict(judgement: Judgement) -> Verdict:
 
     Every fill owes a look, so a bottle for which only that is left reads as one that may.
     """
-    if judgement.only_the_look_is_left:
-        return AFTER_THE_LOOK
+    if judgement.only_the_look_is_left or judgement.may_be_filled == "yes":
+        return IN_ITS_MONTH if judgement.status == "due this month" else AFTER_THE_LOOK
     return FILLING[judgement.may_be_filled]
 
 

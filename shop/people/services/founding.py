@@ -44,7 +44,7 @@ def found_shop(
         paper="letter" if country in ("US", "CA") else "a4",
     )
     shop.full_clean()
-    manager = User(sign_in_name=sign_in_name(manager_name), name=manager_name, is_manager=True, is_front_desk=True)
+    manager = User(sign_in_name=sign_in_name(manager_name), name=manager_name, is_manager=True)
     manager.set_password(manager_password)
     manager.full_clean()
     with acts.begin(key=uuid.uuid4(), person=None, code="shop.founded", subject="shop") as act:

@@ -24,6 +24,7 @@ from shop.base import datafolder, founding, jobs
 from shop.base.datafolder import CannotOpen
 from shop.base.errors import Refusal
 from shop.base.models import Job, Shop
+from shop.base.permissions import ROLE_WORDS
 from shop.base.supervise import Child, Supervisor
 
 LOOPBACK = ("127.0.0.1", "localhost", "::1")
@@ -212,4 +213,6 @@ def _found(options: dict[str, Any], say: Callable[[str], None]) -> list[tuple[st
     wishes = founding.demo_wishes(options)
     # The job first: should this be cut off between the two, the next start finds no shop and goes on.
     jobs.ask("demo.fill", "demo")
-    return list(import_module("shop.demo.people").demo_people(**wishes))
+    everyone: list[tuple[str, str, str]] = list(import_module("shop.demo.people").demo_people(**wishes))
+    single = set(ROLE_WORDS.values())
+    return [row for row in everyone if row[0] in single]  # one a role; whoever holds several is on the people page
