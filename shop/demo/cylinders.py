@@ -5,6 +5,7 @@ Weights of walls are rules of thumb of a like kind (so much a litre of capacity)
 
 from __future__ import annotations
 
+import zlib
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Any
@@ -124,5 +125,5 @@ class Spec:
 
 def made_up_serial(code: str) -> str:
     """Return a serial number that follows from the code and from nothing else."""
-    number = sum((place + 1) * ord(letter) * 7919 for place, letter in enumerate(code))
-    return f"{'ABDEHKNR'[number % 8]}{10_000 + number % 89_999}"
+    number = zlib.crc32(code.encode("ascii"))
+    return f"{'ABDEHKNR'[number % 8]}{100_000 + number // 8 % 900_000}"

@@ -28,7 +28,7 @@ class Days:
     first: date
 
     @classmethod
-    def until(cls, today: date, zone: ZoneInfo, history_months: int = HISTORY_MONTHS) -> Days:
+    def until(cls, today: date, zone: ZoneInfo, history_months: float = HISTORY_MONTHS) -> Days:
         """Return the days of so many months until today."""
         return cls(today, zone, today - timedelta(days=round(history_months * DAYS_A_MONTH)))
 

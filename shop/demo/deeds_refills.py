@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from bottles.models import Refill, Station, Supply
 from bottles.selectors.filling_facts import air_pressure
-from bottles.selectors.judging import judge_bottle
 from bottles.services import refill_steps, stations
 from bottles.services.forecasting import Asked, Readings, work_out
 from bottles.services.refill_steps import Weight, weigh_refill
@@ -35,8 +34,8 @@ def _open(doer: Doer, step: Step) -> Opened:
         station__code=told["station"], bottle__code=told["supply"]
     )
     asked = Asked(
-        bottle=bottle, supply=supply, limit_g=judge_bottle(bottle, shop=doer.shop).limit.grams or 0,
-        source_limit_g=judge_bottle(supply.bottle, shop=doer.shop).limit.grams, shop=doer.shop,
+        bottle=bottle, supply=supply, limit_g=doer.limit_g(bottle) or 0, source_limit_g=doer.limit_g(supply.bottle),
+        shop=doer.shop,
     )
     readings = Readings(
         supply_temperature=parse_temperature(told["supply_temperature"], default_unit="°C"),

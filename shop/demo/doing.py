@@ -12,6 +12,7 @@ from datetime import datetime
 from typing import Any
 
 from bottles.models import Bottle, Scale
+from bottles.selectors.judging import judge_bottle
 from shop.base import clock
 from shop.base.errors import AlreadyDone
 from shop.base.models import Act, Place, Shop
@@ -28,12 +29,19 @@ class Doer:
     shop: Shop
     key_of: Callable[[str], uuid.UUID]
     people: dict[str, User] = field(default_factory=dict)
+    limits: dict[str, int | None] = field(default_factory=dict)  # of a bottle: no step changes one
 
     def person(self, sign_in: str) -> User:
         """Return who does a step."""
         if sign_in not in self.people:
             self.people[sign_in] = User.objects.get(sign_in_name=sign_in)
         return self.people[sign_in]
+
+    def limit_g(self, bottle: Bottle) -> int | None:
+        """Return a bottle's fill limit, judged once."""
+        if bottle.code not in self.limits:
+            self.limits[bottle.code] = judge_bottle(bottle, shop=self.shop).limit.grams
+        return self.limits[bottle.code]
 
     def common(self, step: Step) -> dict[str, Any]:
         """Return what every service takes."""

@@ -34,6 +34,7 @@ class Fill:
     room_c: float = 21.0
     line_on: bool = False  # weighed once with the line on, before it's taken off
     star_checks: bool = True
+    spilt_g: float = 0.0  # beyond what the line takes, and nobody writes it down
     by: str = ""
 
 
@@ -92,7 +93,7 @@ def fill_bottle(past: Past, fill: Fill) -> bool:
     volume = math.pi / 4 * (_um(station.hose_bore) * 1e-6) ** 2 * _um(station.hose_length) * 1e-6
     poured = pour(source=source, receiver=receiver, room_g=max(room_g, 0.0), line_volume_m3=volume, rng=past.rng)
     past.net_g[fill.code] += poured.moved_g
-    past.net_g[fill.supply] -= poured.moved_g + poured.line_g
+    past.net_g[fill.supply] -= poured.moved_g + poured.line_g + fill.spilt_g
     if fill.line_on:
         past.later(6)
         past.write(

@@ -117,6 +117,7 @@ class History:
             Fill(
                 regular.code, station, supply, method="chilled" if self.cold(regular) else "pressure", room_c=season,
                 line_on=self.rng.random() < 0.25, star_checks=regular.code != STAR_BROKEN,
+                spilt_g=self.rng.uniform(250, 600) if station == "ST-2" and self.rng.random() < 0.08 else 0.0,
                 by=self.rng.choice((BENCH, BENCH, BOTH, DEPUTY)).sign_in,
             ),
         )  # fmt: skip

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
+from shop.base.models import Shop
 from shop.physics.unit_table import LB_G
 from shop.rules import month as months
 from shop.rules.month import Month
@@ -91,6 +92,11 @@ _KITS = {
 def kit_for(country: str) -> Kit:
     """Return the kit of a country; raises KeyError where the demo has none for it."""
     return _KITS[country]
+
+
+def kit_of(shop: Shop) -> Kit:
+    """Return the kit of a shop: its country's, with the units, the zone and the height that it was given."""
+    return replace(kit_for(shop.country), units=shop.units, time_zone=shop.time_zone, height_m=shop.height_m)
 
 
 def countries() -> tuple[str, ...]:

@@ -5,7 +5,6 @@ from __future__ import annotations
 import time
 from datetime import date
 from typing import Any
-from zoneinfo import ZoneInfo
 
 from shop.base import clock
 from shop.base.errors import NotReady
@@ -13,7 +12,7 @@ from shop.base.jobs import JobCancelled, LeaseLost, Running, job_kind
 from shop.base.models import Job, Shop
 from shop.demo.days import HISTORY_MONTHS
 from shop.demo.doing import do_all
-from shop.demo.kit import kit_for
+from shop.demo.kit import kit_of
 from shop.demo.people import SHOP_NAME, WORKERS
 from shop.demo.world import SEED, plan
 
@@ -36,15 +35,14 @@ def fill(running: Running) -> dict[str, Any]:
         raise LeaseLost
     if shop.name != SHOP_NAME:
         raise NotReady("This is a real shop: the demo stays out of it.", code="a real shop")
-    kit_for(shop.country)
     asked_on = clock.day_of(Job.objects.values_list("asked_at", flat=True).get(pk=running.id), shop)
     args = running.args
-    months = int(args.get("months", HISTORY_MONTHS))
+    months = float(args.get("months", HISTORY_MONTHS))
     steps = plan(
-        today=date.fromisoformat(args["today"]) if "today" in args else asked_on, country=shop.country,
-        zone=ZoneInfo(shop.time_zone), seed=int(args.get("seed", SEED)), history_months=months,
+        today=date.fromisoformat(args["today"]) if "today" in args else asked_on, kit=kit_of(shop),
+        seed=int(args.get("seed", SEED)), history_months=months,
     )
-    total, done, said = STEPS + STEPS_A_MONTH * months, 0, 0.0
+    total, done, said = STEPS + round(STEPS_A_MONTH * months), 0, 0.0
     for step in do_all(steps, shop=shop, key_of=running.act_key):
         done += 1
         if time.monotonic() - said >= WORD_EVERY:

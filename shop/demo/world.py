@@ -13,16 +13,16 @@ from zoneinfo import ZoneInfo
 from shop.demo import counter, mishaps, regulars, states
 from shop.demo.days import HISTORY_MONTHS, Days
 from shop.demo.history import History
-from shop.demo.kit import kit_for
+from shop.demo.kit import Kit
 from shop.demo.past import Past
 from shop.demo.steps import Step
 
 SEED = 20_260
 
 
-def plan(*, today: date, country: str, zone: ZoneInfo, seed: int = SEED, history_months: int = HISTORY_MONTHS) -> Iterator[Step]:
-    """Give every step; the same day, seed and country give the same steps, to the byte."""
-    past = Past(kit_for(country), Days.until(today, zone, history_months), "demo", seed)
+def plan(*, today: date, kit: Kit, seed: int = SEED, history_months: float = HISTORY_MONTHS) -> Iterator[Step]:
+    """Give every step; the same day, seed and kit give the same steps, to the byte."""
+    past = Past(kit, Days.until(today, ZoneInfo(kit.time_zone), history_months), "demo", seed)
     yield from counter.premises(past)
     yield from counter.at_the_counter(past)
     yield from counter.ready_supply(past)
