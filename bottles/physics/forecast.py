@@ -25,6 +25,9 @@ from shop.physics.fluid import T_SATURATION_MAX, engine
 from shop.physics.roots import find_root
 
 
+_EVEN = 100.0  # Pa, a thousandth of a bar: some hundredths of a gram
+
+
 @dataclass(frozen=True, slots=True)
 class Tolerances:
     """How well a shop reads; each is taken as the edge of 19 readings in 20."""
@@ -360,15 +363,30 @@ def _least_source(transfer: Transfer, limit_kg: float, line_volume_m3: float) ->
     if source.temperature_k <= T_SATURATION_MAX:
         full = max(full, engine().saturation(source.temperature_k)[1])
     most = full * source.volume_m3
+    near = [transfer]
 
     def surplus(net_kg: float) -> float:
         new = replace(source, net_kg=net_kg)
         if net_kg - line_loss(new, line_volume_m3) <= room * (1.0 + 1e-9):
             return -1e9
-        other = Transfer(new, receiver, line_volume_m3)
+        other = near[0] = Transfer(new, receiver, line_volume_m3, like=near[0])
         full = other.surplus(room)
-        return full if full < 0.0 else min(full, other.surplus(0.0))
+        if full >= 0.0:
+            full = min(full, other.surplus(0.0))
+        return 0.0 if abs(full) < _EVEN else full
 
-    if most <= room or surplus(most) < 0.0:
+    if most <= room:
         return None
-    return find_root(surplus, room, most, tolerance=1e-5 * most)
+    # A supply with nothing left has no pressure; what is in it now halves the search at once.
+    low, at_low, high, at_high = room, -transfer.path.after(0.0).pressure_pa, most, -1.0
+    if room < source.net_kg < most:
+        now = surplus(source.net_kg)
+        if now >= 0.0:
+            high, at_high = source.net_kg, now
+        else:
+            low, at_low = source.net_kg, max(now, at_low)
+    if at_high < 0.0:
+        at_high = surplus(most)
+    if at_high < 0.0:
+        return None
+    return find_root(surplus, low, high, tolerance=1e-5 * most, at_low=at_low, at_high=at_high)

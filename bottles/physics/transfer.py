@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 
-from bottles.physics.vessel import Vessel, pressure_and_energy, settle
+from bottles.physics.vessel import HEAT, Vessel, pressure_and_energy, settle
 from bottles.physics.wall_condensing import Mark, slow_filling
 from bottles.physics.withdrawal import Adiabatic, Held
 from shop.physics.fluid import T_SATURATION_MAX, engine
@@ -22,7 +22,7 @@ EQUAL = "pressures equal"
 LIQUID_OUT = "source out of liquid"
 NO_DIFFERENCE = "no pressure difference"
 
-_RESOLUTION = 1e-7  # of the most that can go over
+_RESOLUTION = 1e-6  # of the most that can go over
 _EMPTY = 1e-9  # kg: a supply bottle with nothing in it, so that it has a state
 _DENSEST = 1240.0  # kg/m3, liquid at the triple point
 
@@ -66,8 +66,12 @@ class Transfer:
         line_volume_m3: float = 0.0,
         *,
         path: Adiabatic | None = None,
+        like: Transfer | None = None,
     ) -> None:
-        """Fix both bottles at rest, and fill the line from the supply; a path may be shared."""
+        """Fix both bottles at rest, and fill the line from the supply; a path may be shared.
+
+        `like` is a transfer whose receiver settled nearby, to begin from.
+        """
         if source.net_kg < _EMPTY:
             source = replace(source, net_kg=_EMPTY)
         self.source, self.receiver = source, receiver
@@ -79,7 +83,9 @@ class Transfer:
         pressure, energy = pressure_and_energy(receiver.volume_m3, receiver.net_kg, t, receiver.air)
         self._energy = energy + self._wall * t
         self._rest = t, pressure
-        self._guess = t
+        self._guess, self._heat = t, HEAT
+        if like is not None:
+            self._guess, self._heat = like._guess, like._heat
         # The line's own contents leave with the energy that they took from the supply.
         self._line_j = self.path.after(self.line_kg).energy_given_j if self.line_kg else 0.0
         self._marks: list[Mark] | None = None
@@ -102,13 +108,14 @@ class Transfer:
             return self._rest
         receiver = self.receiver
         gained = self.path.after(self.line_kg + moved_kg).energy_given_j - self._line_j
-        t, p = settle(
+        t, p, self._heat = settle(
             receiver.volume_m3,
             self._wall,
             receiver.net_kg + moved_kg,
             self._energy + gained,
             self._guess,
             receiver.air,
+            self._heat,
         )
         self._guess = t
         return t, p

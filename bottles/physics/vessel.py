@@ -11,6 +11,7 @@ from shop.physics.roots import find_root
 WALL_HEAT = {"aluminium": 896.0, "steel": 470.0}  # J/kg/K
 COLDEST = 233.15  # K: -40 °C
 HOTTEST = 325.15  # K: 52 °C
+HEAT = 1500.0  # J/kg/K: a first guess at the heat capacity of contents at constant volume
 
 
 @dataclass(frozen=True, slots=True)
@@ -134,8 +135,8 @@ def pressure_and_energy(volume: float, mass: float, temperature: float, air: flo
 
 
 def settle(
-    volume: float, wall: float, mass: float, energy: float, guess: float, air: float = 0.0
-) -> tuple[float, float]:
+    volume: float, wall: float, mass: float, energy: float, guess: float, air: float = 0.0, heat: float = HEAT
+) -> tuple[float, float, float]:
     """Temperature and pressure at which contents and wall settle.
 
     Parameters
@@ -146,10 +147,12 @@ def settle(
     energy : float, of contents and wall, the wall's counted from 0 K [J]
     guess : float, temperature to start from [K]
     air : float, amount of air as pressure times volume over temperature [J/K]
+    heat : float, heat capacity of the contents to begin with: a guess alone [J/kg/K]
 
     Returns
     -------
-    tuple of float, temperature [K], absolute pressure [Pa]
+    tuple of float, temperature [K], absolute pressure [Pa], heat capacity of the contents as
+    the last step met it: a guess for the next question [J/kg/K]
 
     Assumptions
     -----------
@@ -171,7 +174,7 @@ def settle(
     """
     if mass <= 0.0:
         temperature = energy / wall if wall > 0.0 else guess
-        return temperature, air * temperature / volume
+        return temperature, air * temperature / volume, heat
     density, fluid = mass / volume, engine()
     pair = fluid.pressure_energy
 
@@ -180,17 +183,22 @@ def settle(
 
     # Secant steps from the guess; the bracket of the whole range where they stray.
     old, f_old = guess, surplus(guess)
-    new = old - f_old / (wall + 1500.0 * mass)
+    new = old - f_old / (wall + heat * mass)
     for _ in range(16):
         if not T_TRIPLE < new < T_MAX:
             break
         f_new = surplus(new)
-        if f_new == f_old and f_new != 0.0:
-            break
-        step = f_new * (new - old) / (f_new - f_old) if f_new != f_old else 0.0
-        if abs(step) < 1e-7:
+        if new == old or f_new == f_old:
+            step = 0.0
+            if f_new != 0.0 and new != old:
+                break
+        else:
+            slope = (f_new - f_old) / (new - old)
+            step = f_new / slope
+            heat = max((slope - wall) / mass, 0.1 * HEAT)
+        if abs(step) < 3e-7:
             # The state just asked for is this one; only air needs its share of the space.
-            return new, pressure_and_energy(volume, mass, new, air)[0] if air else fluid.pressure()
+            return new, pressure_and_energy(volume, mass, new, air)[0] if air else fluid.pressure(), heat
         old, f_old, new = new, f_new, new - step
     cold, hot = surplus(T_TRIPLE), surplus(T_MAX)
     if cold >= 0.0:
@@ -199,7 +207,7 @@ def settle(
         new = T_MAX
     else:
         new = find_root(surplus, T_TRIPLE, T_MAX, tolerance=1e-8, at_low=cold, at_high=hot)
-    return new, pressure_and_energy(volume, mass, new, air)[0]
+    return new, pressure_and_energy(volume, mass, new, air)[0], HEAT
 
 
 def _pressure(vessel: Vessel) -> float:

@@ -11,7 +11,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from bottles.physics.vessel import Vessel, settle
+from bottles.physics.vessel import HEAT, Vessel, settle
 from bottles.physics.withdrawal import Adiabatic
 from shop.physics.fluid import P_CRITICAL, P_TRIPLE, T_SATURATION_MAX, T_TRIPLE, engine
 
@@ -32,7 +32,7 @@ class Mark:
 class _Above:
     """Vapour and wall above the liquid: one temperature, a shrinking space."""
 
-    __slots__ = ("air", "energy", "mass", "pressure", "temperature", "volume", "wall")
+    __slots__ = ("air", "climb", "energy", "heat", "mass", "pressure", "temperature", "volume", "wall")
 
     def __init__(self, receiver: Vessel) -> None:
         fluid = engine()
@@ -51,12 +51,14 @@ class _Above:
                 self.volume = self.mass / rho_v if quality > 0.0 else 1e-6 * v
                 energy = h_v - p / rho_v
         self.energy = self.mass * energy + self.wall * t
-        self.pressure = 0.0
+        self.pressure, self.heat, self.climb = 0.0, HEAT, 0.0
         self.settle()
 
     def settle(self) -> None:
         """Find temperature and pressure; let what has condensed drip away."""
-        t, p = settle(self.volume, self.wall, self.mass, self.energy, self.temperature, self.air)
+        guess = min(max(self.temperature + self.climb, T_TRIPLE), T_SATURATION_MAX)
+        t, p, self.heat = settle(self.volume, self.wall, self.mass, self.energy, guess, self.air, self.heat)
+        self.climb = t - self.temperature
         self.temperature, self.pressure = t, p
         if t > T_SATURATION_MAX or self.mass <= 0.0:
             return
@@ -116,10 +118,12 @@ def slow_filling(source: Adiabatic, receiver: Vessel, line_kg: float, most_kg: f
     floor = 1e-4 * receiver.volume_m3
     while moved < end:
         step = min(step, end - moved)
-        middle = source.after(line_kg + moved + 0.5 * step)
+        ahead = source.after(line_kg + moved + step)
         # Half a step ahead by the last step's slope: second order at no further call.
-        pressure = min(above.pressure + 0.5 * step * rise, middle.pressure_pa)
-        stays, density, h_v = _parted(middle.outlet_j_kg, pressure)
+        pressure = min(above.pressure + 0.5 * step * rise, 0.5 * (given.pressure_pa + ahead.pressure_pa))
+        # The last drop of liquid leaves as such, though vapour is what follows it.
+        outlet = 0.5 * (given.outlet_j_kg + ahead.outlet_j_kg) if ahead.liquid else given.outlet_j_kg
+        stays, density, h_v = _parted(outlet, pressure)
         grown = stays * step / density
         left = above.volume - grown
         if grown > 0.3 * above.volume or above.mass + step > 1100.0 * left:
@@ -135,7 +139,7 @@ def slow_filling(source: Adiabatic, receiver: Vessel, line_kg: float, most_kg: f
         above.settle()
         rise = (above.pressure - before) / step
         moved += step
-        given = source.after(line_kg + moved)
+        given = ahead
         surplus = given.pressure_pa - above.pressure
         marks.append(Mark(moved, above.temperature, above.pressure, surplus))
         if surplus <= 0.0:

@@ -17,6 +17,7 @@ from shop.physics.roots import find_root
 from shop.physics.states import RHO_CRITICAL
 
 _STEP = 0.12  # share of the mass that one step in one phase may take
+_Side = tuple[float, float, float, float, float]  # saturated states, as the engine hands them out
 
 
 @dataclass(frozen=True, slots=True)
@@ -110,13 +111,14 @@ class Adiabatic:
         if isinstance(before, _OnePhase):  # the crossing may be found a hair above the dome
             temperature = min(temperature, T_SATURATION_MAX)
         if temperature <= T_SATURATION_MAX:
-            _, rho_l, rho_v, _, _ = engine().saturation(temperature)
+            side = engine().saturation(temperature)
+            _, rho_l, rho_v, _, _ = side
             edge = 1e-6 * rho_v
             dried = isinstance(before, _TwoPhase)
             if dried:
                 mass = min(mass, rho_v * v)
             if rho_v + edge < mass / v < rho_l * (1.0 + 1e-6):
-                self._stages.append(_TwoPhase(v, c, mass, temperature, pickup))
+                self._stages.append(_TwoPhase(v, c, mass, temperature, pickup, side))
                 return
             wet = isinstance(before, _OnePhase)
             at_dew = mass / v <= rho_v + edge and (wet or mass / v >= rho_v - edge)
@@ -124,7 +126,7 @@ class Adiabatic:
                 # Mist after the liquid is out stays in the bottle: it's vapour that leaves.
                 # Where vapour turns wet by itself, enough liquid may gather to be drawn.
                 draws = pickup and wet and self._gathers(mass, temperature)
-                self._stages.append(_TwoPhase(v, c, mass, temperature, draws))
+                self._stages.append(_TwoPhase(v, c, mass, temperature, draws, side))
                 return
         self._stages.append(_OnePhase(v, c, mass, temperature))
 
@@ -138,16 +140,18 @@ class Adiabatic:
 class _TwoPhase:
     """Liquid and vapour, one of which is drawn: closed, by the table."""
 
-    def __init__(self, volume: float, wall: float, mass: float, temperature: float, liquid: bool) -> None:
+    def __init__(
+        self, volume: float, wall: float, mass: float, temperature: float, liquid: bool, side: _Side
+    ) -> None:
         self._v, self._liquid = volume, liquid
         self._top = (mass, temperature)
         self._drain = Drain(withdrawal_table(liquid=liquid), volume, wall, mass, temperature)
         self._end: tuple[float, float] | None = None
         self._past = T_TRIPLE  # a temperature at which the liquid is out, where one was met
         self._saturation = engine().saturation
-        self._known = (mass, temperature, self._saturation(temperature))
+        self._known = (mass, temperature, side)
 
-    def _at(self, left: float) -> tuple[float, float, tuple[float, float, float, float, float]]:
+    def _at(self, left: float) -> tuple[float, float, _Side]:
         """Mass, temperature and saturated states, kept for the next question of the same mass."""
         if self._known[0] != left:
             temperature = self._drain.temperature_at(left)

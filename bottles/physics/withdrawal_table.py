@@ -112,7 +112,7 @@ class Drain:
             new = s - step
             if not low <= new <= high:
                 new = 0.5 * (low + high)
-            small = abs(new - s) < 1e-7  # the next step would be its square
+            small = abs(new - s) < 3e-6  # the next step would be about its square
             s = new
             if small:
                 break
