@@ -17,7 +17,7 @@ class Desk(Works):
     def __post_init__(self) -> None:
         super().__post_init__()
         factories.PlaceFactory(code="COUNTER", name="the counter", kind="counter")
-        self.customer = factories.CustomerFactory(name="Ostrander")
+        self.customer: Any = factories.CustomerFactory(name="Ostrander")
         factories.ConsentFactory(customer=self.customer)
 
     def customers(self, code: str, **changes: Any) -> Bottle:
