@@ -24,7 +24,6 @@ from shop.physics.errors import OutOfRange
 from shop.physics.fluid import T_SATURATION_MAX, engine
 from shop.physics.roots import find_root
 
-
 _EVEN = 100.0  # Pa, a thousandth of a bar: some hundredths of a gram
 
 

@@ -16,7 +16,7 @@ from shop.physics.fluid import T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.roots import find_root
 from shop.physics.states import RHO_CRITICAL
 
-_STEP = 0.12  # share of the mass that one step in one phase may take
+_STEP, _STEP_THIN = 0.12, 0.25  # share of the mass that one step in one phase may take; in thin vapour
 _Side = tuple[float, float, float, float, float]  # saturated states, as the engine hands them out
 
 
@@ -233,7 +233,8 @@ class _OnePhase:
     def _extend(self) -> None:
         """One step further; past saturation the phase is followed as if it were alone."""
         m, t, k1 = self._nodes[-1]
-        v, c, dm = self._v, self._c, -_STEP * m
+        v, c = self._v, self._c
+        dm = -m * (_STEP if m > 0.5 * RHO_CRITICAL * v else _STEP_THIN)
         k2 = _one_phase_slope(v, c, m + 0.5 * dm, t + 0.5 * dm * k1)
         k3 = _one_phase_slope(v, c, m + 0.5 * dm, t + 0.5 * dm * k2)
         k4 = _one_phase_slope(v, c, m + dm, t + dm * k3)
