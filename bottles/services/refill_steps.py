@@ -16,6 +16,7 @@ from bottles.selectors.refills import Course, course_of
 from bottles.services.forecasting import Answer, Asked, DangerSign
 from bottles.services.locking import lock
 from bottles.services.refill_books import post_flows
+from bottles.services.refill_refusals import Closed, NotDisconnected, Overfull, WetProvesNothing
 from bottles.services.refilling import draw_on, refuse_source
 from bottles.services.standing import restate
 from bottles.services.weighing import weigh_in
@@ -24,30 +25,6 @@ from shop.base.errors import NotReady, Refusal
 from shop.base.models import Act
 from shop.people.models import User
 from shop.physics.units import Entry
-
-
-class Closed(NotReady):
-    """This refill is closed. Its receipt says how it ended."""
-
-    code = "refill closed"
-
-
-class Overfull(NotReady):
-    """The bottle holds more than its limit. Let nitrous out outdoors until it weighs no more than that, then close."""
-
-    code = "overfull"
-
-
-class NotDisconnected(NotReady):
-    """Disconnect the line, weigh the bottle so, and close then: the weight without the line counts."""
-
-    code = "not disconnected"
-
-
-class WetProvesNothing(NotReady):
-    """Wet or frosted, a bottle can't be proven full: ice counts as grams. Dry it and weigh again, or close it otherwise."""
-
-    code = "wet"
 
 
 @dataclass(frozen=True, slots=True)

@@ -198,7 +198,8 @@ def forecast_part(
     if not form.is_bound:
         offered = supplies_offered(bottle).filter(pk=form.initial.get("supply") or 0).first()
         stop = stop_figure(bottle, offered, limit, words) if offered else None
-        waits = [str(form.fields[name].label) for name in ("supply_temperature", "bottle_temperature")]
+        lacking = [name for name in ("supply_temperature", "bottle_temperature") if not form.initial.get(name)]
+        waits = [str(form.fields[name].label) for name in lacking or ["bottle_weight"]]
         return {"forecast": None, "stop": stop, "waits": waits}
     wrong = [
         f"{form.fields[name].label}: {error}"

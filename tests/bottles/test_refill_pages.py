@@ -36,8 +36,9 @@ def client(works: Works, front_desk: Any, client_of: Any) -> Client:
 def filled(works: Works, **changes: str) -> dict[str, str]:
     """What is typed to open a refill, in the units of this shop: pounds, psi, °F."""
     typed = {
-        "form_key": str(key()), "supply": str(works.supply.pk), "bottle_weight": "6.72 kg", "gauge": "718", "supply_temperature": "68",
-        "taken": "wall", "bottle_temperature": "10", "bottle_taken": "wall", "start": "weighed", "method": "chilled", "look_all": "on",
+        "form_key": str(key()), "supply": str(works.supply.pk), "bottle_weight": "6.72 kg", "gauge": "718",
+        "supply_temperature": "68", "taken": "wall", "bottle_temperature": "10", "bottle_taken": "wall", "start": "weighed",
+        "method": "chilled", "look_all": "on",
     }  # fmt: skip
     return typed | changes
 
@@ -88,7 +89,9 @@ def test_a_reload_of_the_posted_form_opens_nothing_more(client: Client, works: W
      ("happened_at", "2099-01-01T10:00"), ("bottle_weight", "9" * 3_000_000)],
     ids=lambda value: value[:12],
 )  # fmt: skip
-def test_bad_input_gets_a_sentence_and_keeps_what_was_typed(client: Client, works: Works, field: str, typed: str) -> None:
+def test_bad_input_gets_a_sentence_and_keeps_what_was_typed(
+    client: Client, works: Works, field: str, typed: str
+) -> None:
     before = Act.objects.count(), Weighing.objects.count()
     answer = fill(client, works, **{field: typed})
     assert answer.status_code in (409, 422)
@@ -178,7 +181,14 @@ def test_a_gauge_below_is_told_beside_the_forecast(client: Client, works: Works)
 
 def test_the_limit_the_cold_and_what_is_left_are_said(client: Client, works: Works) -> None:
     page = live(client, works)
-    for words in ("quick", "slow to condense", "kept at temperature", "For a full fill it must be at", "S-07 will have", "The line keeps"):
+    for words in (
+        "quick",
+        "slow to condense",
+        "kept at temperature",
+        "For a full fill it must be at",
+        "S-07 will have",
+        "The line keeps",
+    ):
         assert words in page, words
 
 
@@ -216,16 +226,26 @@ def test_the_line_is_off_before_it_closes(client: Client, works: Works) -> None:
     answer = weigh(client, refill, gross="11.01 kg", line="on", ended_by="limit")
     assert answer.status_code == 422 and Weighing.objects.filter(refill=refill).count() == 0
     weigh(client, refill, gross="11.01 kg", line="on")
-    answer = client.post(reverse("bottles:refill_close", args=[refill.pk]), {"form_key": str(key()), "version": 1, "ended_by": "limit"})
+    answer = client.post(
+        reverse("bottles:refill_close", args=[refill.pk]), {"form_key": str(key()), "version": 1, "ended_by": "limit"}
+    )
     assert answer.status_code == 409
 
 
-def test_an_overfull_bottle_is_a_timer_on_every_machine(client: Client, works: Works, technician: Any, client_of: Any) -> None:
+def test_an_overfull_bottle_is_a_timer_on_every_machine(
+    client: Client, works: Works, technician: Any, client_of: Any
+) -> None:
     refill = works.open()
     weigh(client, refill, gross="11.72 kg", ended_by="limit")
     elsewhere = client_of(technician)  # another person, another session
     page = words_of(elsewhere.get(reverse("bottles:refill", args=[refill.pk])))
-    for words in ("Overfull by 1.5 lb", "full of liquid", "must come out", "Outdoors", "Upright, its dip (siphon) tube lets liquid out"):
+    for words in (
+        "Overfull by 1.5 lb",
+        "full of liquid",
+        "must come out",
+        "Outdoors",
+        "Upright, its dip (siphon) tube lets liquid out",
+    ):
         assert words in page, words
     assert "Stop at" not in page
     assert "overfull" in words_of(elsewhere.get(reverse("bottles:refills")))
@@ -256,7 +276,10 @@ def test_it_goes_on_from_another_supply_of_the_station(client: Client, works: Wo
     offered = [supply.bottle.code for supply in page.context["form"].fields["supply"].queryset]
     assert offered == ["S-09"]
     shown = {name: page.context["form"][name].value() for name in page.context["form"].fields}
-    typed = {name: value for name, value in shown.items() if value not in (None, False)} | {"form_key": str(key()), "gross": "8.42 kg"}
+    typed = {name: value for name, value in shown.items() if value not in (None, False)} | {
+        "form_key": str(key()),
+        "gross": "8.42 kg",
+    }
     looked = client.post(address, typed | {"forecast": "yes"})
     assert looked.status_code == 200 and "Goes over:" in words_of(looked)
     assert client.post(address, typed).status_code == 302
