@@ -12,6 +12,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
 
+from shop.base.models import Job
 from shop.base.permissions import BENCH, DESK, EVERYONE, MANAGERS, Role
 from tests import factories
 
@@ -35,6 +36,7 @@ class World:
         self.fitted = factories.placed(factories.BottleFactory(code="T-0413"), "car", car=self.car)
         self.weighing = factories.weighed(self.fitted, gross_g=10_940, tare_g=6_420)
         self.movement = factories.delivered(self.fitted, grams=4_520)
+        self.job = Job.objects.create(kind="ledger.check", key="2026-03-02")
         self.supply = factories.SupplyFactory()
         self.refill = factories.RefillFactory(station=self.supply.station, source=self.supply.bottle)
 
@@ -108,6 +110,10 @@ ROOMS = [
     Page("rooms:policy_new", MANAGERS),
     Page("rooms:places", MANAGERS),
     Page("rooms:place_new", MANAGERS),
+    Page("rooms:jobs", MANAGERS),
+    Page("rooms:job", EVERYONE, lambda world: {"pk": world.job.pk}),
+    Page("rooms:job_cancel", MANAGERS, lambda world: {"pk": world.job.pk}, get=405),
+    Page("rooms:check_books", MANAGERS),
     Page("rooms:place", MANAGERS, lambda world: {"pk": world.place.pk}),
 ]
 

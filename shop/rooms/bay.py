@@ -11,6 +11,7 @@ from shop.base.paging import page_of
 from shop.base.permissions import BENCH, allow
 from shop.cars.selectors import cars_in_use
 from shop.people.models import User
+from shop.rooms.jobs import going_on
 from shop.rooms.selectors import bottles_on_cars
 
 
@@ -29,7 +30,7 @@ def bay(request: HttpRequest) -> HttpResponse:
         }
         for car in page
     ]
-    return render(request, "rooms/bay.html", {"page": page, "rows": rows})
+    return render(request, "rooms/bay.html", {"page": page, "rows": rows, "going_on": going_on(request)})
 
 
 def system_of(request: HttpRequest) -> str:

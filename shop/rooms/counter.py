@@ -18,6 +18,7 @@ from shop.base import clock
 from shop.base.models import Shop
 from shop.base.permissions import EVERYONE, allow
 from shop.physics.weights import MassStyle, format_mass, reading_not_above
+from shop.rooms.jobs import going_on
 
 
 @allow(EVERYONE, room="counter")
@@ -35,6 +36,7 @@ def counter(request: HttpRequest) -> HttpResponse:
         "here": [_bottle(one, judged[one.pk], words, shop) for one in standing_here if one.pk not in filling],
         "supplies": [_supply(supply, words) for supply in selected.supplies()],
         "has_stations": bool(selected.stations()),
+        "going_on": going_on(request),
     }
     return render(request, "rooms/counter.html", context)
 

@@ -2,13 +2,19 @@
 
 from __future__ import annotations
 
+from datetime import timedelta
 from typing import Any
 
 from django.http import HttpRequest, HttpResponse
 from django.shortcuts import render
 from django.urls import NoReverseMatch, reverse
 
+from bottles.selectors.books import balance_between
+from bottles.views.wording import words_for
+from shop.base import clock
+from shop.base.models import Shop
 from shop.base.permissions import MANAGERS, allow
+from shop.rooms.jobs import going_on
 
 # What can be opened from here, in groups; a page that isn't in the addresses isn't shown.
 BOOKS: tuple[tuple[str, tuple[tuple[str, str, str], ...]], ...] = (
@@ -19,6 +25,8 @@ BOOKS: tuple[tuple[str, tuple[tuple[str, str, str], ...]], ...] = (
             ("bottles:bottles", "Bottles", "the register of all bottles"),
             ("bottles:scales", "Scales", "their resolution, error and checks"),
             ("bottles:stations", "Filling stations", "what hangs on each"),
+            ("bottles:stock_take", "Stock-take", "every bottle that is in, and when it was weighed"),
+            ("rooms:jobs", "Background work", "the nightly check of the books, and what else runs"),
         ),
     ),
     (
@@ -39,12 +47,54 @@ BOOKS: tuple[tuple[str, tuple[tuple[str, str, str], ...]], ...] = (
     ),
 )
 
+DAYS = 30
+LATELY = (
+    ("delivery", "delivered"),
+    ("customer", "with customers"),
+    ("car", "used on cars"),
+    ("line", "line loss"),
+    ("vented", "vented"),
+    ("returned", "went back"),
+    ("unaccounted", "unaccounted"),
+)
+
 
 @allow(MANAGERS, room="office")
 def office(request: HttpRequest) -> HttpResponse:
-    """The ways to every book."""
+    """What moved lately, and the ways to every book."""
     groups = [{"name": name, "links": links(entries)} for name, entries in BOOKS]
-    return render(request, "rooms/office.html", {"groups": [group for group in groups if group["links"]]})
+    context = {
+        "groups": [group for group in groups if group["links"]],
+        "nitrous": nitrous_lately(request),
+        "going_on": going_on(request),
+    }
+    return render(request, "rooms/office.html", context)
+
+
+def nitrous_lately(request: HttpRequest) -> dict[str, Any]:
+    """The books of the last thirty days in one line, each figure with its ±."""
+    shop = Shop.objects.get()
+    words = words_for(request, shop)
+    last = clock.today(shop)
+    told = balance_between(last - timedelta(days=DAYS - 1), last, shop=shop)
+    flows = {flow.code: flow for flow in told.flows}
+    shown = [
+        {
+            "what": word,
+            "value": words.mass(abs(flows[code].net_g), plus_minus_g=flows[code].error_g),
+            "way": ("over" if flows[code].net_g > 0 else "short") if code == "unaccounted" else "",
+        }
+        for code, word in LATELY
+        if code in flows
+    ]
+    return {
+        "first": told.first,
+        "last": told.last,
+        "filled": words.mass(told.filled_g),
+        "stock": words.mass(told.closing_g, plus_minus_g=told.closing_error_g),
+        "flows": shown,
+        "url": f"{reverse('bottles:balance')}?first={told.first}&last={told.last}",
+    }
 
 
 def links(entries: tuple[tuple[str, str, str], ...]) -> list[dict[str, Any]]:

@@ -2,7 +2,7 @@
 
 from django.urls import path
 
-from shop.rooms import bay, counter, find, home, keeping, office, things
+from shop.rooms import bay, counter, find, home, jobs, keeping, office, things
 
 app_name = "rooms"
 
@@ -21,5 +21,9 @@ urlpatterns = [
     path("policies/new", keeping.PolicyNew.as_view(), name="policy_new"),
     path("places", keeping.places, name="places"),
     path("places/new", keeping.PlaceNew.as_view(), name="place_new"),
+    path("jobs", jobs.job_list, name="jobs"),
+    path("jobs/<int:pk>", jobs.job, name="job"),
+    path("jobs/<int:pk>/cancel", jobs.cancel, name="job_cancel"),
+    path("jobs/check-books", jobs.CheckBooks.as_view(), name="check_books"),
     path("places/<int:pk>", keeping.PlaceChange.as_view(), name="place"),
 ]

@@ -1,0 +1,118 @@
+"""Work in the background: how far it is, what came of it, and stopping it."""
+
+from __future__ import annotations
+
+import uuid
+from typing import Any
+
+from django.http import HttpRequest, HttpResponse, HttpResponseRedirect
+from django.shortcuts import get_object_or_404, render
+from django.urls import reverse
+from django.views.decorators.http import require_POST, require_safe
+
+from shop.base import acts, clock, jobs
+from shop.base.models import Job, Shop
+from shop.base.permissions import EVERYONE, MANAGERS, allow
+from shop.people.acting import ActForm, ActView
+from shop.people.models import User, full_name
+
+KINDS = {"demo.fill": "Writing the demo's past", "ledger.check": "Checking the books"}
+RUNNING = ("queued", "running")
+LATEST = 40
+
+
+@allow(MANAGERS, room="office")
+def job_list(request: HttpRequest) -> HttpResponse:
+    """The latest work, and the way to check the books at once."""
+    shop = Shop.objects.get()
+    rows = [
+        {
+            "url": reverse("rooms:job", args=[job.pk]),
+            "what": what(job),
+            "kind": {"done": "yes", "failed": "no", "cancelled": "unknown"}.get(job.state, "open"),
+            "state": job.state,
+            "when": f"{job.asked_at.astimezone(clock.zone(shop)):%Y-%m-%d %H:%M}",
+            "person": full_name(job.asked_by),
+            "result": result_words(job),
+        }
+        for job in Job.objects.select_related("asked_by").order_by("-id")[:LATEST]
+    ]
+    return render(request, "rooms/jobs.html", {"rows": rows})
+
+
+@allow(EVERYONE, room="office")
+@require_safe
+def job(request: HttpRequest, pk: int) -> HttpResponse:
+    """One piece of work; the part alone where the page asks how far it is."""
+    found = get_object_or_404(Job, pk=pk)
+    template = "parts/_progress.html" if request.headers.get("HX-Request") else "rooms/job.html"
+    return render(request, template, progress(request, found))
+
+
+@allow(MANAGERS, room="office")
+@require_POST
+def cancel(request: HttpRequest, pk: int) -> HttpResponse:
+    """Ask work to stop after what it's at; what it did stays."""
+    found = get_object_or_404(Job, pk=pk)
+    jobs.cancel(found)
+    return HttpResponseRedirect(reverse("rooms:job", args=[found.pk]))
+
+
+class CheckBooks(ActView):
+    """Check the books now, not only at night."""
+
+    roles = MANAGERS
+    room = "office"
+    form_class = ActForm
+    heading = "Check the books now"
+    submit = "Check the books"
+    said = ""
+
+    def context(self) -> dict[str, Any]:
+        return {
+            "intro": "Each account is compared with its movements, all together with nothing. It's done every night too.",
+            "back_url": reverse("rooms:jobs"),
+        }
+
+    def act(self, form: ActForm, person: User, key: uuid.UUID) -> str:
+        with acts.begin(key=key, person=person, code="books.check asked", subject="shop"):
+            asked = jobs.ask("ledger.check", str(key), person=person)
+        return reverse("rooms:job", args=[asked.pk])
+
+    def first_page(self, act: Any) -> str:
+        return reverse("rooms:jobs")
+
+
+def progress(request: HttpRequest, found: Job) -> dict[str, Any]:
+    """What `_progress.html` takes."""
+    may_stop = bool(MANAGERS & request.user.roles)  # type: ignore[union-attr]
+    return {
+        "job": found,
+        "what": what(found),
+        "running": found.state in RUNNING,
+        "job_url": reverse("rooms:job", args=[found.pk]),
+        "cancel_url": reverse("rooms:job_cancel", args=[found.pk]) if may_stop else "",
+        "result": found.note if found.state in RUNNING else result_words(found),
+    }
+
+
+def going_on(request: HttpRequest) -> dict[str, Any] | None:
+    """The first piece of long work that a person waits for, for the head of a room; or None."""
+    found = Job.objects.filter(kind="demo.fill", state__in=RUNNING).order_by("id").first()
+    return progress(request, found) if found else None
+
+
+def what(found: Job) -> str:
+    """Name a job in words."""
+    return KINDS.get(found.kind, found.kind)
+
+
+def result_words(found: Job) -> str:
+    """Say what came of a job."""
+    if found.kind == "ledger.check" and found.state == "done":
+        result = found.result or {}
+        differences = result.get("differences", [])
+        if not result.get("count"):
+            return "The books agree: each account with its movements, all accounts with nothing."
+        return f"{result['count']} differences: " + "; ".join(differences)
+    return found.note
