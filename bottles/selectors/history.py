@@ -75,6 +75,31 @@ class History:
                 low = min(low, self._levels[number + 1])
         return low
 
+    def shortfalls(self, after: Key, before: Key | None, grams: int) -> tuple[int, list[tuple[datetime, int]]]:
+        """Return what must have been in the bottle beyond its books, were so much added after a place.
+
+        What is short there at once, and what is short when something later went out, until before
+        another place: so that no level falls below nothing at any time.
+        """
+        first = bisect_right(self._keys, after)
+        at_once = max(0, -(self._levels[first] + grams))
+        shift = grams + at_once
+        later: list[tuple[datetime, int]] = []
+        for number in range(first, len(self.changes)):
+            key = self._keys[number]
+            if before is not None and key >= before:
+                break
+            last_of_its_place = number + 1 == len(self.changes) or self._keys[number + 1] != key
+            short = -(self._levels[number + 1] + shift)
+            if short <= 0 or not last_of_its_place:
+                continue
+            shift += short
+            if key[0] == after[0]:
+                at_once += short
+            else:
+                later.append((key[0], short))
+        return at_once, later
+
     def next_ruling(self, after: Key) -> Spoken | None:
         """Return the first weighing that rules after a place in the order."""
         return next((one for one in self.ruling if one.key > after), None)

@@ -8,7 +8,8 @@ Guarantees:
 - at the first ruling weighing whose gap would pass its ±, the books are set to what they were
   there, so nothing changes after it;
 - no level falls below nothing at any time, not only at the end: what must have been in the
-  bottle beyond its books is booked as found, from *unaccounted*, in the same movement.
+  bottle beyond its books is booked as found, from *unaccounted*, in the same movement or, where
+  something later went out, just before that.
 
 Called inside an act's transaction, after its bottles are locked.
 """
@@ -17,7 +18,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from datetime import datetime
+from datetime import datetime, timedelta
 
 from django.db.models import Q
 
@@ -28,6 +29,7 @@ from bottles.services.gaps import Gap, end_unknown, note_unknown, other_side
 from bottles.services.posting import Move, account_of, own_account, post, reversed_moves
 from shop.base.models import Act
 
+FOUND = "found: more went out then than the books held"
 LATE = "set anew: something earlier was entered late, reversed or struck"
 
 
@@ -51,19 +53,24 @@ def book(
     moves = [move for move in moves if move.grams]
     key = (happened_at, order or act.pk)
     redos: list[_Redo] = []
+    found: list[tuple[Account, datetime, int]] = []
     for account, grams in _bottles_in(moves):
         bottle = account.bottle
         if bottle is None or not grams or not _is_late(bottle, happened_at, reversal=reverses is not None):
             continue
         history = history_of(bottle)
         at = next((one for one in history.ruling if one.key > key and not _holds(history, one, grams)), None)
-        found = max(0, -(history.lowest(key, at.key if at else None) + grams))
-        if found:
-            moves.append(Move(source=own_account("unaccounted"), target=account, grams=found, origin="computed"))
-        if at and grams + found:
-            redos.append(_Redo(bottle, history, at, grams + found, reverses))
+        at_once, later = history.shortfalls(key, at.key if at else None, grams)
+        if at_once:
+            moves.append(Move(source=own_account("unaccounted"), target=account, grams=at_once, origin="computed"))
+        found += [(account, when, short) for when, short in later]
+        changed = grams + at_once + sum(short for _, short in later)
+        if at and changed:
+            redos.append(_Redo(bottle, history, at, changed, reverses))
     steps = [step for redo in redos for step in redo.steps()]
     # What adds comes first and what takes away last, so that no balance dips on the way.
+    for account, when, short in found:
+        _post_found(act, account, when, short)
     for step in steps:
         if step.grams > 0:
             step.do(act)
@@ -148,6 +155,12 @@ class _Step:
         )
         if side.unknown and gap.speaks:
             note_unknown(act=act, bottle=bottle, at=at)
+
+
+def _post_found(act: Act, account: Account, when: datetime, grams: int) -> None:
+    """Post what must have been in a bottle just before something took it."""
+    moves = [Move(source=own_account("unaccounted"), target=account, grams=grams, origin="computed")]
+    post(act=act, kind="adjust", happened_at=when - timedelta(microseconds=1), moves=moves, note=FOUND)
 
 
 def _holds(history: History, at: Spoken, grams: int) -> bool:
