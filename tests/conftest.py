@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import shutil
 from collections.abc import Callable, Iterator
 from typing import TYPE_CHECKING, Any
@@ -22,6 +23,8 @@ CHROMIUM_FLAGS = [
     "--disable-background-networking", "--disable-component-update", "--disable-sync", "--disable-dev-shm-usage",
 ]  # fmt: skip
 PASSWORD = "correct-horse-9"
+# Chromium writes every answer from 400 up on its console. These are the shop's refusals: a page with its sentence.
+REFUSED = re.compile(r"Failed to load resource: the server responded with a status of (401|409|422) ")
 
 Database = Any
 
@@ -177,7 +180,10 @@ def new_page(chromium: Browser, live_server: Any) -> Iterator[Callable[..., Page
         context.set_default_timeout(10_000)
         contexts.append(context)
         page = context.new_page()
-        page.on("console", lambda message: complaints.append(message.text) if message.type == "error" else None)
+        page.on(
+            "console",
+            lambda message: complaints.append(message.text) if message.type == "error" and not REFUSED.match(message.text) else None,
+        )
         page.on("pageerror", lambda error: complaints.append(str(error)))
         return page
 
