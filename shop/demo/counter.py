@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from typing import Any
 
 from shop.demo import names
 from shop.demo.cylinders import Spec
+from shop.demo.past import Past
 from shop.demo.people import BOSS, DESK
 from shop.demo.premises import PLACES
-from shop.demo.past import Past
 from shop.demo.steps import Step
 
 ON_THE_COUNTER = ("T-0101", "T-0102", "T-0103")
@@ -17,7 +18,7 @@ FULL_SUPPLY_G = 27_100
 _CALIBRATED_AGO = 760
 _CALIBRATION_DUE_IN = {"BENCH-1": 210, "BENCH-2": 18, "FLOOR": -12}
 # What the shop decided beyond its country's rules.
-POLICY = {
+POLICY: dict[str, Any] = {
     "month_rule": None, "visual_interval_months": 36, "disc_interval_months": 60, "own_limit_per_mille": None, "overlays": [],
 }  # fmt: skip
 

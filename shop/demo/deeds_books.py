@@ -37,7 +37,7 @@ def _weigh(doer: Doer, step: Step) -> Weighing:
     told = step.values
     bottle, scale = bottle_of(step), scale_of(step)
     return answering(step, lambda reason: weighing.weigh(
-        **doer.common(step), bottle=bottle, scale=scale, gross=mass(told["gross"]), wet=told["wet"], step=told["step"],
+        **doer.common(step), bottle=bottle, scale=scale, gross=mass(told["gross"]), step=told["step"],
         reason=reason,
     ))  # fmt: skip
 

@@ -38,9 +38,9 @@ def _place(doer: Doer, step: Step) -> Place:
 
 @deed("scale.add")
 def _scale(doer: Doer, step: Step) -> Scale:
-    told = dict(step.values)
-    figures = {name: mass(told.pop(name)) for name in ("resolution", "error", "capacity")}
-    days = {name: date.fromisoformat(told.pop(name)) for name in ("calibrated_on", "calibration_due")}
+    told: dict[str, Any] = dict(step.values)
+    figures: dict[str, Any] = {name: mass(told.pop(name)) for name in ("resolution", "error", "capacity")}
+    days: dict[str, Any] = {name: date.fromisoformat(told.pop(name)) for name in ("calibrated_on", "calibration_due")}
     return scales.add_scale(**doer.common(step), data=ScaleData(**told, **figures, **days))
 
 
@@ -152,7 +152,7 @@ def _out(doer: Doer, step: Step) -> object:
     told = step.values
     return custody.hand_over(
         **doer.common(step), bottle=bottle_of(step), kind=told["kind"], to_whom=told["to"], limit_g=told["limit_g"],
-        car=car_of(told["car"]), reason=told["reason"],
+        car=car_of(told["car"]),
     )
 
 

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import uuid
 from collections.abc import Callable, Iterable, Iterator
+from contextlib import suppress
 from dataclasses import dataclass, field
 from datetime import datetime
 from typing import Any
@@ -71,11 +72,9 @@ def do_all(steps: Iterable[Step], *, shop: Shop, key_of: Callable[[str], uuid.UU
     doer = Doer(shop, key_of)
     for step in steps:
         if key_of(step.name) not in done:
-            with clock.pretend(step.at):
-                try:
-                    _deeds[step.verb](doer, step)
-                except AlreadyDone:  # another worker was first: what it wrote holds
-                    pass
+            # Where another worker was first, what it wrote holds.
+            with clock.pretend(step.at), suppress(AlreadyDone):
+                _deeds[step.verb](doer, step)
         yield step
 
 

@@ -95,9 +95,8 @@ class History:
             promised=past.days.at(past.now.date(), "17:00"),
         )
         if regular.car and not first:
-            past.later(3).write(
-                "use", bottle=code, car=list(regular.car), amount="", scale="BENCH-1", gross=past.reading(code, "BENCH-1"), note="runs"
-            )
+            gross = past.reading(code, "BENCH-1")
+            past.later(3).write("use", bottle=code, car=list(regular.car), amount="", scale="BENCH-1", gross=gross, note="runs")
         if self.cold(regular):
             past.later(2).move(code, "FREEZER")
 

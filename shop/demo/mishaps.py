@@ -6,6 +6,7 @@ And the bottles that are somewhere else: on a car, on loan, at the test house, a
 from __future__ import annotations
 
 from collections.abc import Iterator
+from typing import Any
 
 from shop.demo.counter import customer
 from shop.demo.cylinders import Spec
@@ -63,13 +64,13 @@ def _mistyped(past: Past) -> None:
 def _wrong_bottle(past: Past) -> None:
     """A use written down for the wrong bottle, reversed, and written down for the right one."""
     wrong, right = _stock(past, "T-0243", filled=0.7, days=170), _stock(past, "T-0246", filled=0.8, days=170)
-    amount = past.kit.mass(820)
+    told: dict[str, Any] = {"car": list(SHOP_CAR), "amount": past.kit.mass(820), "gross": "", "scale": "", "note": "test runs"}
     past.net_g[right] -= 820
-    used = past.ago(160, "16:10").write("use", bottle=wrong, car=list(SHOP_CAR), amount=amount, gross="", scale="", note="test runs")
+    used = past.ago(160, "16:10").write("use", bottle=wrong, **told)
     past.ago(159, "09:20").write(
         "movement.reverse", by=BOSS.sign_in, bottle=wrong, step=used.name, reason=f"It was {right} that was on the car."
     )
-    past.later(4).write("use", bottle=right, car=list(SHOP_CAR), amount=amount, gross="", scale="", note="test runs")
+    past.later(4).write("use", bottle=right, **told)
     past.ago(150, "17:30").weigh(right, step="stocktake", if_asked="the amount was an estimate")
 
 
@@ -78,8 +79,9 @@ def _entered_late(past: Past) -> None:
     code = _stock(past, "T-0244", filled=0.75, days=75)
     past.net_g[code] -= 560
     past.ago(70, "10:00").weigh(code, step="stocktake", reason="short; nobody remembers")
+    then = past.days.at(past.days.ago(72), "15:40")
     past.ago(66, "09:15").write(
-        "vent", by=BOTH.sign_in, bottle=code, amount=past.kit.mass(560), happened_at=past.days.at(past.days.ago(72), "15:40").isoformat(),
+        "vent", by=BOTH.sign_in, bottle=code, amount=past.kit.mass(560), happened_at=then.isoformat(),
         reason="Let out outdoors before its valve was looked at; entered late.",
     )
 

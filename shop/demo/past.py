@@ -91,7 +91,9 @@ class Past:
         """What a scale shows of it."""
         return self.scales[scale].reads(self.gross_g(code) + extra_g, self.rng)
 
-    def check_in(self, code: str, *, brought_by: str, place: str = "COUNTER", wanted: str = "", promised: datetime | None = None) -> None:
+    def check_in(
+        self, code: str, *, brought_by: str, place: str = "COUNTER", wanted: str = "", promised: datetime | None = None
+    ) -> None:
         """Take a bottle in."""
         self.write(
             "custody.in", by=DESK.sign_in, bottle=code, place=place, brought_by=brought_by, wanted=wanted,
@@ -103,15 +105,17 @@ class Past:
         self.write("custody.move", bottle=code, place=place)
 
     def hand_over(
-        self, code: str, *, to: str, kind: str = "out", car: tuple[str, str] | None = None, limit_g: int | None = None, reason: str = ""
+        self, code: str, *, to: str, kind: str = "out", car: tuple[str, str] | None = None, limit_g: int | None = None
     ) -> None:
         """Give it out."""
-        self.write("custody.out", by=DESK.sign_in, bottle=code, kind=kind, to=to, car=list(car or ()), limit_g=limit_g, reason=reason)
+        self.write("custody.out", by=DESK.sign_in, bottle=code, kind=kind, to=to, car=list(car or ()), limit_g=limit_g)
 
-    def weigh(self, code: str, scale: str = "BENCH-1", *, step: str = "arrival", reason: str = "", if_asked: str = "", gross: str = "",
-              wet: bool = False) -> Step:  # fmt: skip
+    def weigh(
+        self, code: str, scale: str = "BENCH-1", *, step: str = "arrival", reason: str = "", if_asked: str = "",
+        gross: str = "",
+    ) -> Step:  # fmt: skip
         """Put it on a scale; `if_asked` is what is answered where the books ask for a reason."""
         return self.write(
             "weigh", bottle=code, scale=scale, gross=gross or self.reading(code, scale), step=step, reason=reason,
-            if_asked=if_asked, wet=wet,
-        )
+            if_asked=if_asked,
+        )  # fmt: skip

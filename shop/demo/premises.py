@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import random
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from fractions import Fraction
 from typing import Any
 
@@ -116,8 +116,7 @@ class StationOf:
 
     def values(self) -> Mapping[str, Any]:
         """What is entered of it."""
-        names = ("code", "name", "place", "scale", "supply_scale", "hose_length", "hose_bore", "hose_pull", "hose_pull_g", "line_loss")
-        return {name: getattr(self, name) for name in names}
+        return asdict(self)
 
 
 def stations_of(kit: Kit) -> dict[str, StationOf]:

@@ -51,7 +51,8 @@ def spec_of(past: Past, regular: Regular, number: int) -> Spec:
     ago = 30 if star else full - 1 - (number * 7) % min(full - 28, 32)
     return Spec(
         regular.code, size=_SIZES[number % len(_SIZES)], wall="steel" if steel else "aluminium", owner=regular.owner,
-        maker=number % len(names.MAKERS), since_days=(past.days.today - past.days.first).days + 3, made_ago=ago + full, tests_ago=(ago,),
+        maker=number % len(names.MAKERS), since_days=(past.days.today - past.days.first).days + 3,
+        made_ago=ago + full, tests_ago=(ago,),
         star=star, visual_ago=27 + number % 8, labelled=number % 7 != 3, race_grade=True if number % 4 == 0 else None,
     )  # fmt: skip
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import replace
+from typing import Any
 
 from shop.demo.counter import customer
 from shop.demo.cylinders import Spec
@@ -32,12 +33,12 @@ def by_their_dates(past: Past) -> Iterator[Step]:
     _stands(past, Spec("T-0203", owner="Dmitri Averolsky", made_ago=full + 40, tests_ago=(full + 3,), visual_ago=26), filled=None,
             days=5, wanted="test")  # fmt: skip
     _stands(past, Spec("T-0204", size="15", owner="Elif Karadursun", made_ago=full + 2, visual_ago=28), filled=0.95, days=4)
-    _stands(past, Spec("T-0205", wall="composite", owner="Hiroto Kanemizu", since_days=300, made_ago=182, tests_ago=(20,), visual_ago=20,
-                       end_in=-2, confirmed=("service-life-over",)), filled=0.3, days=6)  # fmt: skip
-    _stands(past, Spec("T-0206", wall="composite", owner="Ioana Petreval", since_days=300, made_ago=130, tests_ago=(18,), visual_ago=18,
-                       end_in=50), filled=0.4, days=9)  # fmt: skip
+    _stands(past, Spec("T-0205", wall="composite", owner="Hiroto Kanemizu", since_days=300, made_ago=182, tests_ago=(20,),
+                       visual_ago=20, end_in=-2, confirmed=("service-life-over",)), filled=0.3, days=6)  # fmt: skip
+    _stands(past, Spec("T-0206", wall="composite", owner="Ioana Petreval", since_days=300, made_ago=130, tests_ago=(18,),
+                       visual_ago=18, end_in=50), filled=0.4, days=9)  # fmt: skip
     star = past.kit.country != "ADR"
-    _stands(past, Spec("T-0207", size="20", wall="steel", owner="Jamal Whitterby", made_ago=170, tests_ago=(50, 32)[1:], star=star,
+    _stands(past, Spec("T-0207", size="20", wall="steel", owner="Jamal Whitterby", made_ago=170, tests_ago=(32,), star=star,
                        visual_ago=26), filled=0.5, days=7)  # fmt: skip
     _stands(past, Spec("T-0229", owner="Sefa Taumaloto", made_ago=full - 6, visual_ago=41, maker=1), filled=0.2, days=8)
     _stands(past, Spec("T-0230", owner="Tereza Novotmyer", made_ago=full - 12, visual_ago=26, disc_ago=70), filled=0.3, days=8)
@@ -55,14 +56,15 @@ def by_their_marks(past: Past) -> Iterator[Step]:
     low = "test-pressure-too-low" if kit.country == "ADR" else "service-pressure-too-low"
     row = "not-refillable" if kit.country == "ADR" else "not-on-the-row"
     weak_wall = "steel" if kit.country == "US" else "aluminium"
-    dated = {"made_ago": full - 18, "visual_ago": 26}
+    dated: dict[str, Any] = {"made_ago": full - 18, "visual_ago": 26}
     marked = (
-        Spec("T-0214", owner="Ysolde Brannagh", serial="", **dated),  # type: ignore[arg-type]
-        Spec("T-0215", owner="Zuri Achterholm", mark=kit.unknown, confirmed=("mark-unknown",), **dated),  # type: ignore[arg-type]
-        Spec("T-0216", owner="Sefa Taumaloto", mark=kit.foreign, confirmed=("foreign-mark",), **dated),  # type: ignore[arg-type]
-        Spec("T-0217", size="2.5", wall="steel", owner="Tereza Novotmyer", mark=kit.throwaway, confirmed=("not-refillable",), **dated),  # type: ignore[arg-type]
-        Spec("T-0218", wall=weak_wall, owner="Umar Farouqi-Lund", mark=kit.weak, confirmed=(low,), **dated),  # type: ignore[arg-type]
-        Spec("T-0219", wall="steel", owner="Viktor Dragomesh", mark=kit.low_row, confirmed=(row,), **dated),  # type: ignore[arg-type]
+        Spec("T-0214", owner="Ysolde Brannagh", serial="", **dated),
+        Spec("T-0215", owner="Zuri Achterholm", mark=kit.unknown, confirmed=("mark-unknown",), **dated),
+        Spec("T-0216", owner="Sefa Taumaloto", mark=kit.foreign, confirmed=("foreign-mark",), **dated),
+        Spec("T-0217", size="2.5", wall="steel", owner="Tereza Novotmyer", mark=kit.throwaway, confirmed=("not-refillable",),
+             **dated),
+        Spec("T-0218", wall=weak_wall, owner="Umar Farouqi-Lund", mark=kit.weak, confirmed=(low,), **dated),
+        Spec("T-0219", wall="steel", owner="Viktor Dragomesh", mark=kit.low_row, confirmed=(row,), **dated),
         Spec("T-0235", owner="Wen Xiaolanti", alloy="6351-T6", made_ago=400, tests_ago=(full - 9,), visual_ago=26),
     )
     for number, spec in enumerate(marked):
@@ -78,17 +80,17 @@ def by_their_marks(past: Past) -> Iterator[Step]:
 def by_their_measures(past: Past) -> Iterator[Step]:
     """Give bottles whose tare, capacity, contents or owner's word decides."""
     full = past.kit.interval_months
-    dated = {"made_ago": full - 16, "visual_ago": 27}
-    _stands(past, Spec("T-0220", owner="Amara Delacroix-Nwosu", tare=False, **dated), filled=0.4, days=6, weigh=False)  # type: ignore[arg-type]
-    _stands(past, Spec("T-0221", owner="Bartek Szelmowski", capacity=False, labelled=False, **dated), filled=0.4, days=6)  # type: ignore[arg-type]
-    _stands(past, Spec("T-0222", owner="Chiara Montefalk", inferred=True, **dated), filled=0.4, days=6)  # type: ignore[arg-type]
-    _stands(past, Spec("T-0223", owner="Quentin Lavoisel", **dated), filled=0.3, days=1, wanted="fill")  # type: ignore[arg-type]
-    _stands(past, Spec("T-0224", owner="Rosalind Thackeraw", **dated), filled=0.5, days=11)  # type: ignore[arg-type]
-    _stands(past, Spec("T-0234", owner="Dmitri Averolsky", **dated), filled=0.5, days=1, weigh=False, wanted="fill")  # type: ignore[arg-type]
-    at_limit = Spec("T-0225", owner="Elif Karadursun", **dated)  # type: ignore[arg-type]
+    dated: dict[str, Any] = {"made_ago": full - 16, "visual_ago": 27}
+    _stands(past, Spec("T-0220", owner="Amara Delacroix-Nwosu", tare=False, **dated), filled=0.4, days=6, weigh=False)
+    _stands(past, Spec("T-0221", owner="Bartek Szelmowski", capacity=False, labelled=False, **dated), filled=0.4, days=6)
+    _stands(past, Spec("T-0222", owner="Chiara Montefalk", inferred=True, **dated), filled=0.4, days=6)
+    _stands(past, Spec("T-0223", owner="Quentin Lavoisel", **dated), filled=0.3, days=1, wanted="fill")
+    _stands(past, Spec("T-0224", owner="Rosalind Thackeraw", **dated), filled=0.5, days=11)
+    _stands(past, Spec("T-0234", owner="Dmitri Averolsky", **dated), filled=0.5, days=1, weigh=False, wanted="fill")
+    at_limit = Spec("T-0225", owner="Elif Karadursun", **dated)
     _stands(past, replace(at_limit, bottle_typed=_exactly(past, at_limit)), filled=1.0, days=2, exact=True)
-    _stands(past, Spec("T-0226", owner="Fergus MacAldrith", **dated), filled=1.045, days=1, place="CAGE-Q")  # type: ignore[arg-type]
-    elsewhere = Spec("T-0227", owner="Giulia Sartorell", **dated)  # type: ignore[arg-type]
+    _stands(past, Spec("T-0226", owner="Fergus MacAldrith", **dated), filled=1.045, days=1, place="CAGE-Q")
+    elsewhere = Spec("T-0227", owner="Giulia Sartorell", **dated)
     _stands(past, elsewhere, filled=0.2, days=60)
     past.ago(59, "10:00").hand_over(elsewhere.code, to=elsewhere.owner)
     past.net_g[elsewhere.code] += 2_300
@@ -114,7 +116,9 @@ def by_what_was_noted(past: Past) -> Iterator[Step]:
     healed = Spec("T-0247", owner="Pellworth Hauling & Racing", made_ago=full - 8, visual_ago=28)
     _stands(past, healed, filled=0.6, days=33, place="HOLD")
     past.later(10).write("condition.note", bottle=healed.code, condition="corrosion", note="White bloom under the bracket ring.")
-    past.ago(25, "15:00").write("condition.end", bottle=healed.code, condition="corrosion", how="Cleaned and looked at again: stain only.")
+    past.ago(25, "15:00").write(
+        "condition.end", bottle=healed.code, condition="corrosion", how="Cleaned and looked at again: stain only."
+    )
     past.later(5).move(healed.code, "RACK-A")
     yield from past.drain()
 

@@ -52,7 +52,7 @@ def test_on_any_day_the_past_lies_before_it_and_in_order(today):
 
 
 @pytest.mark.parametrize("country", countries())
-def test_there_is_enough_of_everything(country):
+def test_the_plan_has_enough_of_everything(country):
     verbs = Counter(step.verb for step in steps_of(DAY, country))
     assert verbs["bottle.register"] >= 60
     assert verbs["customer.add"] >= 25
