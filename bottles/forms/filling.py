@@ -49,6 +49,11 @@ class SupplyField(forms.ModelChoiceField):
         return f"{obj.bottle.code}, {obj.station.name}: {holds}"
 
 
+READ = frozenset({
+    "supply", "gauge", "supply_temperature", "supply_weight", "bottle_temperature", "bottle_weight", "gross", "target", "method",
+})  # fmt: skip
+
+
 class ReadingsForm(ActForm):
     """What is read before a valve is opened: both bottles, and how the one to fill starts."""
 
@@ -88,9 +93,15 @@ class ReadingsForm(ActForm):
         return Readings(
             supply_temperature=data["supply_temperature"], bottle_temperature=data["bottle_temperature"],
             gauge=data.get("gauge"), supply_weight=data.get("supply_weight"),
-            bottle_weight=bottle_weight or data.get("bottle_weight"), taken=data.get("taken") or "wall",
+            bottle_weight=bottle_weight or data.get("bottle_weight") or data.get("gross"), taken=data.get("taken") or "wall",
             bottle_taken=data.get("bottle_taken") or "wall", start=data.get("start") or WEIGHED, target=data.get("target"),
         )  # fmt: skip
+
+    def look_only(self) -> None:
+        """Read the form for a forecast alone: what isn't a reading may still be missing."""
+        self.is_valid()
+        for name in [name for name in self.errors if name not in READ or not self.data.get(name)]:
+            del self.errors[name]
 
     @property
     def missing(self) -> list[str]:
@@ -181,6 +192,9 @@ class FillForm(ReadingsForm):
                     "Only a device listed for it may warm a supply bottle, never above 52 °C.", code="not listed"
                 ),
             )
+        supply = cleaned.get("supply")
+        if cleaned.get("method") == "pumped" and supply is not None and not supply.station.pumped:
+            self.add_error("method", forms.ValidationError(f"{supply.station} has no pump written down.", code="no pump"))
         if self.check_due and "check_known" not in self.errors and "check_read" not in self.errors:
             for name in ("check_known", "check_read"):
                 if cleaned.get(name) is None:

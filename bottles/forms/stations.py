@@ -47,11 +47,11 @@ class StationForm(ActForm):
     )
     scale = forms.ModelChoiceField(
         Scale.objects.filter(active=True).order_by("name"), label="Scale of the bottle to fill", required=False,
-        empty_label="none yet: nothing can be filled here", help_text="Nitrous is filled by weight.",
+        empty_label="none yet", help_text="Nitrous is filled by weight: without a scale nothing is filled here.",
     )
     supply_scale = forms.ModelChoiceField(
         Scale.objects.filter(active=True).order_by("name"), label="Scale of the supply bottle", required=False,
-        empty_label="none: the books go down by what arrives and the line's loss",
+        empty_label="none", help_text="Without one the supply's books go down by what arrives and the line's loss.",
     )
     hose_length = LengthField(
         us="ft", metric="m", label="Hose, length", error_messages={"required": "Measure the hose from valve to valve."}

@@ -10,7 +10,7 @@ from django.http import HttpRequest, HttpResponse, HttpResponseRedirect
 from django.shortcuts import render
 from django.urls import reverse
 
-from bottles.forms.filling import FillForm, ReadingsForm
+from bottles.forms.filling import READ, FillForm, ReadingsForm
 from bottles.models import Bottle, Refill, Station, Supply
 from bottles.rules.conditions import label_of
 from bottles.rules.fitness import Judgement
@@ -18,7 +18,7 @@ from bottles.selectors.filling_offers import readings_offered, supplies_offered
 from bottles.selectors.judging import judge_bottle
 from bottles.selectors.scales import scale_checked
 from bottles.services.forecasting import Asked, work_out
-from bottles.services.refilling import Opening, look_items, open_refill
+from bottles.services.refilling import Opening, look_items, open_refill, refuse_source
 from bottles.services.scales import check_scale
 from bottles.views.forecast_words import forecast_context, stop_figure
 from bottles.views.judgement import verdict
@@ -61,7 +61,7 @@ class Fill(BottleActView):
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
         if "forecast" in request.POST:
             form = self.form(request.POST)
-            form.is_valid()
+            form.look_only()
             return self.show(form)
         return super().post(request, *args, **kwargs)
 
@@ -149,7 +149,7 @@ def forecast_live(request: HttpRequest, code: str) -> HttpResponse:
     form = FillForm(
         request.POST, person=request.user, shop=shop, **fill_form_kwargs(request, bottle, shop, supply, judgement)  # type: ignore[arg-type]
     )
-    form.is_valid()
+    form.look_only()
     words = refill_words(request, shop)
     return render(request, "bottles/_forecast.html", {"bottle": bottle} | forecast_part(form, bottle, judgement, shop, words))
 
@@ -204,7 +204,7 @@ def forecast_part(
     wrong = [
         f"{form.fields[name].label}: {error}"
         for name, errors in form.errors.items()
-        if name in form.fields and form.data.get(name) and name in _READ
+        if name in READ
         for error in errors
     ]
     readings = form.readings()
@@ -221,9 +221,22 @@ def forecast_part(
         if isinstance(refusal, NoSolution):
             sentence += " Fill by weight without a forecast, with care."
         return {"forecast": None, "stop": stop, "trouble": [sentence]}
-    return {"forecast": forecast_context(asked, answer, words), "stop": None}
+    return {"forecast": forecast_context(asked, answer, words), "stop": None, "also": also_said(form, supply, shop)}
 
 
-_READ = frozenset({
-    "supply", "gauge", "supply_temperature", "supply_weight", "bottle_temperature", "bottle_weight", "target",
-})  # fmt: skip
+PUMPED = (
+    "Pumped: the span is that by pressure alone. The pump goes on to the limit, until the supply's liquid is out, or to the limits of "
+    "its plate ({plate}). Never run dry, never against a shut valve, oil-free and made for nitrous oxide."
+)
+
+
+def also_said(form: ReadingsForm, supply: Supply, shop: Shop) -> list[str]:
+    """What stands before the forecast: a supply bottle that may not be emptied, a pump with stops of its own."""
+    said = []
+    try:
+        refuse_source(supply.bottle, shop)
+    except Refusal as refusal:
+        said.append(refusal.sentence)
+    if form.cleaned_data.get("method") == "pumped":
+        said.append(PUMPED.format(plate=supply.station.pump_note))
+    return said

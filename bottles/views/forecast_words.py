@@ -97,11 +97,12 @@ def stop_words(bottle: Bottle, gross_g: int, target_g: int, station: Any, words:
     scale = station.scale
     style = style_of(scale)
     tare = tare_at(bottle, clock.now())
-    parts = [f"{format_mass(tare.total_g, style)} tare as fitted", f"+ {format_mass(target_g, style)} target"]
-    parts.append(f"− {format_mass(scale_uncertainty(scale), style, scale.resolution_g)} the scale's ±")
+    # To the gram, though the scale is coarser: rounded each by itself the parts wouldn't add up to the figure.
+    parts = [f"{format_mass(tare.total_g, style, 1)} tare as fitted", f"+ {format_mass(target_g, style, 1)} target"]
+    parts.append(f"− {format_mass(scale_uncertainty(scale), style, 1)} the scale's ±")
     if station.hose_pull_g:
         sign = "+" if station.hose_pull_g > 0 else "−"
-        parts.append(f"{sign} {format_mass(abs(station.hose_pull_g), style)} pull of the hose")
+        parts.append(f"{sign} {format_mass(abs(station.hose_pull_g), style, 1)} pull of the hose")
     return {
         "figure": words.on_scale(gross_g, scale), "scale": str(scale), "other": words.other(gross_g, scale),
         "sum": " ".join(parts) + ", rounded down to what the scale shows",

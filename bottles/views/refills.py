@@ -151,7 +151,7 @@ class AnotherSupply(OfRefill):
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
         if "forecast" in request.POST:
             form = self.form(request.POST)
-            form.is_valid()
+            form.look_only()
             return self.show(form)
         return super().post(request, *args, **kwargs)
 

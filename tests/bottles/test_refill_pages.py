@@ -166,6 +166,23 @@ def test_while_typing_nothing_is_saved_and_nothing_breaks(client: Client, works:
     assert Act.objects.count() == acts
 
 
+def test_a_supply_that_may_not_be_emptied_is_told_before_anything_is_weighed(client: Client, works: Works) -> None:
+    factories.ConditionFactory(bottle=works.supply.bottle, code="leak")
+    assert "S-07 may not be emptied into another bottle." in live(client, works)
+
+
+def test_a_pump_has_stops_of_its_own(client: Client, works: Works) -> None:
+    assert "has no pump written down" in live(client, works, method="pumped")
+    works.station.pumped, works.station.pump_note = True, "120 bar"
+    works.station.save()
+    assert "the limits of its plate (120 bar)" in live(client, works, method="pumped")
+
+
+def test_what_isnt_a_reading_may_be_missing_from_a_forecast(client: Client, works: Works) -> None:
+    answer = fill(client, works, forecast="yes", look_all="", bottle_weight="")
+    assert not answer.context["form"].errors and "Goes over:" in words_of(answer)
+
+
 def test_a_danger_sign_hides_the_figure_to_stop_at(client: Client, works: Works) -> None:
     page = live(client, works, gauge="1100")
     assert "Danger sign" in page and "weigh it now" in page
