@@ -225,8 +225,8 @@ def forecast_part(
 
 
 PUMPED = (
-    "Pumped: the span is that by pressure alone. The pump goes on to the limit, until the supply's liquid is out, or to the limits of "
-    "its plate ({plate}). Never run dry, never against a shut valve, oil-free and made for nitrous oxide."
+    "Pumped: the span is that by pressure alone. The pump goes on to the limit, until the supply's liquid is out, or to "
+    "the limits of its plate ({plate}). Never run dry, never against a shut valve, oil-free and made for nitrous oxide."
 )
 
 
