@@ -9,8 +9,8 @@ stands out of the ±. Beyond it one movement brings the books to the scale:
 - lighter otherwise (it never left, or it is the shop's): unaccounted for, with a reason
 - heavier, and it was out: somebody else filled it; what is in it isn't known any more
 - heavier, and it never left: unaccounted for, with a reason
-- the books know nothing yet: the first weighing opens them, from its owner's account, the
-  supplier's, or for the shop's own bottle from unaccounted
+- the books know nothing yet: the first weighing opens them, from its owner's account, or from
+  the supplier's for a bottle of the shop, whose nitrous once came from there too
 
 Whether and how much may be filled is decided by the scale alone, never by the books.
 """
@@ -38,7 +38,7 @@ Finding = Literal["agrees", "opens", "adjusts", "needs a reason", "filled elsewh
 
 
 # What a bottle holds at its first weighing came with it: from its owner or the supplier.
-_OPENED_FROM: dict[OwnerKind | None, AccountKind] = {"customer": "customer", "supplier": "supplier"}
+_OPENED_FROM: dict[OwnerKind | None, AccountKind] = {"customer": "customer", "supplier": "supplier", "shop": "supplier"}
 
 
 @dataclass(frozen=True, slots=True)

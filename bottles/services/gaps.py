@@ -4,8 +4,7 @@ What a weighing says is `bottles.rules.books`; here stands what only the registe
 bottle was then, whether it was out, which car it was on. Beyond the rule:
 
 - the shop's own bottle that was on a car and came back lighter was used by that car;
-- where only a delivery's ticket spoke so far, the gap is the supplier's;
-- the shop's own bottle opens its books from the supplier, as the supplier's does.
+- where only a delivery's ticket spoke so far, the gap is the supplier's.
 """
 
 from __future__ import annotations
@@ -93,8 +92,8 @@ def other_side(bottle: Bottle, history: History, at: Spoken, gap: Gap, *, anew: 
 
 
 def _kind(owner: Ownership | None, *, opening: bool) -> OwnerKind | None:
-    if owner is None or (opening and owner.kind == "shop"):
-        return "supplier" if opening else None
+    if owner is None:  # registered without one: its nitrous came from the supplier once, as the shop's own did
+        return "shop" if opening else None
     return cast(OwnerKind, owner.kind)
 
 

@@ -33,7 +33,7 @@ from bottles.rules.books import compare, difference_plus_minus, split_refill
         (4000, 9000, True, "supplier", "", "needs a reason", "unaccounted", "bottle", 5000),
         (None, 1200, False, "customer", "", "opens", "customer", "bottle", 1200),
         (None, 1200, False, "supplier", "", "opens", "supplier", "bottle", 1200),
-        (None, 1200, False, "shop", "", "opens", "unaccounted", "bottle", 1200),
+        (None, 1200, False, "shop", "", "opens", "supplier", "bottle", 1200),
         (None, 0, False, "shop", "", "opens", None, None, 0),
         (None, -12, False, "shop", "", "opens", None, None, 0),
         (40, -12, False, "shop", "", "agrees", None, None, 0),
