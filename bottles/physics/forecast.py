@@ -24,7 +24,7 @@ from shop.physics.errors import OutOfRange
 from shop.physics.fluid import T_SATURATION_MAX, engine
 from shop.physics.roots import find_root
 
-_EVEN = 100.0  # Pa, a thousandth of a bar: some hundredths of a gram
+_EVEN = 100.0  # Pa, a thousandth of a bar: some hundredths of a gram, a hundredth of a kelvin
 
 
 @dataclass(frozen=True, slots=True)
@@ -328,18 +328,21 @@ def _warmest(
     line_volume_m3: float,
 ) -> float | None:
     """Warmest start of the receiver that still gives a full fill in the mixed limit."""
+    near = [transfer]
 
     def surplus(temperature_k: float) -> float:
         try:
             receiver = receiver_at(temperature_k)
         except OutOfRange:
             return -1e9
-        other = Transfer(transfer.source, receiver, line_volume_m3, path=transfer.path)
+        other = near[0] = Transfer(transfer.source, receiver, line_volume_m3, path=transfer.path, like=near[0])
         room = limit_kg - receiver.net_kg
         if room <= 0.0 or room > other.capacity_kg:
             return -1e9
         full = other.surplus(room)
-        return -1e9 if full >= 0.0 and other.surplus(0.0) <= 0.0 else full
+        if full >= 0.0 and other.surplus(0.0) <= 0.0:
+            return -1e9
+        return 0.0 if abs(full) < _EVEN else full
 
     if limit_kg <= transfer.receiver.net_kg:
         return None
