@@ -15,7 +15,7 @@ class DaysForm(forms.Form):
     """From a day to a day, perhaps as known at a moment."""
 
     first = day("From", required=False)
-    last = day("To and with", required=False)
+    last = day("To the end of", required=False)
     known_at = HappenedField(label="As known at (if not now)")
 
     def __init__(self, *args: Any, zone: Any, today: date, **kwargs: Any) -> None:

@@ -9,7 +9,7 @@ from collections.abc import Sequence
 
 from django.db.models import F, QuerySet
 
-from bottles.models import Refill, Standing, Station, Supply
+from bottles.models import Custody, Refill, Standing, Station, Supply
 
 SHOWN = 100  # bottles on the counter's own list; more are on the bottles page
 
@@ -40,6 +40,19 @@ def at_the_counter() -> Sequence[Standing]:
         .filter(is_in=True, waits=False, custody__place__kind="counter", bottle__retired_at__isnull=True)
         .order_by("bottle__code")[:SHOWN]
     )
+
+
+def came_in_unweighed(standing: Standing) -> bool:
+    """Whether the bottle is in and hasn't been weighed since it came."""
+    custody, weighing = standing.custody, standing.weighing
+    if custody is None or not custody.is_in:
+        return False
+    if weighing is None:
+        return True
+    came: Custody | None = custody
+    if custody.kind != "in":  # moved about since
+        came = Custody.objects.filter(bottle=standing.bottle_id, kind="in").order_by("happened_at", "id").last()
+    return came is not None and weighing.happened_at < came.happened_at
 
 
 def supplies() -> Sequence[Supply]:

@@ -11,6 +11,7 @@ from django.urls import NoReverseMatch, reverse
 
 from bottles.models import Bottle, Ownership, Standing
 from bottles.rules.conditions import label_of
+from bottles.selectors.counter import came_in_unweighed
 from bottles.selectors.register import (
     STATES,
     bottles_matching,
@@ -117,6 +118,7 @@ def history_rows(acts: list[Act], words: Words, shop: Shop) -> list[dict[str, An
 def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role]) -> list[dict[str, Any]]:
     """What this person may do with the bottle now, the likeliest first."""
     found: list[dict[str, Any]] = []
+    weighed = standing.is_in and not came_in_unweighed(standing)
     for action in ACTIONS:
         if bottle.retired_at is not None or not action.roles & roles or action.needs_in not in (None, standing.is_in):
             continue
@@ -124,7 +126,8 @@ def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role]) -> list[
             url = reverse(action.page, args=[bottle.code])
         except NoReverseMatch:
             continue
-        heavier = action.likely and not any(each["main"] for each in found)
+        done = action.page == "bottles:weigh" and weighed
+        heavier = action.likely and not done and not any(each["main"] for each in found)
         found.append({"words": action.words, "url": url, "main": heavier})
     return found
 

@@ -11,6 +11,7 @@ from django.http import Http404
 from bottles.forms.weighing import StrikeWeighingForm, WeighForm
 from bottles.models import Bottle, Weighing
 from bottles.selectors.contents import holding_of
+from bottles.selectors.counter import came_in_unweighed
 from bottles.selectors.judging import judge_bottle
 from bottles.selectors.scales import checked_scales
 from bottles.services import weighing
@@ -37,7 +38,9 @@ class Weigh(BottleActView):
         step = self.request.GET.get("step", "")
         asked = self.request.GET.get("scale", "")
         scale = int(asked) if asked.isdecimal() and len(asked) < 10 else (last.scale_id if last else None)
-        return {"scale": scale, "step": step if step in ("arrival", "stored", "dispatch", "stocktake") else "stored"}
+        if step not in ("arrival", "stored", "dispatch", "stocktake"):
+            step = "arrival" if came_in_unweighed(self.standing) else "stored"
+        return {"scale": scale, "step": step}
 
     def context(self) -> dict[str, Any]:
         words = refill_words(self.request, self.shop)

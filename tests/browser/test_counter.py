@@ -57,6 +57,7 @@ def test_a_whole_refill_by_keyboard_alone(new_page: Callable[..., Page], desk: D
     check_in_by_keyboard(page)
     weigh_by_keyboard(page, f"{TARE_G + 300} g")
     expect(page.get_by_text("used by its owner").first).to_be_visible()
+    expect(page.locator(".acts .main")).to_have_text("Forecast and fill")
 
     steps.press(page, "Forecast and fill")
     read_by_keyboard(page, f"{TARE_G + 300} g")
@@ -83,7 +84,7 @@ def test_a_whole_refill_by_keyboard_alone(new_page: Callable[..., Page], desk: D
     refill.refresh_from_db()
     assert refill.closed_at is not None
     said = Weighing.objects.filter(bottle=bottle).order_by("id").values_list("step", "net_g")
-    assert list(said)[2:] == [("before", 300), ("after", 4_480), ("disconnected", 4_460)]
+    assert list(said)[1:] == [("arrival", 300), ("before", 300), ("after", 4_480), ("disconnected", 4_460)]
 
     steps.press(page, "T-0421")
     steps.press(page, "Hand over")
