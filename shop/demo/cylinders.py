@@ -56,6 +56,10 @@ class Spec:
     alloy: str = ""
     note: str = ""
     permit: str = ""
+    permit_lists: bool | None = None  # None: not looked up
+    permit_days: int | None = None  # valid for so many days from today
+    own_limit_g: int | None = None
+    last_held: str = "nitrous"
     race_grade: bool | None = None
     bottle_typed: str = ""  # where its own weight must come out to the gram
     confirmed: tuple[str, ...] = field(default=())
@@ -116,7 +120,9 @@ class Spec:
             "capacity_typed": (f"{self.capacity_ml / 1000:.1f} L" if self.capacity_ml >= 10_000 or kit.metric
                                else f"{self.capacity_ml} mL") if capacity else "",
             "charge_typed": self.label(kit), "dip_tube": self.dip, "use": self.use, "owner": self.owner, "alloy": self.alloy,
-            "note": self.note, "permit": self.permit, "race_grade": self.race_grade,
+            "note": self.note,
+            "permit": self.permit, "permit_lists": self.permit_lists, "permit_days": self.permit_days,
+            "own_limit_g": self.own_limit_g, "last_held": self.last_held, "race_grade": self.race_grade,
             "disc": "" if self.use == "supply" else "3000 psi" if not kit.metric else "207 bar",
             "outlet": "CGA 326" if self.use == "supply" and not kit.metric else "",
             "parts": self.parts(kit) if self.tare else [], "stamps": stamps, "confirmed": list(self.confirmed),

@@ -89,6 +89,8 @@ def _bottle(doer: Doer, step: Step) -> Bottle:
         capacity_ml=capacity.stored if capacity else None, capacity_basis="stamped" if capacity else "unknown",
         capacity_typed=told["capacity_typed"], charge_g=charge.stored if charge else None, charge_typed=told["charge_typed"],
         dip_tube=told["dip_tube"], outlet=told["outlet"], disc=told["disc"], use=told["use"], permit=told["permit"],
+        permit_until=date.fromisoformat(told["permit_until"]) if told["permit_until"] else None,
+        permit_lists_nitrous=told["permit_lists"], own_limit_g=told["own_limit_g"], last_held=told["last_held"],
         race_grade=told["race_grade"], note=told["note"],
     )
     year_first, today = kit_for(doer.shop.country).year_first, clock.today(doer.shop)

@@ -77,7 +77,10 @@ class Past:
         self.specs[spec.code] = spec
         self.net_g[spec.code] = net_g
         self.off_g[spec.code] = self.rng.uniform(-TARE_OFF_G, TARE_OFF_G)
-        self.write("bottle.register", by=by or DESK.sign_in, **spec.values(self.kit, self.days.month))
+        values = dict(spec.values(self.kit, self.days.month))
+        left = values.pop("permit_days")
+        values["permit_until"] = "" if left is None else self.days.ago(-left).isoformat()
+        self.write("bottle.register", by=by or DESK.sign_in, **values)
 
     def tare_g(self, code: str) -> int:
         """The tare by its list, as it's stored."""

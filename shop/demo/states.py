@@ -72,8 +72,9 @@ def by_their_marks(past: Past) -> Iterator[Step]:
     if kit.country == "US":
         _stands(past, Spec("T-0241", wall="steel", owner="Ysolde Brannagh", mark="DOT-3HT1850", made_ago=150, tests_ago=(29,),
                            visual_ago=26, confirmed=("aircraft-only",)), filled=0.1, days=30)  # fmt: skip
-        _stands(past, Spec("T-0239", wall="composite", owner="Zuri Achterholm", mark="DOT-SP 15431-1800", permit="DOT-SP 15431",
-                           made_ago=70, tests_ago=(28,), visual_ago=26, end_in=110), filled=0.3, days=21)  # fmt: skip
+        _under_permit(past, Spec("T-0239", mark="DOT-SP 15431-1800", permit="DOT-SP 15431", permit_lists=False, permit_days=400))
+    if kit.country == "CA":
+        _under_permit(past, Spec("T-0239", permit="TC-SU 7541", permit_lists=True, permit_days=-70))
     yield from past.drain()
 
 
@@ -86,10 +87,15 @@ def by_their_measures(past: Past) -> Iterator[Step]:
     _stands(past, Spec("T-0222", owner="Chiara Montefalk", inferred=True, **dated), filled=0.4, days=6)
     _stands(past, Spec("T-0223", owner="Quentin Lavoisel", **dated), filled=0.3, days=1, wanted="fill")
     _stands(past, Spec("T-0224", owner="Rosalind Thackeraw", **dated), filled=0.5, days=11)
-    _stands(past, Spec("T-0234", owner="Dmitri Averolsky", **dated), filled=0.5, days=1, weigh=False, wanted="fill")
+    _stands(past, Spec("T-0234", owner="Dmitri Averolsky", last_held="", **dated), filled=0.5, days=1, weigh=False, wanted="fill")
     at_limit = Spec("T-0225", owner="Elif Karadursun", **dated)
     _stands(past, replace(at_limit, bottle_typed=_exactly(past, at_limit)), filled=1.0, days=2, exact=True)
     _stands(past, Spec("T-0226", owner="Fergus MacAldrith", **dated), filled=1.045, days=1, place="CAGE-Q")
+    _stands(past, Spec("T-0249", owner="Hiroto Kanemizu", last_held="other", **dated), filled=None, days=2, place="HOLD")
+    _stands(past, Spec("T-0250", owner="Ioana Petreval", last_held="new", since_days=9, made_ago=3), filled=None, days=9,
+            wanted="fill")  # fmt: skip
+    _stands(past, Spec("T-0251", owner="Jamal Whitterby", own_limit_g=4_000, **dated), filled=0.5, days=5)
+    _stands(past, Spec("T-0252", owner="Katrin Osterlohe", last_held="", **dated), filled=None, days=5)
     elsewhere = Spec("T-0227", owner="Giulia Sartorell", **dated)
     _stands(past, elsewhere, filled=0.2, days=60)
     past.ago(59, "10:00").hand_over(elsewhere.code, to=elsewhere.owner)
@@ -143,6 +149,11 @@ def _stands(
             gross = scale.shows(past.tare_g(spec.code) - 0.6 * scale.resolution_g)
         past.later(4).weigh(spec.code, gross=gross)
     past.later(6).move(spec.code, place or ("RACK-B" if spec.owner == "shop" else "RACK-A"))
+
+
+def _under_permit(past: Past, spec: Spec) -> None:
+    made = replace(spec, wall="composite", owner="Zuri Achterholm", made_ago=70, tests_ago=(28,), visual_ago=26, end_in=110)
+    _stands(past, made, filled=0.3, days=21)
 
 
 def _exactly(past: Past, spec: Spec) -> str:

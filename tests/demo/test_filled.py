@@ -42,13 +42,14 @@ EVERYWHERE = {
     "foreign-mark", "not-refillable", "marks-illegible", "no-stamp-read", "no-tare", "no-capacity", "suppliers-bottle",
     "consent-not-given", "no-consent", "at-its-limit", "over-its-limit", "condemned", "condition", "due-at-once",
     "heat-aluminium", "clean-first", "contents-unknown", "nothing-inside", "dry-and-purge", "net-not-given",
-    "visual-overdue", "disc-overdue", "alloy-6351", "in-open-refill", "plus-no-effect", "look-owed",
+    "contents-other", "contents-not-given", "visual-overdue", "disc-overdue", "alloy-6351",
+    "in-open-refill", "plus-no-effect", "look-owed",
 }  # fmt: skip
 BY_COUNTRY = {
     "US": {"star-kept", "star-fallback", "star-broken", "service-pressure-too-low", "not-on-the-row", "aircraft-only",
-           "stamp-without-month", "permit-not-given"},
+           "stamp-without-month", "permit-excludes-nitrous"},
     "CA": {"star-kept", "star-fallback", "star-broken", "service-pressure-too-low", "not-on-the-row", "stamp-without-month",
-           "permit-not-given"},
+           "permit-not-given", "permit-expired"},
     "ADR": {"test-pressure-too-low"},
 }  # fmt: skip
 
