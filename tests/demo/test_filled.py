@@ -159,6 +159,8 @@ class Filled(TestCase):
     def test_supply_bottles_are_full_nearly_empty_and_on_stations(self) -> None:
         hanging = {one.bottle.code: one for one in supplies()}
         assert {one.station.code for one in hanging.values()} == {"ST-1", "ST-2"}
+        suppliers = Standing.objects.filter(ownership__kind="supplier", is_in=True)
+        assert any(0 < one.bottle.account.balance_g < 9_000 for one in suppliers)
         balances = [one.bottle.account.balance_g for one in hanging.values()]
         assert max(balances) > 26_000
         assert min(balances) < 9_000
