@@ -24,7 +24,7 @@ CHROMIUM_FLAGS = [
 ]  # fmt: skip
 PASSWORD = "correct-horse-9"
 # Chromium writes every answer from 400 up on its console. These are the shop's refusals: a page with its sentence.
-REFUSED = re.compile(r"Failed to load resource: the server responded with a status of (401|409|422) ")
+REFUSED = re.compile(r"Failed to load resource: the server responded with a status of (401|403|409|422) ")
 
 Database = Any
 

@@ -42,16 +42,14 @@ def bottles_on_cars(car_ids: Iterable[int], *, system: str) -> dict[int, list[Bo
 
 
 def _standings() -> QuerySet[Standing]:
-    return Standing.objects.select_related("bottle", "custody__place", "custody__car", "weighing__scale")
+    return Standing.objects.select_related("bottle", "custody__place", "custody__car", "weighing")
 
 
 def _row(one: Standing, system: str) -> BottleRow:
     holds, origin = "unknown: never weighed", ""
     if one.weighing is not None:
         weighing = one.weighing
-        holds = format_mass(
-            weighing.net_g, unit_system(system).mass, weighing.scale.resolution_g, plus_minus_g=weighing.error_g
-        )
+        holds = format_mass(weighing.net_g, unit_system(system).mass, plus_minus_g=weighing.error_g)
         origin = "weighed"
     return BottleRow(
         url=bottle_url(one.bottle.code),

@@ -22,7 +22,9 @@ def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, pytest.TestR
         for number, page in enumerate(page for context in browser.contexts for page in context.pages):
             try:
                 page.screenshot(path=folder / f"{name}_{number}.png", full_page=True, timeout=5_000)
-                (folder / f"{name}_{number}.html").write_text(f"<!-- {page.url} -->\n{page.content()}", encoding="utf-8")
+                (folder / f"{name}_{number}.html").write_text(
+                    f"<!-- {page.url} -->\n{page.content()}", encoding="utf-8"
+                )
             except Error:
                 continue  # a page that can't be drawn any more must not hide why
         report.sections.append(("pages", f"pictures of the open pages: {folder}"))

@@ -10,9 +10,9 @@ import pytest
 from playwright.sync_api import Page, expect
 
 from bottles.models import Refill, Weighing
+from tests.bottles.of_refill import TARE_G
 from tests.browser import steps
 from tests.browser.desk import Desk
-from tests.bottles.of_refill import TARE_G
 
 pytestmark = [pytest.mark.browser, pytest.mark.django_db(transaction=True)]
 
@@ -35,7 +35,9 @@ def weigh_by_keyboard(page: Page, gross: str) -> None:
     steps.enter(page)
 
 
-def read_by_keyboard(page: Page, gross: str, *, gauge: str = "49.5 bar", supply: str = "20 °C", bottle: str = "-12 °C") -> None:
+def read_by_keyboard(
+    page: Page, gross: str, *, gauge: str = "49.5 bar", supply: str = "20 °C", bottle: str = "-12 °C"
+) -> None:
     """The readings, in the order in which the focus meets them; it stands on the weight by itself."""
     expect(page.get_by_label("The bottle to fill weighs", exact=True)).to_be_focused()
     page.keyboard.type(gross)
@@ -152,7 +154,9 @@ def up_to_the_forecast(page: Page, tap: Callable[..., None], write: Callable[[Pa
     write(page, "Temperature of the bottle to fill", "-12 °C")
 
 
-def finish(page: Page, tap: Callable[..., None], choose: Callable[[Page, str], None], write: Callable[..., None]) -> None:
+def finish(
+    page: Page, tap: Callable[..., None], choose: Callable[[Page, str], None], write: Callable[..., None]
+) -> None:
     """From the forecast on: look, open, weigh with the line on and off, close, hand over."""
     choose(page, "I looked at each of these, and each is in order")
     tap(page, "Open the refill", "button")

@@ -13,9 +13,9 @@ from playwright.sync_api import Error, Page, Request, Route, expect
 from bottles.models import Custody, Weighing
 from shop.base.models import Act
 from shop.people.services.identifying import digest
+from tests.bottles.of_refill import TARE_G
 from tests.browser import steps
 from tests.browser.desk import Desk
-from tests.bottles.of_refill import TARE_G
 
 pytestmark = [pytest.mark.browser, pytest.mark.django_db(transaction=True)]
 
