@@ -12,7 +12,6 @@ from django.utils import timezone
 
 from shop.base.models import Shop
 
-
 _pretended: ContextVar[datetime | None] = ContextVar("pretended", default=None)
 
 
