@@ -12,7 +12,7 @@ from django.db import connection
 from django.test import Client, TransactionTestCase
 
 if TYPE_CHECKING:
-    from playwright.sync_api import Browser, Page
+    from playwright.sync_api import Browser, ConsoleMessage, Page
 
     from shop.base.models import Shop
     from shop.people.models import User
@@ -180,10 +180,12 @@ def new_page(chromium: Browser, live_server: Any) -> Iterator[Callable[..., Page
         context.set_default_timeout(10_000)
         contexts.append(context)
         page = context.new_page()
-        page.on(
-            "console",
-            lambda message: complaints.append(message.text) if message.type == "error" and not REFUSED.match(message.text) else None,
-        )
+
+        def heard(message: ConsoleMessage) -> None:
+            if message.type == "error" and not REFUSED.match(message.text):
+                complaints.append(message.text)
+
+        page.on("console", heard)
         page.on("pageerror", lambda error: complaints.append(str(error)))
         return page
 

@@ -79,7 +79,8 @@ class HandOverForm(ActForm):
         label="Car", queryset=Car.objects.filter(active=True).order_by("number"), required=False, empty_label="no car"
     )
     told = forms.BooleanField(
-        label="They were told: valve shut, outlet plugged, strapped upright, the boot aired; never inhaled, never heated above 52 °C (125 °F)",
+        label="They were told: valve shut, outlet plugged, strapped upright, the boot aired; "
+        "never inhaled, never heated above 52 °C (125 °F)",
         error_messages={"required": "Tell them before the bottle leaves, then tick this."},
     )
     reason = forms.CharField(label="Reason (from quarantine)", max_length=300, required=False)
