@@ -7,7 +7,7 @@ from typing import Any
 
 from django import forms
 
-from bottles.models import Bottle, Refill, Supply
+from bottles.models import Bottle, Refill, Station, Supply
 from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, WEIGHED
 from bottles.rules.edition import LookItem
 from bottles.selectors.filling_offers import Offered, supplies_offered
@@ -49,6 +49,23 @@ class SupplyField(forms.ModelChoiceField):
         return f"{obj.bottle.code}, {obj.station.name}: {holds}"
 
 
+# What is read off which scale of a station: a bare number is in that scale's own unit.
+OFF_SCALE = ("bottle_weight", "gross", "check_known", "check_read")
+OFF_SUPPLY_SCALE = ("supply_weight", "supply_gross", "old_supply_gross")
+
+
+def read_off(form: ActForm, station: Station | None) -> None:
+    """Let a form take a bare weight as the station's scales write it, and say so."""
+    for names, scale in ((OFF_SCALE, station and station.scale), (OFF_SUPPLY_SCALE, station and station.supply_scale)):
+        for name in names:
+            field: Any = form.fields.get(name)
+            if field is not None and scale:
+                field.read_off(scale.style)
+                bare = "lb" if scale.style == "lb oz" else scale.style
+                said = f"As {scale} writes it, such as {scale.get_style_display()}; a bare number is in {bare}."
+                field.help_text = f"{field.help_text} {said}".strip()
+
+
 READ = frozenset({
     "supply", "gauge", "supply_temperature", "supply_weight", "bottle_temperature", "bottle_weight", "gross", "target", "method",
 })  # fmt: skip
@@ -72,9 +89,11 @@ class ReadingsForm(ActForm):
     bottle_taken = forms.ChoiceField(label="Taken on the bottle to fill", choices=TEMPERATURES, initial="wall")
 
     def __init__(
-        self, *args: Any, bottle: Bottle, offered: Offered, mass: Any, station: Any = None, but: Bottle | None = None, **kwargs: Any
+        self, *args: Any, bottle: Bottle, offered: Offered, mass: Any, at: Station | None, station: Any = None,
+        but: Bottle | None = None, **kwargs: Any,
     ) -> None:  # fmt: skip
         super().__init__(*args, **kwargs)
+        read_off(self, at)
         self.bottle = bottle
         self.offered = offered
         supply: Any = self.fields["supply"]

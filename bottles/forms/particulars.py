@@ -10,7 +10,7 @@ from django import forms
 from bottles.forms.parts import RegisterForm, day, text
 from bottles.models import Bottle
 from bottles.services.registering import Particulars
-from shop.base.fields import MassField, VolumeField
+from shop.base.fields import MassField, VolumeField, mass_shown_back
 from shop.physics.units import in_own_unit
 
 BASES = [basis for basis in Bottle.CAPACITY_BASES if basis[0] in ("stamped", "measured", "maker")]
@@ -116,8 +116,8 @@ HELD = (
 SAID = {True: "yes", False: "no", None: "unknown"}
 
 
-def particulars_typed(bottle: Bottle) -> dict[str, Any]:
-    """What the fields hold for a bottle as it's written now."""
+def particulars_typed(bottle: Bottle, *, unit: str) -> dict[str, Any]:
+    """What the fields hold for a bottle as it's written now, where a bare weight is in a unit."""
     held = {name: getattr(bottle, name) for name in HELD}
     measured = bottle.capacity_basis in dict(BASES)
     return held | {
@@ -125,7 +125,7 @@ def particulars_typed(bottle: Bottle) -> dict[str, Any]:
         "mark_illegible": not bottle.mark,
         "capacity": bottle.capacity_typed if measured else "",
         "capacity_basis": bottle.capacity_basis if measured else "stamped",
-        "size": bottle.charge_typed,
+        "size": mass_shown_back(bottle.charge_g, bottle.charge_typed, meant=unit),
         "permit_charge": in_own_unit(bottle.permit_charge_g, "g") if bottle.permit_charge_g else "",
         "own_limit": in_own_unit(bottle.own_limit_g, "g") if bottle.own_limit_g else "",
         "permit_lists": SAID[bottle.permit_lists_nitrous],

@@ -6,8 +6,8 @@ from typing import Any
 
 from django import forms
 
-from bottles.forms.filling import ReadingsForm
-from bottles.models import Refill
+from bottles.forms.filling import ReadingsForm, read_off
+from bottles.models import Refill, Station
 from bottles.services.refill_steps import Weight
 from shop.base.fields import HappenedField, InstantField, MassField
 from shop.people.acting import ActForm
@@ -31,9 +31,10 @@ class WeighForm(ActForm):
     supply_gross = MassField(label="The supply bottle weighs", required=False)
     happened_at = HappenedField()
 
-    def __init__(self, *args: Any, supply_scale: Any, **kwargs: Any) -> None:
+    def __init__(self, *args: Any, station: Station, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
-        if supply_scale is None:
+        read_off(self, station)
+        if station.supply_scale is None:
             del self.fields["supply_gross"]
 
     def clean(self) -> dict[str, Any]:

@@ -9,9 +9,8 @@ from django import forms
 from bottles.forms.parts import day, text
 from bottles.models import Scale
 from bottles.services.scales import ScaleData
-from shop.base.fields import HappenedField, MassField
+from shop.base.fields import HappenedField, MassField, mass_shown_back
 from shop.people.acting import ActForm
-from shop.physics.units import parse_mass
 
 
 class ScaleForm(ActForm):
@@ -35,12 +34,12 @@ class ScaleForm(ActForm):
     calibration_due = day("Calibration due", required=False)
     active = forms.BooleanField(label="In use", required=False, initial=True)
 
-    def clean(self) -> dict[str, Any]:
-        cleaned = super().clean() or {}
-        for name in ("resolution", "error", "capacity"):  # bare numbers are in the unit that the scale writes
-            if cleaned.get(name) is not None and cleaned.get("style"):
-                cleaned[name] = parse_mass(cleaned[name].typed, default_unit=cleaned["style"])
-        return cleaned
+    def __init__(self, *args: Any, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        style = self.data.get("style")
+        if style in dict(Scale.STYLES):  # bare numbers are in the unit that the scale writes
+            for name in ("resolution", "error", "capacity"):
+                self.fields[name].read_off(style)  # type: ignore[attr-defined]
 
     def clean_code(self) -> str:
         return str(self.cleaned_data["code"]).strip().upper()
@@ -56,10 +55,15 @@ class ScaleForm(ActForm):
 
 
 def scale_as_typed(scale: Scale) -> dict[str, Any]:
-    """What the form of a scale holds when it's first drawn: its figures as they were typed."""
+    """What the form of a scale holds when it's first drawn.
+
+    Its figures as they were typed, each with its unit: the way in which it writes may be changed beside them.
+    """
     return {
-        "code": scale.code, "name": scale.name, "style": scale.style, "resolution": scale.resolution_typed,
-        "error": scale.error_typed, "capacity": scale.capacity_typed, "calibrated_on": scale.calibrated_on,
+        "code": scale.code, "name": scale.name, "style": scale.style,
+        "resolution": mass_shown_back(scale.resolution_g, scale.resolution_typed),
+        "error": mass_shown_back(scale.error_g, scale.error_typed),
+        "capacity": mass_shown_back(scale.capacity_g, scale.capacity_typed), "calibrated_on": scale.calibrated_on,
         "calibration_due": scale.calibration_due, "active": scale.active, "version": scale.version,
     }  # fmt: skip
 
@@ -76,11 +80,5 @@ class CheckForm(ActForm):
 
     def __init__(self, *args: Any, scale: Scale, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
-        self.scale = scale
-
-    def clean(self) -> dict[str, Any]:
-        cleaned = super().clean() or {}
         for name in ("known", "read"):
-            if cleaned.get(name) is not None:
-                cleaned[name] = parse_mass(cleaned[name].typed, default_unit=self.scale.style)
-        return cleaned
+            self.fields[name].read_off(scale.style)  # type: ignore[attr-defined]

@@ -9,7 +9,7 @@ from django import forms
 from bottles.forms.parts import RegisterForm, text
 from bottles.models import Scale, Tare, TarePart
 from bottles.services.tares import NewTare, Part
-from shop.base.fields import HappenedField, MassField
+from shop.base.fields import HappenedField, MassField, mass_shown_back
 from shop.physics.units import Entry
 
 THINGS = [thing for thing, _ in TarePart.THINGS]
@@ -98,11 +98,11 @@ class TareForm(TareFields):
         return cleaned
 
 
-def typed_parts(tare: Tare | None) -> dict[str, str]:
-    """What the fields of the list hold when a new tare is begun from the one in force."""
+def typed_parts(tare: Tare | None, *, unit: str) -> dict[str, str]:
+    """What the fields of the list hold when a new tare is begun from the one in force; bare weights in a unit."""
     if tare is None:
         return {}
-    parts = {part.thing: part.typed for part in tare.parts.all()}
+    parts = {part.thing: mass_shown_back(part.grams, part.typed, meant=unit) for part in tare.parts.all()}
     if set(parts) == {"bottle"}:
         return {"tare": parts["bottle"]}
     return {f"tare_{thing}": typed for thing, typed in parts.items()}

@@ -12,7 +12,6 @@ from bottles.selectors.scales import Checked, checked_scales
 from bottles.services.moving import OnScale
 from shop.base.fields import HappenedField, MassField
 from shop.people.acting import ActForm
-from shop.physics.units import parse_mass
 
 WET_HINT = (
     "Ice, frost and water weigh too: the figure then is the most that can be inside, its ± is wider, "
@@ -53,13 +52,13 @@ class OnScaleForm(ActForm):
         self.fields["scale"].label_from_instance = lambda scale: _told(checked.get(scale.pk), scale)  # type: ignore[attr-defined]
         for name in ("scale", "gross") if self.optional else ():
             self.fields[name].required = False
+        chosen = str(self.data.get("scale", ""))
+        for scale in (one.scale for one in checked.values() if str(one.scale.pk) == chosen):
+            self.fields["gross"].read_off(scale.style)  # type: ignore[attr-defined]
 
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean() or {}
-        scale, gross = cleaned.get("scale"), cleaned.get("gross")
-        if gross is not None and scale is not None:
-            cleaned["gross"] = parse_mass(gross.typed, default_unit=scale.style)
-        elif gross is not None and "scale" not in self.errors:
+        if cleaned.get("gross") is not None and cleaned.get("scale") is None and "scale" not in self.errors:
             self.add_error("scale", forms.ValidationError("Say which scale it stood on.", code="no scale"))
         return cleaned
 
@@ -109,8 +108,4 @@ class StrikeWeighingForm(ActForm):
 
     def __init__(self, *args: Any, scale: Scale, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
-        self.scale = scale
-
-    def clean_right(self) -> Any:
-        right = self.cleaned_data["right"]
-        return None if right is None else parse_mass(right.typed, default_unit=self.scale.style)
+        self.fields["right"].read_off(scale.style)  # type: ignore[attr-defined]

@@ -171,7 +171,7 @@ def fill_form_kwargs(
     scale = supply.station.scale if supply else None
     due = str(scale) if scale is not None and not scale_checked(scale, shop).passed_today else ""
     return {
-        "bottle": bottle, "offered": readings_offered(supply.station if supply else None),
+        "bottle": bottle, "offered": readings_offered(supply.station if supply else None), "at": supply.station if supply else None,
         "mass": refill_words(request, shop).mass, "items": look_items(bottle, shop),
         "ask_pressure": asks_pressure(judgement), "check_due": due,
     }  # fmt: skip

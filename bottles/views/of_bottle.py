@@ -8,6 +8,7 @@ from django.http import Http404
 
 from bottles.models import Bottle, Standing
 from bottles.services.standing import restate
+from shop.base.fields import MassField
 from shop.base.permissions import EVERYONE
 from shop.people.acting import ActView
 
@@ -35,6 +36,11 @@ class BottleActView(ActView):
         """The bottle's standing, worked out where it's missing."""
         found = Standing.objects.filter(bottle=self.bottle).select_related("custody__place", "tare", "weighing").first()
         return found or restate(self.bottle)
+
+    @property
+    def bare_mass(self) -> str:
+        """The unit in which whoever signed in means a bare weight."""
+        return MassField.defaults[self.request.user.units or self.shop.units]  # type: ignore[union-attr]
 
     def first_page(self, act: Any) -> str:
         return self.bottle.get_absolute_url()

@@ -84,7 +84,7 @@ class RefillPage(OfRefill):
     said = ""
 
     def form_kwargs(self) -> dict[str, Any]:
-        return {"supply_scale": self.refill.station.supply_scale}
+        return {"station": self.refill.station}
 
     def act(self, form: WeighForm, person: User, key: uuid.UUID) -> str:
         found = steps.weigh_refill(
@@ -139,7 +139,7 @@ class AnotherSupply(OfRefill):
 
     def form_kwargs(self) -> dict[str, Any]:
         return {
-            "bottle": self.refill.bottle, "offered": readings_offered(self.refill.station),
+            "bottle": self.refill.bottle, "offered": readings_offered(self.refill.station), "at": self.refill.station,
             "mass": refill_words(self.request, self.shop).mass, "station": self.refill.station, "but": self.in_force,
         }  # fmt: skip
 

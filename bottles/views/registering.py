@@ -95,7 +95,7 @@ class ChangeBottle(BottleActView):
     template_name = "bottles/edit.html"
 
     def initial(self) -> dict[str, Any]:
-        return particulars_typed(self.bottle)
+        return particulars_typed(self.bottle, unit=self.bare_mass)
 
     def context(self) -> dict[str, Any]:
         return super().context() | {"heading": f"Complete or correct {self.bottle.code}"}

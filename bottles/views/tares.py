@@ -23,7 +23,7 @@ class NewTare(BottleActView):
 
     def initial(self) -> dict[str, Any]:
         tare = tares_of(self.bottle).first()
-        return {"tare_basis": tare.basis if tare else "weighed"} | typed_parts(tare)
+        return {"tare_basis": tare.basis if tare else "weighed"} | typed_parts(tare, unit=self.bare_mass)
 
     def context(self) -> dict[str, Any]:
         tare = tares_of(self.bottle).first()

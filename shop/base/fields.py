@@ -62,8 +62,42 @@ class MassField(QuantityField):
 
     defaults = {"us": "lb", "metric": "kg"}
 
+    def __init__(self, **kwargs: Any) -> None:
+        super().__init__(**kwargs)
+        self.scales_own = ""
+
+    def read_off(self, style: str) -> None:
+        """Take a bare number as a scale writes it, whatever the person reads."""
+        self.scales_own = style
+
+    @property
+    def default_unit(self) -> str:
+        """The unit that is meant where none is written."""
+        return self.scales_own or super().default_unit
+
     def parse(self, text: str) -> units.Entry:
         return units.parse_mass(text, default_unit=self.default_unit)
+
+
+def mass_shown_back(stored: int | None, typed: str, *, meant: str = "") -> str:
+    """Return a weight as it was typed, for a form in which someone else may save it again.
+
+    A bare number was meant in the unit of whoever typed it: where it means something else in the
+    unit that is meant in this form, its unit is added, so that it stays the same grams.
+    """
+    if stored is None:
+        return ""
+    known = {unit: _grams(typed, unit) for unit in dict.fromkeys((meant or "lb", "lb", "kg", "oz", "g"))}
+    if known["lb"] == known["g"] == stored or (meant and known[meant] == stored):
+        return typed
+    return next((f"{typed} {unit}" for unit, grams in known.items() if grams == stored), units.in_own_unit(stored, "g"))
+
+
+def _grams(typed: str, unit: str) -> int | None:
+    try:
+        return units.parse_mass(typed, default_unit=unit).stored
+    except QuantityError:
+        return None
 
 
 class PressureField(QuantityField):
