@@ -38,6 +38,11 @@ def policy_of(row: models.Policy | None) -> Policy:
     )
 
 
+def edition_in_force(shop: Shop, on: datetime.date) -> RuleEdition:
+    """Return the rule set that holds in the shop on a day; the policy is read only where it's entered by hand."""
+    return edition_on(shop.country, on) or edition_for(shop, on, policy_row(on))
+
+
 def edition_for(shop: Shop, on: datetime.date, row: models.Policy | None) -> RuleEdition:
     """Return the rule set of the shop's country on a day, or the one its manager entered by hand.
 

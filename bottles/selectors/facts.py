@@ -7,9 +7,9 @@ ask for it, they never assume it.
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Collection, Iterable, Sequence
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import Any
+from typing import Any, NamedTuple
 
 from bottles.models import Bottle, Condition, Custody, Refill, RefillCheck, Stamp, Standing
 from bottles.rules.facts import Condition as Noted
@@ -24,13 +24,26 @@ WITHOUT_PRESSURE = "without pressure"
 HELD: dict[str, Contents] = {"nitrous": "nitrous oxide", "new": "nothing yet", "other": "other", "unknown": "unknown"}
 
 
+class _Stamped(NamedTuple):
+    """The columns of a stamp that are judged: a row without a model, as many are read at once."""
+
+    id: int
+    kind: str
+    typed: str
+    year: int
+    month: int | None
+    star: bool
+    plus: bool
+    facility: str
+
+
 @dataclass(slots=True)
 class _Rows:
     """What the tables hold of one bottle."""
 
     standing: Standing | None = None
-    stamps: list[Stamp] = field(default_factory=list)
-    conditions: list[Condition] = field(default_factory=list)
+    stamps: list[_Stamped] = field(default_factory=list)
+    conditions: list[Noted] = field(default_factory=list)
     consent: bool | None = None
     open_refill: bool = False
     came_back: Any = None  # when it last came in after having been out
@@ -38,20 +51,28 @@ class _Rows:
     stars: list[bool] = field(default_factory=list)  # of each refill: were the star's checks done
 
 
-def facts_of(bottles: Sequence[Bottle], *, star_items: Collection[str] = ()) -> dict[int, Facts]:
-    """Return the facts of each bottle by key; `star_items` are the look's items that a star asks for."""
-    rows = _read([bottle.pk for bottle in bottles], star_items)
+def facts_of(
+    bottles: Sequence[Bottle], *, star_items: Collection[str] = (), standings: Mapping[int, Standing] | None = None
+) -> dict[int, Facts]:
+    """Return the facts of each bottle by key; `star_items` are the look's items that a star asks for.
+
+    Whoever has just read the bottles' standings, with ownership and weighing, hands them over.
+    """
+    keys = [bottle.pk for bottle in bottles]
+    if standings is None:
+        standings = Standing.objects.select_related("ownership", "weighing").in_bulk(keys)
+    rows = _read(keys, standings, star_items)
     return {bottle.pk: _facts(bottle, rows[bottle.pk]) for bottle in bottles}
 
 
-def _read(keys: list[int], star_items: Collection[str]) -> dict[int, _Rows]:
-    found: dict[int, _Rows] = {key: _Rows() for key in keys}
-    for standing in Standing.objects.filter(pk__in=keys).select_related("ownership", "custody", "tare", "weighing"):
-        found[standing.pk].standing = standing
-    for stamp in Stamp.objects.filter(bottle__in=keys, strike__isnull=True).order_by("id"):
-        found[stamp.bottle_id].stamps.append(stamp)
-    for condition in Condition.objects.filter(bottle__in=keys, end__isnull=True).order_by("id"):
-        found[condition.bottle_id].conditions.append(condition)
+def _read(keys: list[int], standings: Mapping[int, Standing], star_items: Collection[str]) -> dict[int, _Rows]:
+    found: dict[int, _Rows] = {key: _Rows(standings.get(key)) for key in keys}
+    stamps = Stamp.objects.filter(bottle__in=keys, strike__isnull=True).order_by("id")
+    for key, *columns in stamps.values_list("bottle_id", *_Stamped._fields):
+        found[key].stamps.append(_Stamped(*columns))
+    conditions = Condition.objects.filter(bottle__in=keys, end__isnull=True).order_by("id")
+    for key, code, seen_on in conditions.values_list("bottle_id", "code", "seen_on"):
+        found[key].conditions.append(Noted(code, seen_on))
     for key in Refill.objects.filter(bottle__in=keys, closed_at__isnull=True).values_list("bottle_id", flat=True):
         found[key].open_refill = True
     _read_journeys(found)
@@ -117,8 +138,8 @@ def _facts(bottle: Bottle, rows: _Rows) -> Facts:
     return Facts(
         mark=read_mark(bottle.mark) if bottle.mark else None,
         wall=None if bottle.wall == "unknown" else bottle.wall,  # type: ignore[arg-type]
-        made=date_stamp(made[-1]) if made else None,
-        tests=tuple(date_stamp(stamp) for stamp in tests) if tests or made else None,
+        made=_date_stamp(made[-1]) if made else None,
+        tests=tuple(_date_stamp(stamp) for stamp in tests) if tests or made else None,
         star_kept=all(rows.stars) if rows.stars else None,
         service_life_end=min(_months(rows.stamps, "end"), default=None),
         permit=_permit(bottle),
@@ -126,7 +147,7 @@ def _facts(bottle: Bottle, rows: _Rows) -> Facts:
         alloy_6351=("6351" in bottle.alloy) if bottle.alloy else None,
         capacity_ml=bottle.capacity_ml,
         capacity_basis="computed" if bottle.capacity_basis == "inferred" else "entered",
-        tare_known=bool(standing and standing.tare),
+        tare_known=bool(standing and standing.tare_id),
         charge_g=bottle.charge_g,
         own_limit_g=bottle.own_limit_g,
         net_g=net,
@@ -135,11 +156,7 @@ def _facts(bottle: Bottle, rows: _Rows) -> Facts:
         owner=ownership.kind if ownership else None,  # type: ignore[arg-type]
         consent=rows.consent,
         condemned=CONDEMNED in codes or bottle.retired_at is not None,
-        conditions=tuple(
-            Noted(condition.code, condition.seen_on)
-            for condition in rows.conditions
-            if condition.code != CONDEMNED
-        ),
+        conditions=tuple(condition for condition in rows.conditions if condition.code != CONDEMNED),
         pressure_kept=_pressure_kept(codes, net, error),
         in_open_refill=rows.open_refill,
         visual=max(_months(rows.stamps, "visual"), default=None),
@@ -182,11 +199,11 @@ def _permit(bottle: Bottle) -> Permit | None:
     )
 
 
-def _months(stamps: Iterable[Stamp], kind: str) -> list[Month]:
-    return [date_stamp(stamp).at for stamp in stamps if stamp.kind == kind]
+def _months(stamps: Iterable[_Stamped], kind: str) -> list[Month]:
+    return [_date_stamp(stamp).at for stamp in stamps if stamp.kind == kind]
 
 
-def date_stamp(stamp: Stamp) -> DateStamp:
+def _date_stamp(stamp: _Stamped) -> DateStamp:
     """Return a stamp's row as the rules take it."""
     return DateStamp(
         typed=stamp.typed, year=stamp.year, month=stamp.month, star=stamp.star, plus=stamp.plus,

@@ -47,22 +47,26 @@ class Walls:
 def known_contents(bottle: Bottle) -> Known:
     """Return what is known of a bottle's contents: unknown where it was never weighed nor filled."""
     history = history_of(bottle)
-    tare = Tare.objects.filter(bottle=bottle).order_by("-since", "-id").first()
+    tare = _tare_of(bottle)
     weighed = history.ruling[-1] if history.ruling else None
     if weighed is None and not history.changes:
         return Known(None, 0, False, tare)
-    balance = Account.objects.filter(bottle=bottle).values_list("balance_g", flat=True).first() or 0
     moved = any(weighed is None or change.key > weighed.key for change in history.changes if not change.reversal)
     if weighed is not None and not moved:
         return Known(weighed.net_g, weighed.error_g, True, tare)
+    balance = Account.objects.filter(bottle=bottle).values_list("balance_g", flat=True).first() or 0
     now = Spoken((clock.now(), 2**62), -1, balance, 0, False)
     return Known(balance, history.books_error(now), False, tare)
 
 
 def walls_of(bottle: Bottle) -> Walls:
     """Return the wall's heat capacity; both materials where it isn't known which."""
+    return walls_by(bottle, _tare_of(bottle))
+
+
+def walls_by(bottle: Bottle, tare: Tare | None) -> Walls:
+    """Return the wall's heat capacity by a tare that was read already."""
     materials = (bottle.wall,) if bottle.wall in WALL_G_A_LITRE else tuple(WALL_G_A_LITRE)
-    tare = Tare.objects.filter(bottle=bottle).order_by("-since", "-id").prefetch_related("parts").first()
     if tare is None:
         litres = (bottle.capacity_ml or 0) / 1000
         return Walls(
@@ -76,6 +80,10 @@ def walls_of(bottle: Bottle) -> Walls:
         return Walls(tuple(wall_heat(name, own / 1000) for name in materials), "")
     mass = tare.total_g - min(FITTINGS_G, tare.total_g // FITTINGS_SHARE)
     return Walls(tuple(wall_heat(name, mass / 1000) for name in materials), "its tare less an allowance for valve and fittings")
+
+
+def _tare_of(bottle: Bottle) -> Tare | None:
+    return Tare.objects.filter(bottle=bottle).order_by("-since", "-id").prefetch_related("parts").first()
 
 
 def takes_liquid(bottle: Bottle, *, inverted: bool) -> bool | None:

@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 import datetime
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
-from bottles.models import Bottle
+from bottles.models import Bottle, Standing
 from bottles.rules.edition import RuleEdition
 from bottles.rules.facts import Facts
 from bottles.rules.fitness import Judgement, judge
@@ -20,17 +20,30 @@ from shop.base.models import Shop
 
 @dataclass(frozen=True, slots=True)
 class Rulebook:
-    """What holds on a day: the rule set, the policy and the row that the policy came from."""
+    """What holds on a day: the rule set, the policy and the row that the policy came from.
+
+    Read once for an act or a page and handed down, so that all of it is judged by one.
+    """
 
     on: datetime.date
     edition: RuleEdition
     policy: Policy
     row: models.Policy | None
 
-    @property
-    def star_items(self) -> tuple[str, ...]:
-        """The items of the look that a star asks for."""
-        return tuple(item.code for item in self.edition.look if item.when == "star")
+    def facts(self, bottles: Sequence[Bottle], standings: Mapping[int, Standing] | None = None) -> dict[int, Facts]:
+        """Return what is known of bottles by key, in a fixed number of queries; see `facts_of`."""
+        star_items = tuple(item.code for item in self.edition.look if item.when == "star")
+        return facts_of(bottles, star_items=star_items, standings=standings)
+
+    def judge(self, facts: Facts) -> Judgement:
+        """Judge what is known of one bottle."""
+        return judge(facts, self.edition, self.policy, self.on)
+
+    def judge_all(
+        self, bottles: Sequence[Bottle], standings: Mapping[int, Standing] | None = None
+    ) -> dict[int, Judgement]:  # fmt: skip
+        """Judge bottles by key, in a fixed number of queries."""
+        return {key: self.judge(facts) for key, facts in self.facts(bottles, standings).items()}
 
 
 def rulebook(shop: Shop, on: datetime.date | None = None) -> Rulebook:
@@ -49,16 +62,9 @@ def judge_bottle(
     `consent`: fields of bottles.rules.facts.Facts.
     """
     book = rulebook(shop, on)
-    return judge(facts_of_bottle(bottle, book, given), book.edition, book.policy, book.on)
-
-
-def facts_of_bottle(bottle: Bottle, book: Rulebook, given: dict[str, Any] | None = None) -> Facts:
-    """Return one bottle's facts, with what was seen just now laid over them."""
-    return replace(facts_of([bottle], star_items=book.star_items)[bottle.pk], **(given or {}))
+    return book.judge(replace(book.facts([bottle])[bottle.pk], **(given or {})))
 
 
 def judge_many(bottles: Sequence[Bottle], *, shop: Shop, on: datetime.date | None = None) -> dict[int, Judgement]:
     """Judge many bottles by key, in a fixed number of queries."""
-    book = rulebook(shop, on)
-    facts = facts_of(bottles, star_items=book.star_items)
-    return {key: judge(each, book.edition, book.policy, book.on) for key, each in facts.items()}
+    return rulebook(shop, on).judge_all(bottles)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 
@@ -51,12 +51,22 @@ def net_without_hose(refill: Refill, weighing: Weighing) -> int:
     return weighing.net_g - (refill.station.hose_pull_g if weighing.step == "after" else 0)
 
 
-def course_of(refill: Refill) -> Course:
-    """Return a refill's course: two queries.
+def draws_of(refill: Refill) -> tuple[Draw, ...]:
+    """Return a refill's draws in the order in which they happened, with supply bottles and forecasts."""
+    return tuple(refill.draws.select_related("source", "forecast").order_by("happened_at", "id"))
+
+
+def in_force(draws: Sequence[Draw]) -> Draw:
+    """Return the draw that a refill goes on from now: the one recorded last."""
+    return max(draws, key=lambda draw: draw.pk)
+
+
+def course_of(refill: Refill, draws: Sequence[Draw] | None = None) -> Course:
+    """Return a refill's course: two queries, one for whoever has just read its draws.
 
     A weighing counts that was made for it, or that took the place of one that was struck.
     """
-    draws = tuple(refill.draws.select_related("source", "forecast").order_by("happened_at", "id"))
+    draws = draws_of(refill) if draws is None else tuple(draws)
     mine = Q(refill=refill) | Q(act_id=refill.act_id) | Q(act_id__gt=refill.act_id, happened_at__gte=refill.opened_at)
     if refill.closed_at is not None:
         mine &= Q(happened_at__lte=refill.closed_at)

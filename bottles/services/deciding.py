@@ -2,25 +2,22 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 from bottles.models import Bottle, Decision
-from bottles.rules.facts import kept_form
-from bottles.rules.fitness import Judgement, judge
-from bottles.selectors.judging import facts_of_bottle, rulebook
-from shop.base.models import Act, Shop
+from bottles.rules.facts import Facts, kept_form
+from bottles.rules.fitness import Judgement
+from bottles.selectors.judging import Rulebook
+from shop.base.models import Act
 
 
 def decide(
-    *, act: Act, bottle: Bottle, shop: Shop, given: dict[str, Any], look: dict[str, bool] | None = None
+    *, act: Act, bottle: Bottle, book: Rulebook, facts: Facts, look: dict[str, bool] | None = None
 ) -> tuple[Judgement, Decision]:
     """Judge a bottle within an act's transaction and keep the answer with its inputs.
 
-    `given` are facts seen just now; `look` the answers to the filler's look, item by item.
+    `facts` were read within the act, with what was seen just now laid over them; `look` are the
+    answers to the filler's look, item by item.
     """
-    book = rulebook(shop)
-    facts = facts_of_bottle(bottle, book, given)
-    judgement = judge(facts, book.edition, book.policy, book.on)
+    judgement = book.judge(facts)
     kept = Decision(
         act=act, bottle=bottle, on=book.on, edition=book.edition.code, edition_sha256=book.edition.sha256, policy=book.row,
         inputs={**kept_form(facts), "look": look or {}}, may_fill=judgement.may_be_filled, may_empty=judgement.may_be_emptied,

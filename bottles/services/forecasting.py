@@ -17,7 +17,7 @@ from bottles.physics.forecast import Tolerances, forecast
 from bottles.physics.receiver_start import OWN_VAPOUR, VENTED, WEIGHED, Start, start_vessel
 from bottles.physics.transfer import PHYSICS_VERSION
 from bottles.physics.vessel import Vessel
-from bottles.selectors.filling_facts import Walls, air_pressure, known_contents, takes_liquid, walls_of
+from bottles.selectors.filling_facts import Known, Walls, air_pressure, known_contents, takes_liquid, walls_by
 from bottles.services.stations import line_volume_m3
 from shop.base.errors import NotReady, Refusal
 from shop.base.models import Act, Shop
@@ -133,16 +133,17 @@ def work_out(asked: Asked, readings: Readings) -> Answer:
     if bottle.capacity_ml is None:
         raise NotReady(f"{bottle.code} has no water capacity written down, so it has no fill limit.", code="no capacity")
     notes: list[tuple[str, str]] = []
-    held = _source_held(asked, readings)
+    source, own = known_contents(asked.supply.bottle), known_contents(bottle)
+    held = _source_held(asked, readings, source)
     contents = _contents(asked, readings, held, notes)
     if held is None and contents is None:
         raise ReadingMissing(field="gauge")
     target_g = min(asked.limit_g, readings.target.stored if readings.target else asked.limit_g)
     if target_g <= 0:
         raise Refusal("A target must be above nothing. Leave it empty for the fill limit.", code="target", field="target")
-    start = _start(asked, readings, notes)
+    start = _start(asked, readings, own, notes)
     spread = _spread(contents, held, _contents(asked, readings, None, []) if held and held.origin == BOOKS else None)
-    answers = _each_wall(asked, readings, start, held, spread, target_g, notes)
+    answers = _each_wall(asked, readings, (source, own), start, held, spread, target_g, notes)
     main = answers[0]
     likely = [one.likely_kg for one in answers if one.likely_kg is not None]
     danger = contents is not None and _dangerous(contents, held)
@@ -175,9 +176,8 @@ def keep_forecast(*, act: Act, asked: Asked, answer: Answer) -> Forecast:
 BOOKS = "by the books"
 
 
-def _source_held(asked: Asked, readings: Readings) -> Held | None:
+def _source_held(asked: Asked, readings: Readings, known: Known) -> Held | None:
     """What the supply bottle holds: by its weight now, else by its last weighing and the books."""
-    known = known_contents(asked.supply.bottle)
     if readings.supply_weight is not None:
         tare = known.tare
         if tare is None:
@@ -247,9 +247,8 @@ def _spread(
     return (by_reading.least_kg, by_reading.most_kg) if by_reading else None
 
 
-def _start(asked: Asked, readings: Readings, notes: list[tuple[str, str]]) -> Start:
+def _start(asked: Asked, readings: Readings, known: Known, notes: list[tuple[str, str]]) -> Start:
     """How the bottle to fill starts, and what the scale has to say about that."""
-    known = known_contents(asked.bottle)
     net = known.grams if known.still_as_weighed else None
     if readings.bottle_weight is not None and known.tare is not None:
         net = max(0, readings.bottle_weight.stored - known.tare.total_g)
@@ -278,12 +277,12 @@ def _vented_g(asked: Asked, readings: Readings, ambient_pa: float) -> int:
 
 
 def _each_wall(
-    asked: Asked, readings: Readings, start: Start, held: Held | None, spread: tuple[float, float] | None, target_g: int,
-    notes: list[tuple[str, str]],
+    asked: Asked, readings: Readings, known: tuple[Known, Known], start: Start, held: Held | None,
+    spread: tuple[float, float] | None, target_g: int, notes: list[tuple[str, str]],
 ) -> list[Transferred]:  # fmt: skip
     """Forecast for each wall that the two bottles may have; the first one is shown in full."""
     bottle, source, station = asked.bottle, asked.supply.bottle, asked.supply.station
-    source_walls, own_walls = walls_of(source), walls_of(bottle)
+    source_walls, own_walls = walls_by(source, known[0].tare), walls_by(bottle, known[1].tare)
     notes.extend(_wall_notes(source, source_walls) + _wall_notes(bottle, own_walls))
     liquid = takes_liquid(source, inverted=asked.supply.inverted)
     if liquid is None:

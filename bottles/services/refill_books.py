@@ -15,10 +15,10 @@ from collections.abc import Container
 
 from django.db.models import Q
 
-from bottles.models import Account, Line, Movement, Refill, Weighing
+from bottles.models import Account, Bottle, Line, Movement, Refill, Weighing
 from bottles.physics.weighing import net_uncertainty
 from bottles.rules.refill_flows import Flow, Read, Source, flows
-from bottles.selectors.refills import Course, course_of, net_without_hose, source_weighings
+from bottles.selectors.refills import Course, net_without_hose, source_weighings
 from bottles.services.booking import book
 from bottles.services.posting import Move, account_of, own_account
 from shop.base.models import Act
@@ -30,12 +30,15 @@ LINE_SHARE = 2
 Pair = tuple[int, int]  # keys of two accounts: from, to
 
 
-def post_flows(*, act: Act, refill: Refill, weighing: Weighing | None) -> list[Movement]:
-    """Bring the books of a refill to its weighings; return what was posted, nothing where they agree."""
-    course = course_of(refill)
+def post_flows(*, act: Act, course: Course, weighing: Weighing | None) -> list[Movement]:
+    """Bring the books of a refill to its weighings; return what was posted, nothing where they agree.
+
+    The course was read within the act, after the weighing was inserted.
+    """
     if course.before is None or not course.draws:
         return []
-    wanted = _wanted(course)
+    refill, accounts = course.refill, _Accounts(course)
+    wanted = _wanted(course, accounts)
     posted = _posted(refill, wanted)
     happened_at = weighing.happened_at if weighing else act.recorded_at
     filled: list[Move] = []
@@ -45,7 +48,7 @@ def post_flows(*, act: Act, refill: Refill, weighing: Weighing | None) -> list[M
         difference = grams - posted.get(pair, 0)
         if not difference:
             continue
-        source, target = (Account.objects.get(pk=key) for key in (pair if difference > 0 else pair[::-1]))
+        source, target = (accounts.by_key(key) for key in (pair if difference > 0 else pair[::-1]))
         move = Move(source=source, target=target, grams=abs(difference), origin=origin, error_g=error)
         (vented if "vented" in (source.kind, target.kind) else filled).append(move)
     made = [
@@ -93,19 +96,50 @@ def _source(course: Course, number: int) -> Source:
     )  # fmt: skip
 
 
-def _wanted(course: Course) -> dict[Pair, tuple[int, int, str]]:
+class _Accounts:
+    """The accounts that a refill may touch, read at once; one that isn't there yet is opened when it's named."""
+
+    def __init__(self, course: Course) -> None:
+        bottles = {bottle.pk: bottle for bottle in (course.refill.bottle, *(draw.source for draw in course.draws))}
+        rows = Account.objects.filter(Q(bottle__in=bottles) | Q(kind__in=Account.OWN))
+        self._found: dict[int, Account] = {}
+        self._keys: dict[int | str, int] = {}
+        for row in rows:
+            if row.bottle_id:
+                row.bottle = bottles[row.bottle_id]
+            self._keep(row)
+
+    def of(self, bottle: Bottle) -> Account:
+        """A bottle's account."""
+        return self._found[self._keys[bottle.pk]] if bottle.pk in self._keys else self._keep(account_of(bottle))
+
+    def own(self, kind: str) -> Account:
+        """One of the shop's own."""
+        return self._found[self._keys[kind]] if kind in self._keys else self._keep(own_account(kind))
+
+    def by_key(self, key: int) -> Account:
+        """Any that was named, or that a movement of the refill touched."""
+        return self._found[key] if key in self._found else self._keep(Account.objects.get(pk=key))
+
+    def _keep(self, row: Account) -> Account:
+        self._keys[row.bottle_id or row.kind] = row.pk
+        self._found[row.pk] = row
+        return row
+
+
+def _wanted(course: Course, accounts: _Accounts) -> dict[Pair, tuple[int, int, str]]:
     """Grams from one account to another over the whole refill, with their ± and origin."""
-    receiver = account_of(course.refill.bottle)
+    receiver = accounts.of(course.refill.bottle)
     found: dict[Pair, tuple[int, int, str]] = {}
     for flow in flows_of(course):
-        supply = account_of(course.draws[flow.draw].source) if flow.draw is not None else receiver
+        supply = accounts.of(course.draws[flow.draw].source) if flow.draw is not None else receiver
         source, target = {
             "arrived": lambda s: (s, receiver),
-            "line": lambda s: (s, own_account("line")),
-            "missing": lambda s: (s, own_account("unaccounted")),
-            "found": lambda s: (own_account("scale"), receiver),
-            "found beyond": lambda s: (own_account("unaccounted"), receiver),
-            "vented": lambda s: (receiver, own_account("vented")),
+            "line": lambda s: (s, accounts.own("line")),
+            "missing": lambda s: (s, accounts.own("unaccounted")),
+            "found": lambda s: (accounts.own("scale"), receiver),
+            "found beyond": lambda s: (accounts.own("unaccounted"), receiver),
+            "vented": lambda s: (receiver, accounts.own("vented")),
         }[flow.kind](supply)
         before = found.get((source.pk, target.pk), (0, 0, flow.origin))
         found[source.pk, target.pk] = (before[0] + flow.grams, net_uncertainty(before[1], flow.error_g), flow.origin)

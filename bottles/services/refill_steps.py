@@ -8,17 +8,18 @@ adds to the reading) but never as *full*; what a scale said is kept whatever fol
 from __future__ import annotations
 
 import uuid
+from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
 
 from bottles.models import Draw, Refill, Supply, Weighing
-from bottles.selectors.refills import Course, course_of
+from bottles.selectors.judging import judge_bottle
+from bottles.selectors.refills import Course, course_of, draws_of, in_force
 from bottles.services.forecasting import Answer, Asked, DangerSign
 from bottles.services.locking import lock
 from bottles.services.refill_books import post_flows
 from bottles.services.refill_refusals import Closed, NotDisconnected, Overfull, WetProvesNothing
 from bottles.services.refilling import draw_on, refuse_source
-from bottles.services.standing import restate
 from bottles.services.weighing import weigh_in
 from shop.base import acts, clock
 from shop.base.errors import NotReady, Refusal
@@ -55,17 +56,17 @@ def weigh_refill(
     The weighing is kept even where the refill can't be closed on it. Raises Closed; NotReady where
     the supply bottle changed meanwhile; what `weigh_in` raises.
     """
-    draw = _draw_in_force(refill)
+    seen = draws_of(refill)
     with acts.begin(
         key=key, person=person, code="refill.weighed", subject=f"bottle:{refill.bottle.code}",
         changes={"refill": refill.pk, "line_off": weight.line_off},
     ) as act:
-        refill = _locked(refill, draw)
-        weighing = _weigh(act, refill, draw, weight)
+        refill, draws = _locked(refill, seen)
+        weighing, course = _weigh(act, refill, draws, weight)
         if not ended_by:
             return Weighed(weighing)
         try:
-            _close(refill, ended_by)
+            _close(course, ended_by)
         except (Overfull, NotDisconnected, WetProvesNothing) as why:
             return Weighed(weighing, why_not=why.sentence)
     return Weighed(weighing, closed=True)
@@ -86,7 +87,7 @@ def wait(
         key=key, person=person, code="refill.waits", subject=f"bottle:{refill.bottle.code}",
         changes={"refill": refill.pk, "until": until.isoformat() if until else None, "note": note.strip()},
     ):
-        current = _locked(refill, None)
+        current, _ = _locked(refill)
         acts.update_master(current, version=version, values={"wait_until": until, "wait_note": note.strip()[:80] if until else ""})
 
 
@@ -98,13 +99,13 @@ def add_draw(
     Raises Closed, Overfull, DangerSign; Stale where someone else went on meanwhile; NotReady where
     the supply bottle was taken off or may not be emptied.
     """
-    draw = _draw_in_force(refill)
-    supply = asked.supply
+    seen, supply = draws_of(refill), asked.supply
+    draw = in_force(seen)
     with acts.begin(
         key=key, person=person, code="refill.supply changed", subject=f"bottle:{refill.bottle.code}",
         changes={"refill": refill.pk, "from": draw.source.code, "to": supply.bottle.code},
     ) as act:
-        current = _locked(refill, draw, also=supply)
+        current, draws = _locked(refill, seen, also=supply)
         acts.update_master(current, version=version, values={"wait_until": None, "wait_note": ""})
         if supply.bottle_id == draw.source_id:
             raise NotReady(f"It's being filled from {supply.bottle.code} already.", code="same supply", field="supply")
@@ -116,15 +117,15 @@ def add_draw(
             )
         if answer.blocked:
             raise DangerSign(field="gauge")
-        refuse_source(supply.bottle, asked.shop)
-        _weigh(act, current, draw, weight)
-        if course_of(current).overfull is not None:
+        refuse_source(supply.bottle, judge_bottle(supply.bottle, shop=asked.shop))
+        _, course = _weigh(act, current, draws, weight)
+        if course.overfull is not None:
             raise Overfull
         new = draw_on(
             act=act, refill=current, asked=asked, answer=answer, reason="", happened_at=weight.happened_at or clock.now()
         )
         # What is posted once the line was taken over: the loss of the one before.
-        post_flows(act=act, refill=current, weighing=None)
+        post_flows(act=act, course=course_of(current), weighing=None)
     return new
 
 
@@ -137,8 +138,8 @@ def close_refill(*, key: uuid.UUID, person: User | None, refill: Refill, version
         key=key, person=person, code="refill.closed", subject=f"bottle:{refill.bottle.code}",
         changes={"refill": refill.pk, "ended_by": ended_by},
     ):
-        current = _locked(refill, None)
-        _close(current, ended_by, version=version)
+        current, draws = _locked(refill)
+        _close(course_of(current, draws), ended_by, version=version)
 
 
 def may_close(course: Course, ended_by: str) -> None:
@@ -152,10 +153,10 @@ def may_close(course: Course, ended_by: str) -> None:
         raise WetProvesNothing(field="ended_by")
 
 
-def _close(refill: Refill, ended_by: str, *, version: int | None = None) -> None:
+def _close(course: Course, ended_by: str, *, version: int | None = None) -> None:
     if ended_by not in dict(Refill.ENDS):
         raise Refusal("Say what ended the refill.", code="no end", field="ended_by")
-    course = course_of(refill)
+    refill = course.refill
     may_close(course, ended_by)
     acts.update_master(
         refill, version=refill.version if version is None else version,
@@ -163,10 +164,10 @@ def _close(refill: Refill, ended_by: str, *, version: int | None = None) -> None
             "closed_at": max(clock.now(), course.reads[-1].happened_at), "ended_by": ended_by, "wait_until": None, "wait_note": "",
         },
     )  # fmt: skip
-    restate(refill.bottle)
 
 
-def _weigh(act: Act, refill: Refill, draw: Draw, weight: Weight) -> Weighing:
+def _weigh(act: Act, refill: Refill, draws: Sequence[Draw], weight: Weight) -> tuple[Weighing, Course]:
+    """Insert what the scales say and post what moved; return the weighing, and the course with it."""
     station = refill.station
     if station.scale is None:
         raise NotReady(f"{station} has no scale any more. A manager can give it one.", code="no scale")
@@ -180,28 +181,30 @@ def _weigh(act: Act, refill: Refill, draw: Draw, weight: Weight) -> Weighing:
         if station.supply_scale is None:
             raise Refusal("This station has no scale for its supply bottles.", code="no supply scale", field="supply_gross")
         weigh_in(
-            act=act, bottle=draw.source, scale=station.supply_scale, gross=weight.supply_gross, wet=False, step="after",
+            act=act, bottle=in_force(draws).source, scale=station.supply_scale, gross=weight.supply_gross, wet=False, step="after",
             happened_at=weight.happened_at, refill=refill, settle=False,
         )  # fmt: skip
-    post_flows(act=act, refill=refill, weighing=weighing)
-    return weighing
+    course = course_of(refill, draws)
+    post_flows(act=act, course=course, weighing=weighing)
+    return weighing, course
 
 
-def _draw_in_force(refill: Refill) -> Draw:
-    return refill.draws.select_related("source", "forecast").order_by("-id")[0]
+def _locked(
+    refill: Refill, seen: Sequence[Draw] = (), *, also: Supply | None = None
+) -> tuple[Refill, tuple[Draw, ...]]:  # fmt: skip
+    """Lock the bottles; return the refill and its draws as they stand now.
 
-
-def _locked(refill: Refill, draw: Draw | None, *, also: Supply | None = None) -> Refill:
-    """Lock the bottles and return the refill as it stands now; raise Closed, or NotReady where it moved on."""
-    others = [one.source for one in refill.draws.select_related("source")]
-    lock([refill.bottle, *others, *([also.bottle] if also else [])])
+    `seen` are the draws that the desk went by. Raises Closed; NotReady where someone else went on
+    from another supply bottle since then.
+    """
+    sources = [draw.source for draw in seen or draws_of(refill)]
+    lock([refill.bottle, *sources, *([also.bottle] if also else [])])
     current = Refill.objects.select_related("bottle", "station__scale", "station__supply_scale").get(pk=refill.pk)
     if current.closed_at is not None:
         raise Closed
-    if draw is not None and _draw_in_force(current).pk != draw.pk:
+    draws = draws_of(current)
+    if seen and in_force(draws).pk != in_force(seen).pk:
         raise NotReady(
             "Someone went on from another supply bottle meanwhile. Look at the page again, then weigh.", code="moved on"
         )
-    return current
-
-
+    return current, draws

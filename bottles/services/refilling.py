@@ -14,25 +14,26 @@ from __future__ import annotations
 
 import uuid
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import Any
 
-from django.db import IntegrityError, transaction
+from django.db import IntegrityError
+from django.db.models import Q
 
-from bottles.models import Bottle, Condition, Delivery, Draw, Refill, RefillCheck, Scale, Supply
+from bottles.models import Bottle, Condition, Delivery, Draw, Refill, RefillCheck, Scale, Standing, Supply, Tare
 from bottles.physics.weighing import stop_reading
 from bottles.rules.fitness import Judgement
 from bottles.rules.look import LookResult, look_for, look_result
 from bottles.rules.marks import read_mark
 from bottles.rules.specifications import Wall
-from bottles.selectors.judging import judge_bottle, rulebook
+from bottles.selectors.edition import edition_in_force
+from bottles.selectors.judging import rulebook
 from bottles.selectors.scales import scale_checked, scale_uncertainty
 from bottles.services.deciding import decide
 from bottles.services.forecasting import Answer, Asked, DangerSign, keep_forecast
 from bottles.services.locking import lock
 from bottles.services.refusals import Retired
-from bottles.services.standing import restate
 from bottles.services.weighing import tare_at, weigh_in
 from shop.base import acts, clock
 from shop.base.errors import NotReady, Refusal
@@ -78,13 +79,13 @@ class Opened:
 def look_items(bottle: Bottle, shop: Shop) -> Any:
     """Return the items of the look for a bottle, by the day's rule set."""
     star = bottle.stamps.filter(star=True, strike__isnull=True).exists()
-    return look_for(rulebook(shop).edition, star=star, wall=_wall(bottle))
+    return look_for(edition_in_force(shop, clock.today(shop)), star=star, wall=_wall(bottle))
 
 
-def stop_at(bottle: Bottle, scale: Scale, *, target_g: int, hose_pull_g: int) -> int:
-    """Return the gross at which to close the valve, as the scale will read it; the bottle as fitted now."""
+def stop_at(tare: Tare, scale: Scale, *, target_g: int, hose_pull_g: int) -> int:
+    """Return the gross at which to close the valve, as the scale will read it; the tare is that fitted now."""
     return stop_reading(
-        tare_at(bottle, clock.now()).total_g, target_g, scale_pm_g=scale_uncertainty(scale), resolution_g=scale.resolution_g,
+        tare.total_g, target_g, scale_pm_g=scale_uncertainty(scale), resolution_g=scale.resolution_g,
         style=scale.style, hose_pull_g=hose_pull_g,  # type: ignore[arg-type]
     )  # fmt: skip
 
@@ -119,27 +120,33 @@ def open_refill(*, key: uuid.UUID, person: User | None, opening: Opening) -> Ope
             act=act, bottle=bottle, scale=scale, gross=opening.answer.readings.bottle_weight, wet=opening.wet, step="before",
             happened_at=opening.happened_at, reason=opening.reason,
         )  # fmt: skip
-        given = given_by_look(opening, found, judge_bottle(bottle, shop=shop))
-        judgement, decision = decide(act=act, bottle=bottle, shop=shop, given=given, look=_answers(opening.look))
+        book = rulebook(shop)
+        facts = book.facts([bottle, source])
+        given = given_by_look(opening, found, book.judge(facts[bottle.pk]))
+        judgement, decision = decide(
+            act=act, bottle=bottle, book=book, facts=replace(facts[bottle.pk], **given), look=_answers(opening.look)
+        )
         limit_g = _refuse_unfit(judgement)
-        refuse_source(source, shop)
+        refuse_source(source, book.judge(facts[source.pk]))
         target_g = min(limit_g, opening.answer.target_g)
+        # A weighing entered late rests on the tare of then; the scale will be read with what is fitted now.
+        fitted = weighed.tare if opening.happened_at is None else tare_at(bottle, clock.now())
         refill = Refill(
             bottle=bottle, decision=decision, station=supply.station, method=opening.method, limit_g=limit_g, target_g=target_g,
-            stop_at_g=stop_at(bottle, scale, target_g=target_g, hose_pull_g=supply.station.hose_pull_g),
+            stop_at_g=stop_at(fitted, scale, target_g=target_g, hose_pull_g=supply.station.hose_pull_g),
             opened_at=weighed.happened_at, act=act, person=person,
         )  # fmt: skip
         try:
-            with transaction.atomic():
-                refill.save()
+            refill.save()  # nothing follows a failure: the whole act is rolled back
         except IntegrityError:
             raise NotReady(f"{bottle.code} is being filled already. Go on with that refill.", code="open refill") from None
-        for item in items:
-            if opening.look.get(item.code) is not None:
-                RefillCheck.objects.create(act=act, refill=refill, item=item.code, passed=bool(opening.look[item.code]))
+        RefillCheck.objects.bulk_create(
+            RefillCheck(act=act, refill=refill, item=item.code, passed=bool(opening.look[item.code]))
+            for item in items
+            if opening.look.get(item.code) is not None
+        )
         draw_on(act=act, refill=refill, asked=opening.asked, answer=opening.answer, reason=opening.reason,
                 happened_at=refill.opened_at)  # fmt: skip
-        restate(bottle)
     return Opened(refill)
 
 
@@ -164,9 +171,8 @@ def draw_on(
     )
 
 
-def refuse_source(source: Bottle, shop: Shop) -> None:
+def refuse_source(source: Bottle, judgement: Judgement) -> None:
     """Raise NotReady where a supply bottle may not be emptied into another, with the first reason."""
-    judgement = judge_bottle(source, shop=shop)
     if judgement.may_be_emptied != "yes":
         why = [reason for reason in judgement.reasons if "emptying" in reason.about and reason.severity != "explains"]
         words = f" {why[0].sentence} {why[0].next_step}" if why else ""
@@ -192,8 +198,9 @@ def _note(act: Act, bottle: Bottle, shop: Shop, opening: Opening, found: LookRes
             Condition.objects.create(
                 act=act, bottle=bottle, code=code, note="Found by the look before filling.", seen_on=clock.today(shop)
             )
-    decide(act=act, bottle=bottle, shop=shop, given={"look_done": False}, look=_answers(opening.look))
-    restate(bottle)
+    book = rulebook(shop)
+    facts = replace(book.facts([bottle])[bottle.pk], look_done=False)
+    decide(act=act, bottle=bottle, book=book, facts=facts, look=_answers(opening.look))
     return Opened(None, found.conditions)
 
 
@@ -202,16 +209,18 @@ def _refuse_taken(bottle: Bottle, source: Bottle, supply: Supply) -> None:
         raise Retired
     if bottle.pk == source.pk:
         raise NotReady("A bottle isn't filled from itself. Choose a supply bottle.", code="same bottle", field="supply")
-    if not Supply.objects.filter(pk=supply.pk, station__active=True).exists():
+    hanging = Supply.objects.filter(Q(pk=supply.pk, station__active=True) | Q(bottle=bottle))
+    connected = dict(hanging.values_list("pk", "bottle_id"))
+    if supply.pk not in connected or connected[supply.pk] == bottle.pk:
         raise NotReady(
             f"{source.code} was taken off its station meanwhile. Choose a supply bottle that is connected.", code="taken off",
             field="supply",
         )  # fmt: skip
     if Refill.objects.filter(bottle=bottle, closed_at__isnull=True).exists():
         raise NotReady(f"{bottle.code} is being filled already. Go on with that refill.", code="open refill")
-    if Supply.objects.filter(bottle=bottle).exists():
+    if bottle.pk in connected.values():
         raise NotReady(f"{bottle.code} hangs on a station as a supply bottle. Take it off there first.", code="on a station")
-    if not restate(bottle).is_in:
+    if not Standing.objects.filter(bottle=bottle, is_in=True).exists():
         raise NotReady(f"{bottle.code} isn't in the shop. Check it in first.", code="not in")
 
 
@@ -245,5 +254,3 @@ def _wall(bottle: Bottle) -> Wall | None:
         return bottle.wall  # type: ignore[return-value]
     mark = read_mark(bottle.mark) if bottle.mark else None
     return mark.specification.wall if mark and mark.specification else None
-
-

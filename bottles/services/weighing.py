@@ -14,6 +14,7 @@ from django.db import IntegrityError, transaction
 from bottles.models import Bottle, Delivery, Draw, Refill, Scale, Standing, Tare, Weighing, WeighingStrike
 from bottles.physics import weighing as physics
 from bottles.selectors.history import history_of
+from bottles.selectors.refills import course_of
 from bottles.selectors.scales import last_check, scale_uncertainty
 from bottles.services.booking import book, reverse
 from bottles.services.gaps import end_unknown
@@ -22,7 +23,7 @@ from bottles.services.posting import Move, account_of, own_account
 from bottles.services.refill_books import post_flows
 from bottles.services.refusals import locked
 from bottles.services.settling import settle as settle_books
-from bottles.services.standing import restate
+from bottles.services.standing import restate, restate_weighing
 from shop.base import acts, clock
 from shop.base.errors import NotReady, Refusal
 from shop.base.models import Act
@@ -120,7 +121,7 @@ def weigh_in(
     kept.save()
     if settle:
         settle_books(act=act, bottle=bottle, only=kept, reason=reason)
-    restate(bottle)
+    restate_weighing(bottle)
     return kept
 
 
@@ -188,7 +189,7 @@ def strike(
             )
         _undo(act, weighing, kept)
         if refill is not None:
-            post_flows(act=act, refill=refill, weighing=kept)
+            post_flows(act=act, course=course_of(refill), weighing=kept)
         settle_books(act=act, bottle=bottle, reason=reason)
         standing: Standing = restate(bottle)
         return standing.weighing if right is None else kept

@@ -3,19 +3,21 @@
 from __future__ import annotations
 
 import uuid
+from dataclasses import dataclass
 from typing import Any
 
 from django.contrib import messages
 from django.http import HttpRequest, HttpResponse, HttpResponseRedirect
 from django.shortcuts import render
 from django.urls import reverse
+from django.utils.functional import cached_property
 
 from bottles.forms.filling import READ, FillForm, ReadingsForm
 from bottles.models import Bottle, Refill, Station, Supply
 from bottles.rules.conditions import label_of
 from bottles.rules.fitness import Judgement
-from bottles.selectors.filling_offers import readings_offered, supplies_offered
-from bottles.selectors.judging import judge_bottle
+from bottles.selectors.filling_offers import Offered, readings_offered, supplies_offered
+from bottles.selectors.judging import Rulebook, rulebook
 from bottles.selectors.scales import scale_checked
 from bottles.services.forecasting import Asked, work_out
 from bottles.services.refilling import Opening, look_items, open_refill, refuse_source
@@ -45,12 +47,12 @@ class Fill(BottleActView):
     submit = "Open the refill"
     said = ""
     supply: Supply | None
-    judgement: Judgement
+    judged: Judged
 
     def find(self, **kwargs: Any) -> None:
         super().find(**kwargs)
-        self.judgement = judge_bottle(self.bottle, shop=self.shop)
         self.supply = chosen_supply(self.request, self.bottle)
+        self.judged = Judged.of(self.shop, self.bottle, self.supply)
 
     def get(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
         opened = Refill.objects.filter(bottle=self.bottle, closed_at__isnull=True).first()
@@ -65,12 +67,17 @@ class Fill(BottleActView):
             return self.show(form)
         return super().post(request, *args, **kwargs)
 
+    @cached_property
+    def offered(self) -> Offered:
+        """The readings last taken at the supply bottle's station."""
+        return readings_offered(self.supply.station if self.supply else None)
+
     def initial(self) -> dict[str, Any]:
-        values: dict[str, Any] = dict(readings_offered(self.supply.station if self.supply else None).values)
+        values: dict[str, Any] = dict(self.offered.values)
         return values | {"supply": self.supply.pk if self.supply else None}
 
     def form_kwargs(self) -> dict[str, Any]:
-        return fill_form_kwargs(self.request, self.bottle, self.shop, self.supply, self.judgement)
+        return fill_form_kwargs(self.request, self.bottle, self.judged, self.offered)
 
     def act(self, form: FillForm, person: User, key: uuid.UUID) -> str:
         self._check(form, person, key)
@@ -116,25 +123,26 @@ class Fill(BottleActView):
 
     def asked(self, form: ReadingsForm) -> Asked:
         """What the forecast is asked for."""
-        return asked_for(self.bottle, form.cleaned_data["supply"], self.judgement, self.shop)
+        return asked_for(self.bottle, form.cleaned_data["supply"], self.judged)
 
     def first_page(self, act: Any) -> str:
         refill = Refill.objects.filter(act=act).first()
         return reverse("bottles:refill", args=[refill.pk]) if refill else self.bottle.get_absolute_url()
 
     def context(self) -> dict[str, Any]:
-        answer = verdict(self.judgement)
-        reasons = [one for one in self.judgement.reasons if "filling" in one.about and one.severity not in ("explains", "warns")]
+        judgement = self.judged[self.bottle]
+        answer = verdict(judgement)
+        reasons = [one for one in judgement.reasons if "filling" in one.about and one.severity not in ("explains", "warns")]
         return {
             "bottle": self.bottle, "cautions": CAUTIONS, "kind": answer.kind, "word": answer.word,
             "reasons": [one for one in reasons if one.code not in ("look-owed", "star-check-owed")],
-            "refused": self.judgement.may_be_filled in ("no", "unknown"), "has_supplies": self.supply is not None,
+            "refused": judgement.may_be_filled in ("no", "unknown"), "has_supplies": self.supply is not None,
         }  # fmt: skip
 
     def show(self, form: Any, *, status: int = 200) -> HttpResponse:
         words = refill_words(self.request, self.shop)
         context = {"form": form, "submit": self.submit} | self.context()
-        context |= forecast_part(form, self.bottle, self.judgement, self.shop, words)
+        context |= forecast_part(form, self.bottle, self.judged, words)
         return render(self.request, self.template_name, context, status=status)
 
 
@@ -144,14 +152,36 @@ def forecast_live(request: HttpRequest, code: str) -> HttpResponse:
     bottle = bottle_or_404(code)
     shop = Shop.objects.get()
     request.shop = shop  # type: ignore[attr-defined]
-    judgement = judge_bottle(bottle, shop=shop)
     supply = chosen_supply(request, bottle)
+    judged, offered = Judged.of(shop, bottle, supply), readings_offered(supply.station if supply else None)
     form = FillForm(
-        request.POST, person=request.user, shop=shop, **fill_form_kwargs(request, bottle, shop, supply, judgement)  # type: ignore[arg-type]
+        request.POST, person=request.user, shop=shop, **fill_form_kwargs(request, bottle, judged, offered)  # type: ignore[arg-type]
     )
     form.look_only()
     words = refill_words(request, shop)
-    return render(request, "bottles/_forecast.html", {"bottle": bottle} | forecast_part(form, bottle, judgement, shop, words))
+    return render(request, "bottles/_forecast.html", {"bottle": bottle} | forecast_part(form, bottle, judged, words))
+
+
+@dataclass(frozen=True, slots=True)
+class Judged:
+    """What a page needs judged: the bottle to fill and its supply bottle, at once and by one rulebook."""
+
+    shop: Shop
+    book: Rulebook
+    supply: Supply | None
+    found: dict[int, Judgement]
+
+    @classmethod
+    def of(cls, shop: Shop, bottle: Bottle, supply: Supply | None) -> Judged:
+        """Judge both, or the one where no supply bottle is connected."""
+        book = rulebook(shop)
+        return cls(shop, book, supply, book.judge_all([bottle, supply.bottle] if supply else [bottle]))
+
+    def __getitem__(self, bottle: Bottle) -> Judgement:
+        """What was judged of a bottle; another than those two is judged now."""
+        if bottle.pk not in self.found:
+            self.found.update(self.book.judge_all([bottle]))
+        return self.found[bottle.pk]
 
 
 def chosen_supply(
@@ -165,15 +195,16 @@ def chosen_supply(
 
 
 def fill_form_kwargs(
-    request: HttpRequest, bottle: Bottle, shop: Shop, supply: Supply | None, judgement: Judgement
+    request: HttpRequest, bottle: Bottle, judged: Judged, offered: Offered
 ) -> dict[str, Any]:  # fmt: skip
     """What the form needs to know of bottle, station and day."""
-    scale = supply.station.scale if supply else None
+    shop, station = judged.shop, judged.supply.station if judged.supply else None
+    scale = station.scale if station else None
     due = str(scale) if scale is not None and not scale_checked(scale, shop).passed_today else ""
     return {
-        "bottle": bottle, "offered": readings_offered(supply.station if supply else None), "at": supply.station if supply else None,
+        "bottle": bottle, "offered": offered,
         "mass": refill_words(request, shop).mass, "items": look_items(bottle, shop),
-        "ask_pressure": asks_pressure(judgement), "check_due": due,
+        "ask_pressure": asks_pressure(judged[bottle]), "check_due": due,
     }  # fmt: skip
 
 
@@ -182,25 +213,21 @@ def asks_pressure(judgement: Judgement) -> bool:
     return "pressure kept" in judgement.not_judged or any(reason.code == "dry-and-purge" for reason in judgement.reasons)
 
 
-def asked_for(bottle: Bottle, supply: Supply, judgement: Judgement, shop: Shop) -> Asked:
+def asked_for(bottle: Bottle, supply: Supply, judged: Judged) -> Asked:
     """What a forecast is asked for, with both bottles' limits."""
-    source = judge_bottle(supply.bottle, shop=shop)
-    return Asked(bottle, supply, judgement.limit.grams or 0, source.limit.grams, shop)
+    return Asked(bottle, supply, judged[bottle].limit.grams or 0, judged[supply.bottle].limit.grams, judged.shop)
 
 
-def forecast_part(
-    form: ReadingsForm, bottle: Bottle, judgement: Judgement, shop: Shop, words: RefillWords
-) -> dict[str, Any]:  # fmt: skip
+def forecast_part(form: ReadingsForm, bottle: Bottle, judged: Judged, words: RefillWords) -> dict[str, Any]:
     """The variables of the forecast's part: the answer, or what it waits for."""
-    limit = judgement.limit.grams
+    limit = judged[bottle].limit.grams
     if not limit:
         return {"forecast": None, "trouble": ["This bottle has no fill limit yet. Complete its record first."]}
     if not form.is_bound:
-        offered = supplies_offered(bottle).filter(pk=form.initial.get("supply") or 0).first()
-        stop = stop_figure(bottle, offered, limit, words) if offered else None
         lacking = [name for name in ("supply_temperature", "bottle_temperature") if not form.initial.get(name)]
         waits = [str(form.fields[name].label) for name in lacking or ["bottle_weight"]]
-        return {"forecast": None, "stop": stop, "waits": waits}
+        first = stop_figure(bottle, judged.supply, limit, words) if judged.supply else None
+        return {"forecast": None, "stop": first, "waits": waits}
     wrong = [
         f"{form.fields[name].label}: {error}"
         for name, errors in form.errors.items()
@@ -210,18 +237,21 @@ def forecast_part(
     readings = form.readings()
     supply = form.cleaned_data.get("supply")
     target = form.cleaned_data.get("target")
-    stop = stop_figure(bottle, supply, min(limit, target.stored) if target else limit, words) if supply else None
+
+    def stop() -> dict[str, str] | None:
+        return stop_figure(bottle, supply, min(limit, target.stored) if target else limit, words) if supply else None
+
     if readings is None or supply is None or wrong:
-        return {"forecast": None, "stop": stop, "trouble": wrong, "waits": form.missing}
-    asked = asked_for(bottle, supply, judgement, shop)
+        return {"forecast": None, "stop": stop(), "trouble": wrong, "waits": form.missing}
+    asked = asked_for(bottle, supply, judged)
     try:
         answer = work_out(asked, readings)
     except (Refusal, PhysicsError) as refusal:
         sentence = refusal.sentence
         if isinstance(refusal, NoSolution):
             sentence += " Fill by weight without a forecast, with care."
-        return {"forecast": None, "stop": stop, "trouble": [sentence]}
-    return {"forecast": forecast_context(asked, answer, words), "stop": None, "also": also_said(form, supply, shop)}
+        return {"forecast": None, "stop": stop(), "trouble": [sentence]}
+    return {"forecast": forecast_context(asked, answer, words), "stop": None, "also": also_said(form, supply, judged)}
 
 
 PUMPED = (
@@ -230,11 +260,11 @@ PUMPED = (
 )
 
 
-def also_said(form: ReadingsForm, supply: Supply, shop: Shop) -> list[str]:
+def also_said(form: ReadingsForm, supply: Supply, judged: Judged) -> list[str]:
     """What stands before the forecast: a supply bottle that may not be emptied, a pump with stops of its own."""
     said = []
     try:
-        refuse_source(supply.bottle, shop)
+        refuse_source(supply.bottle, judged[supply.bottle])
     except Refusal as refusal:
         said.append(refusal.sentence)
     if form.cleaned_data.get("method") == "pumped":

@@ -4,11 +4,14 @@ from __future__ import annotations
 
 from typing import Any
 
-from bottles.models import Bottle, Supply
+from bottles.models import Bottle, Supply, Tare
 from bottles.physics.contents import Contents
+from bottles.selectors.scales import scale_uncertainty
 from bottles.services.forecasting import BOOKS, Answer, Asked
 from bottles.services.refilling import stop_at
+from bottles.services.weighing import tare_at
 from bottles.views.refill_words import RefillWords, style_of
+from shop.base import clock
 from shop.base.errors import Refusal
 from shop.physics.errors import PhysicsError
 from shop.physics.weights import format_mass
@@ -82,21 +85,17 @@ def stop_figure(bottle: Bottle, supply: Supply, target_g: int, words: RefillWord
     if scale is None:
         return {"why_not": f"{station} has no scale yet, so there is no reading to stop at."}
     try:
-        gross = stop_at(bottle, scale, target_g=target_g, hose_pull_g=station.hose_pull_g)
+        tare = tare_at(bottle, clock.now())
+        gross = stop_at(tare, scale, target_g=target_g, hose_pull_g=station.hose_pull_g)
     except (Refusal, PhysicsError) as refusal:
         return {"why_not": refusal.sentence}
-    return stop_words(bottle, gross, target_g, station, words)
+    return stop_words(tare, gross, target_g, station, words)
 
 
-def stop_words(bottle: Bottle, gross_g: int, target_g: int, station: Any, words: RefillWords) -> dict[str, str]:
+def stop_words(tare: Tare, gross_g: int, target_g: int, station: Any, words: RefillWords) -> dict[str, str]:
     """A stop reading in the scale's own style, and the sum behind it."""
-    from bottles.selectors.scales import scale_uncertainty
-    from bottles.services.weighing import tare_at
-    from shop.base import clock
-
     scale = station.scale
     style = style_of(scale)
-    tare = tare_at(bottle, clock.now())
     # To the gram, though the scale is coarser: rounded each by itself the parts wouldn't add up to the figure.
     parts = [f"{format_mass(tare.total_g, style, 1)} tare as fitted", f"+ {format_mass(target_g, style, 1)} target"]
     parts.append(f"− {format_mass(scale_uncertainty(scale), style, 1)} the scale's ±")

@@ -16,6 +16,7 @@ from bottles.selectors.scales import scale_uncertainty
 from bottles.services.overfull import timer_of
 from bottles.services.refill_books import flows_of
 from bottles.services.refill_steps import may_close
+from bottles.services.weighing import tare_at
 from bottles.views.forecast_words import stop_words
 from bottles.views.refill_words import RefillWords
 from shop.base import clock
@@ -121,7 +122,7 @@ def _stop(refill: Refill, words: RefillWords) -> dict[str, str] | None:
     if refill.closed_at is not None or refill.station.scale is None:
         return None
     try:
-        return stop_words(refill.bottle, refill.stop_at_g, refill.target_g, refill.station, words)
+        return stop_words(tare_at(refill.bottle, clock.now()), refill.stop_at_g, refill.target_g, refill.station, words)
     except NotReady:
         return {"figure": words.on_scale(refill.stop_at_g, refill.station.scale), "scale": str(refill.station.scale)}
 

@@ -3,21 +3,22 @@
 from __future__ import annotations
 
 import uuid
+from dataclasses import replace
 from typing import Any
 
 from django.contrib import messages
 from django.http import Http404, HttpRequest, HttpResponse
 from django.shortcuts import render
 from django.urls import reverse
+from django.utils.functional import cached_property
 
 from bottles.forms.refills import AnotherSupplyForm, CloseForm, WaitForm, WeighForm
-from bottles.models import Bottle, Refill, Standing
+from bottles.models import Bottle, Refill, Standing, Supply
 from bottles.selectors import refills as selected
-from bottles.selectors.filling_offers import readings_offered
-from bottles.selectors.judging import judge_bottle
+from bottles.selectors.filling_offers import Offered, readings_offered
 from bottles.services import refill_steps as steps
 from bottles.services.forecasting import Asked, work_out
-from bottles.views.filling import asked_for, chosen_supply, forecast_part
+from bottles.views.filling import Judged, asked_for, chosen_supply, forecast_part
 from bottles.views.refill_rows import page_context, refill_rows, section_rows
 from bottles.views.refill_words import refill_words
 from shop.base.errors import Refusal
@@ -84,7 +85,7 @@ class RefillPage(OfRefill):
     said = ""
 
     def form_kwargs(self) -> dict[str, Any]:
-        return {"station": self.refill.station}
+        return {"supply_scale": self.refill.station.supply_scale}
 
     def act(self, form: WeighForm, person: User, key: uuid.UUID) -> str:
         found = steps.weigh_refill(
@@ -133,20 +134,33 @@ class AnotherSupply(OfRefill):
     said = ""
 
     def initial(self) -> dict[str, Any]:
-        supply = chosen_supply(self.request, self.refill.bottle, self.refill.station, self.in_force)
-        offered = readings_offered(self.refill.station)
-        return super().initial() | offered.values | {"supply": supply.pk if supply else None}
+        return super().initial() | self.offered.values | {"supply": self.chosen.pk if self.chosen else None}
 
     def form_kwargs(self) -> dict[str, Any]:
         return {
-            "bottle": self.refill.bottle, "offered": readings_offered(self.refill.station), "at": self.refill.station,
+            "bottle": self.refill.bottle, "offered": self.offered,
             "mass": refill_words(self.request, self.shop).mass, "station": self.refill.station, "but": self.in_force,
         }  # fmt: skip
 
-    @property
+    @cached_property
     def in_force(self) -> Bottle:
         """The supply bottle that it's filled from now."""
-        return self.refill.draws.select_related("source").order_by("-id")[0].source
+        return selected.in_force(selected.draws_of(self.refill)).source
+
+    @cached_property
+    def chosen(self) -> Supply | None:
+        """The supply bottle to go on from."""
+        return chosen_supply(self.request, self.refill.bottle, self.refill.station, self.in_force)
+
+    @cached_property
+    def judged(self) -> Judged:
+        """The bottle and the supply bottle to go on from."""
+        return Judged.of(self.shop, self.refill.bottle, self.chosen)
+
+    @cached_property
+    def offered(self) -> Offered:
+        """The readings last taken at the station."""
+        return readings_offered(self.refill.station)
 
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
         if "forecast" in request.POST:
@@ -157,9 +171,8 @@ class AnotherSupply(OfRefill):
 
     def asked(self, form: AnotherSupplyForm) -> Asked:
         """What the forecast is asked for: the limit that the refill was opened with."""
-        judgement = judge_bottle(self.refill.bottle, shop=self.shop)
-        found = asked_for(self.refill.bottle, form.cleaned_data["supply"], judgement, self.shop)
-        return Asked(found.bottle, found.supply, self.refill.target_g, found.source_limit_g, self.shop)
+        found = asked_for(self.refill.bottle, form.cleaned_data["supply"], self.judged)
+        return replace(found, limit_g=self.refill.target_g)
 
     def act(self, form: AnotherSupplyForm, person: User, key: uuid.UUID) -> str:
         readings = form.readings(bottle_weight=form.cleaned_data["gross"])
@@ -178,8 +191,7 @@ class AnotherSupply(OfRefill):
 
     def show(self, form: Any, *, status: int = 200) -> HttpResponse:
         words = refill_words(self.request, self.shop)
-        judgement = judge_bottle(self.refill.bottle, shop=self.shop)
-        part = forecast_part(form, self.refill.bottle, judgement, self.shop, words) if form.is_bound else {"forecast": None}
+        part = forecast_part(form, self.refill.bottle, self.judged, words) if form.is_bound else {"forecast": None}
         context = {"form": form, "submit": self.submit} | self.context() | part
         return render(self.request, self.template_name, context, status=status)
 

@@ -111,7 +111,7 @@ def test_two_desks_open_one_bottle(works: Works, at_once: Any) -> None:
     def opening(which: Any) -> Callable[[], Any]:
         return lambda: refilling.open_refill(key=key(), person=works.person, opening=which)
 
-    one, two = at_once(opening(first), opening(second), place=(refilling, "judge_bottle"))
+    one, two = at_once(opening(first), opening(second), place=(refilling, "decide"))
     assert one.found.refill is not None and codes(two) == ["open refill"]
     assert (Refill.objects.count(), Draw.objects.count(), Weighing.objects.filter(step="before").count()) == (1, 1, 1)
 
@@ -122,7 +122,7 @@ def test_a_double_click_opens_once(works: Works, at_once: Any) -> None:
     def click() -> Any:
         return refilling.open_refill(key=once, person=works.person, opening=opening)
 
-    one, two = at_once(click, click, place=(refilling, "judge_bottle"))
+    one, two = at_once(click, click, place=(refilling, "decide"))
     assert one.found.refill is not None and isinstance(two.refused, AlreadyDone)
     assert two.refused.act.pk == one.found.refill.act_id
     assert Refill.objects.count() == 1
@@ -206,7 +206,7 @@ def test_a_bottle_retired_while_it_is_opened_is_refused_one_of_the_two(works: Wo
         return "retired"
 
     one, two = at_once(
-        lambda: refilling.open_refill(key=key(), person=works.person, opening=opening), retire, place=(refilling, "judge_bottle")
+        lambda: refilling.open_refill(key=key(), person=works.person, opening=opening), retire, place=(refilling, "decide")
     )
     assert one.found.refill is not None and codes(two) == ["open refill"]
 
@@ -216,7 +216,7 @@ def test_a_supply_taken_off_while_it_is_drawn_on(works: Works, at_once: Any) -> 
     one, two = at_once(
         lambda: refilling.open_refill(key=key(), person=works.person, opening=opening),
         lambda: disconnect(key=key(), person=works.person, supply=supply),
-        place=(refilling, "judge_bottle"),
+        place=(refilling, "decide"),
     )
     assert one.found.refill is not None and codes(two) == ["open refill"]
     assert Supply.objects.count() == 1
