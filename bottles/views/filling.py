@@ -202,7 +202,7 @@ def fill_form_kwargs(
     scale = station.scale if station else None
     due = str(scale) if scale is not None and not scale_checked(scale, shop).passed_today else ""
     return {
-        "bottle": bottle, "offered": offered,
+        "bottle": bottle, "offered": offered, "at": station,
         "mass": refill_words(request, shop).mass, "items": look_items(bottle, shop),
         "ask_pressure": asks_pressure(judged[bottle]), "check_due": due,
     }  # fmt: skip

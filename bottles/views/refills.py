@@ -85,7 +85,7 @@ class RefillPage(OfRefill):
     said = ""
 
     def form_kwargs(self) -> dict[str, Any]:
-        return {"supply_scale": self.refill.station.supply_scale}
+        return {"station": self.refill.station}
 
     def act(self, form: WeighForm, person: User, key: uuid.UUID) -> str:
         found = steps.weigh_refill(
@@ -138,7 +138,7 @@ class AnotherSupply(OfRefill):
 
     def form_kwargs(self) -> dict[str, Any]:
         return {
-            "bottle": self.refill.bottle, "offered": self.offered,
+            "bottle": self.refill.bottle, "offered": self.offered, "at": self.refill.station,
             "mass": refill_words(self.request, self.shop).mass, "station": self.refill.station, "but": self.in_force,
         }  # fmt: skip
 
