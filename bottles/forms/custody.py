@@ -80,7 +80,7 @@ class HandOverForm(ActForm):
     )
     told = forms.BooleanField(
         label="They were told: valve shut, outlet plugged, strapped upright, the boot aired; "
-        "never inhaled, never heated above 52 °C (125 °F)",
+        "never inhaled, never heated above 52\N{NO-BREAK SPACE}°C (125\N{NO-BREAK SPACE}°F)",
         error_messages={"required": "Tell them before the bottle leaves, then tick this."},
     )
     reason = forms.CharField(label="Reason (from quarantine)", max_length=300, required=False)

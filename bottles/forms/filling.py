@@ -84,7 +84,8 @@ class ReadingsForm(ActForm):
         label="The supply bottle weighs", required=False, help_text="Where it stands on the station's own scale."
     )
     bottle_temperature = TemperatureField(
-        label="Temperature of the bottle to fill", error_messages={"required": "Read the temperature of the bottle to fill."}
+        label="Temperature of the bottle to fill",
+        error_messages={"required": "Read the temperature of the bottle to fill."},
     )
     bottle_taken = forms.ChoiceField(label="Taken on the bottle to fill", choices=TEMPERATURES, initial="wall")
 
@@ -107,7 +108,11 @@ class ReadingsForm(ActForm):
     def readings(self, *, bottle_weight: Any = None) -> Readings | None:
         """What was read, or None where too little was: then `missing` says what."""
         data = getattr(self, "cleaned_data", {})
-        if data.get("supply_temperature") is None or data.get("bottle_temperature") is None or data.get("supply") is None:
+        if (
+            data.get("supply_temperature") is None
+            or data.get("bottle_temperature") is None
+            or data.get("supply") is None
+        ):
             return None
         return Readings(
             supply_temperature=data["supply_temperature"], bottle_temperature=data["bottle_temperature"],
@@ -134,17 +139,23 @@ class FillForm(ReadingsForm):
     """Everything that opens a refill."""
 
     bottle_weight = MassField(
-        label="The bottle to fill weighs", error_messages={"required": "Weigh the bottle with everything of its tare list on it."},
+        label="The bottle to fill weighs",
+        error_messages={"required": "Weigh the bottle with everything of its tare list on it."},
         widget=forms.TextInput(attrs={"autocomplete": "off", "autofocus": True}),
     )
     wet = forms.BooleanField(label="It's wet or frosted", required=False)
     start = forms.ChoiceField(label="How it starts", choices=STARTS, initial=WEIGHED)
-    target = MassField(label="Target, if less than the limit", required=False, help_text="Nitrous in the bottle when it's done.")
+    target = MassField(
+        label="Target, if less than the limit", required=False, help_text="Nitrous in the bottle when it's done."
+    )
     method = forms.ChoiceField(label="Method", choices=Refill.METHODS, initial="pressure")
     heater_listed = forms.BooleanField(
-        label="The warmer is listed for bottles and can't take one above 52 °C (125 °F)", required=False
+        label="The warmer is listed for bottles and can't take one above 52\N{NO-BREAK SPACE}°C (125\N{NO-BREAK SPACE}°F)",
+        required=False,
     )
-    pressure = forms.ChoiceField(label="When its valve was opened", choices=PRESSURE, widget=forms.RadioSelect, required=False)
+    pressure = forms.ChoiceField(
+        label="When its valve was opened", choices=PRESSURE, widget=forms.RadioSelect, required=False
+    )
     check_known = MassField(label="Known weight put on the scale", required=False)
     check_read = MassField(label="The scale reads", required=False)
     look_all = forms.BooleanField(label="I looked at each of these, and each is in order", required=False)
@@ -152,7 +163,10 @@ class FillForm(ReadingsForm):
     look_failed = forms.MultipleChoiceField(label="Not in order", required=False, widget=forms.CheckboxSelectMultiple)
     happened_at = HappenedField()
     reason = forms.CharField(
-        label="Reason", max_length=200, required=False, help_text="Only where scale and books differ and a reason is asked for."
+        label="Reason",
+        max_length=200,
+        required=False,
+        help_text="Only where scale and books differ and a reason is asked for.",
     )
 
     FIRST = ("supply", "bottle_weight", "wet", "gauge", "supply_temperature", "taken", "supply_weight", "bottle_temperature",
@@ -160,7 +174,9 @@ class FillForm(ReadingsForm):
     LOOK = ("look_all", "look_ok", "look_failed")
     MORE = ("happened_at", "reason")
 
-    def __init__(self, *args: Any, items: Sequence[LookItem], ask_pressure: bool, check_due: str, **kwargs: Any) -> None:
+    def __init__(
+        self, *args: Any, items: Sequence[LookItem], ask_pressure: bool, check_due: str, **kwargs: Any
+    ) -> None:
         super().__init__(*args, **kwargs)
         self.items = items
         choices = [(item.code, item.words) for item in items]
@@ -169,12 +185,19 @@ class FillForm(ReadingsForm):
             field.choices = choices
         if ask_pressure:
             self.fields["pressure"].required = True
-            self.fields["pressure"].error_messages["required"] = "Say whether there was pressure in it when its valve was opened."
+            self.fields["pressure"].error_messages["required"] = (
+                "Say whether there was pressure in it when its valve was opened."
+            )
         else:
             del self.fields["pressure"]
         self.check_due = check_due
         if check_due:
             self.fields["check_known"].help_text = f"The day's first fill on {check_due}: check it before you weigh."
+            for name in ("check_known", "check_read"):
+                self.fields[name].required = True
+                self.fields[name].error_messages["required"] = (
+                    f"{check_due} wasn't checked today: put a known weight on it."
+                )
         else:
             del self.fields["check_known"], self.fields["check_read"]
 
@@ -213,10 +236,7 @@ class FillForm(ReadingsForm):
             )
         supply = cleaned.get("supply")
         if cleaned.get("method") == "pumped" and supply is not None and not supply.station.pumped:
-            self.add_error("method", forms.ValidationError(f"{supply.station} has no pump written down.", code="no pump"))
-        if self.check_due and "check_known" not in self.errors and "check_read" not in self.errors:
-            for name in ("check_known", "check_read"):
-                if cleaned.get(name) is None:
-                    sentence = f"{self.check_due} wasn't checked today: put a known weight on it."
-                    self.add_error(name, forms.ValidationError(sentence, code="required"))
+            self.add_error(
+                "method", forms.ValidationError(f"{supply.station} has no pump written down.", code="no pump")
+            )
         return cleaned

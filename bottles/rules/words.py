@@ -246,7 +246,7 @@ NOT_GIVEN: dict[str, tuple[str, str]] = {
     "mark": ("its specification mark", "Read the mark off the metal."),
     "tare": ("its tare", "Weigh it empty and record what is on it."),
     "capacity": ("its water capacity", "Read it off the metal."),
-    "net": ("what it holds: never weighed is unknown, not zero", "Weigh it."),
+    "net": ("what it holds now: not weighed here since it came, which is unknown, not empty", "Weigh it."),
     "owner": ("whose bottle it is", "Ask whose it is."),
     "consent": ("whether its owner agrees", "Ask the owner, and note the answer."),
     "contents": ("what it last held", "Ask and check the label; if nobody knows, say unknown."),

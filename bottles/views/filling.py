@@ -35,7 +35,7 @@ from shop.physics.errors import NoSolution, PhysicsError
 CAUTIONS = (
     "Nitrous is an oxidiser and is heavier than air: doors open, no oil or grease on any fitting, no flame, no inhaling.",
     "Liquid freezes skin at once: gloves and eye protection on. The bottle stands free on its scale and can't fall.",
-    "By weight, never by pressure; never above the limit. Nothing is warmed above 52 °C (125 °F).",
+    "By weight, never by pressure; never above the limit. Nothing is warmed above 52\N{NO-BREAK SPACE}°C (125\N{NO-BREAK SPACE}°F).",
 )
 
 

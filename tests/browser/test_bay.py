@@ -33,6 +33,6 @@ def test_a_technician_finds_a_car_its_bottle_and_adds_a_car(new_page: Callable[.
     page.get_by_role("link", name="Bay", exact=True).click()
     page.get_by_role("link", name="Add a car").click()
     page.get_by_label("Number", exact=True).fill("88")
-    page.keyboard.press("Enter")
+    steps.enter(page)
     page.get_by_role("link", name="Bay", exact=True).click()
     expect(page.locator("main li").filter(has_text="88")).to_have_count(1)

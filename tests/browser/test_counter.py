@@ -120,14 +120,15 @@ def test_a_second_fill_in_a_row_asks_for_two_weighings_and_the_look(new_page: Ca
     assert Refill.objects.get(bottle=bottle).ended_by == "limit"
 
 
-def no_wider_and_big_enough(page: Page) -> None:
+def fit_for_a_phone(page: Page) -> None:
     assert steps.overflow(page) == 0, page.url
     assert steps.too_small(page) == [], page.url
+    assert steps.violations(page) == [], page.url
 
 
 def tap(page: Page, name: str, role: Any = "link") -> None:
     """Look at the page with a gloved hand in mind, then tap and wait for the next."""
-    no_wider_and_big_enough(page)
+    fit_for_a_phone(page)
     with page.expect_navigation():
         page.get_by_role(role, name=name, exact=True).first.tap()
 

@@ -48,7 +48,7 @@ def test_the_balance_lists_what_is_unaccounted_for_until_its_weighing_is_struck(
     row.get_by_role("link", name="2.2 ±0.1 lb short").click()
     page.get_by_role("link", name="strike that weighing").click()
     page.get_by_label("What was wrong").fill("another bottle stood on the scale")
-    page.keyboard.press("Enter")
+    steps.enter(page)
     office(page, "Balance")
     expect(page.locator("main")).to_contain_text("The books sum to zero")
     expect(page.get_by_role("region", name="Unaccounted for")).to_have_count(0)

@@ -7,11 +7,12 @@ from typing import Any
 
 import pytest
 from playwright.sync_api import Page as BrowserPage
+from playwright.sync_api import expect
 
 from tests.browser import steps
 from tests.permissions_table import OPEN, TABLE, Page, World
 from tests.test_pages import is_page
-from tests.test_permissions import address_of
+from tests.test_permissions import address_of, saves
 
 pytestmark = [pytest.mark.browser, pytest.mark.django_db(transaction=True)]
 
@@ -36,4 +37,19 @@ def test_a_page_can_be_used_by_everyone(
     wrong |= {"narrow": steps.violations(page), "too wide at 360": steps.overflow(page), "small": steps.too_small(page)}
     page.emulate_media(color_scheme="dark")
     wrong["dark"] = steps.violations(page, only="color-contrast")
+    if saves(row):
+        wrong |= nothing_filled_in(page)
     assert {what: found for what, found in wrong.items() if found} == {}
+
+
+def nothing_filled_in(page: BrowserPage) -> dict[str, Any]:
+    """Press the page's button as it is: what is said then takes the focus and can be read by everyone."""
+    button = page.locator("main form button.main").last
+    if not button.count():
+        return {}  # refused before there is a form
+    button.press("Enter")
+    page.wait_for_load_state()
+    if not page.locator("#errors").count():
+        return {}  # there is nothing that must be filled in
+    expect(page.locator("#errors")).to_be_focused()
+    return {"refused": steps.violations(page), "refused, too wide": steps.overflow(page)}
