@@ -68,7 +68,7 @@ class HandOverForm(ActForm):
 
     kind = forms.ChoiceField(
         label="How it goes out",
-        choices=[("out", "to its owner"), ("car", "onto a car"), ("loan", "on loan")],
+        choices=[("out", "to its owner"), ("car", "onto a car"), ("loan", "on loan"), ("test", "to the test house")],
         widget=forms.RadioSelect,
         initial="out",
     )
@@ -83,8 +83,16 @@ class HandOverForm(ActForm):
         "never inhaled, never heated above 52\N{NO-BREAK SPACE}°C (125\N{NO-BREAK SPACE}°F)",
         error_messages={"required": "Tell them before the bottle leaves, then tick this."},
     )
-    reason = forms.CharField(label="Reason (from quarantine)", max_length=300, required=False)
+    reason = forms.CharField(
+        label="Reason", max_length=300, required=False,
+        help_text="Out of quarantine; or to the test house with contents that nobody weighed.",
+    )
     happened_at = HappenedField()
+
+    def __init__(self, *args: Any, house: str, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        choices = dict(self.fields["kind"].choices) | {"test": f"to the {house}, for its test or inspection"}  # type: ignore[attr-defined]
+        self.fields["kind"].choices = list(choices.items())  # type: ignore[attr-defined]
 
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean() or {}

@@ -10,10 +10,11 @@ from __future__ import annotations
 import uuid
 from datetime import datetime
 
-from bottles.models import Bottle, Custody, Refill, Standing
+from bottles.models import Bottle, Custody, Refill, Standing, Supply
 from bottles.services.cleaning import clean
 from bottles.services.locking import lock
 from bottles.services.standing import restate
+from bottles.services.weighing import refuse_in_refill
 from shop.base import acts, clock
 from shop.base.errors import NotReady
 from shop.base.models import Act, Place
@@ -55,7 +56,7 @@ def move(
 ) -> Custody:
     """Put a bottle that is in at another place; what it waits for stays.
 
-    Raises NotReady where it isn't in.
+    Raises NotReady where it isn't in, or hangs on a station.
     """
     with acts.begin(key=key, person=person, code="bottle.moved", subject=f"bottle:{bottle.code}") as act:
         lock([bottle])
@@ -63,6 +64,7 @@ def move(
         last = standing.custody
         if last is None or not standing.is_in:
             raise NotReady(f"{bottle.code} isn't in the shop. Check it in first.", code="not in")
+        _refuse_connected(bottle)
         return _record(
             act=act, bottle=bottle, kind="moved", place=place, with_whom=last.with_whom, wanted=last.wanted,
             promised_at=last.promised_at, happened_at=happened_at,
@@ -105,9 +107,11 @@ def hand_over(
     happened_at: datetime | None = None,
     reason: str = "",
 ) -> Custody:
-    """Give a bottle out: to its owner, onto a car, on loan.
+    """Give a bottle out: to its owner, onto a car, on loan, to the test house.
 
-    Raises NotReady where it isn't in, is being filled, or weighs more than its limit allows.
+    Raises NotReady where it isn't in, is being filled or feeds a refill, hangs on a station, or weighs
+    more than its limit allows; where it's the supplier's and would be sent to a test; and without a
+    reason where it stands in quarantine, or goes to the test house and was never weighed.
     """
     if kind not in GOES_OUT:
         raise ValueError(kind)
@@ -123,6 +127,8 @@ def hand_over(
                 f"{bottle.code} is being filled. Weigh it with the line disconnected and close the refill first.",
                 code="open refill",
             )
+        _refuse_connected(bottle)
+        refuse_in_refill(bottle)
         place = standing.custody.place if standing.custody else None
         if place is not None and place.kind == "quarantine" and not reason.strip():
             raise NotReady(
@@ -131,6 +137,16 @@ def hand_over(
                 field="reason",
             )
         weighed = standing.weighing
+        if kind == "test" and standing.ownership is not None and standing.ownership.kind == "supplier":
+            raise NotReady(
+                f"{bottle.code} is the supplier's: it isn't tested here, it's swapped. Return it to the supplier.",
+                code="suppliers bottle", field="kind",
+            )
+        if kind == "test" and weighed is None and not reason.strip():
+            raise NotReady(
+                f"Nobody weighed {bottle.code}, so what it holds isn't known. Weigh it, or say how the test house was told.",
+                code="contents not stated", field="reason",
+            )
         if limit_g is not None and weighed is not None and weighed.net_g > limit_g:
             raise NotReady(
                 f"{bottle.code} holds more than its limit: let nitrous out outdoors and weigh it again at or below the limit.",
@@ -170,6 +186,12 @@ def _refuse_retired(bottle: Bottle) -> None:
             f"{bottle.code} is out of service for good. Its number isn't used again; keep it apart and tell its owner.",
             code="retired",
         )
+
+
+def _refuse_connected(bottle: Bottle) -> None:
+    hangs = Supply.objects.filter(bottle=bottle).select_related("station").first()
+    if hangs is not None:
+        raise NotReady(f"{bottle.code} is connected to {hangs.station}. Take it off there first.", code="on a station")
 
 
 def _where(standing: Standing) -> str:

@@ -5,10 +5,14 @@ from __future__ import annotations
 import uuid
 from typing import Any
 
+from django.contrib import messages
+
 from bottles.forms.custody import CheckInForm, HandOverForm, MoveForm, WantedForm, wanted_words
-from bottles.selectors.judging import judge_bottle
+from bottles.selectors.contents import holding_of
+from bottles.selectors.judging import judge_bottle, rulebook
 from bottles.services import custody
 from bottles.views.of_bottle import BottleActView
+from bottles.views.refill_words import refill_words
 from shop.people.models import User
 
 
@@ -76,22 +80,40 @@ class HandOver(BottleActView):
 
     form_class = HandOverForm
     submit = "Hand over"
-    said = "Handed over."
+    said = ""
+
+    @property
+    def holds(self) -> str:
+        """What is in it, as whoever takes it is told."""
+        holding = holding_of(self.bottle)
+        if holding.grams is None:
+            return "what it holds isn't known: nobody weighed it"
+        words = refill_words(self.request, self.shop)
+        return f"it holds {words.mass(holding.grams, plus_minus_g=holding.error_g or None)} of nitrous ({holding.origin})"
+
+    def form_kwargs(self) -> dict[str, Any]:
+        return {"house": rulebook(self.shop).edition.words["house"]}
 
     def initial(self) -> dict[str, Any]:
         last = self.standing.custody
         return {"to_whom": last.with_whom if last else ""}
 
     def context(self) -> dict[str, Any]:
-        return super().context() | {"heading": f"Hand over {self.bottle.code}"}
+        return super().context() | {
+            "heading": f"Hand over {self.bottle.code}",
+            "intro": f"Tell whoever takes it what is in it: {self.holds}. A bottle for a test is let out and weighed first, "
+            "if the house takes only empty ones.",
+        }
 
     def act(self, form: HandOverForm, person: User, key: uuid.UUID) -> str:
-        data = form.cleaned_data
+        data, holds = form.cleaned_data, self.holds
         custody.hand_over(
             key=key, person=person, bottle=self.bottle, kind=data["kind"], to_whom=data["to_whom"], car=data["car"],
             limit_g=judge_bottle(self.bottle, shop=self.shop).limit.grams, happened_at=data["happened_at"],
             reason=data["reason"],
         )
+        went = dict(form.fields["kind"].choices)[data["kind"]]  # type: ignore[attr-defined]
+        messages.success(self.request, f"{self.bottle.code} went {went}; {holds}.")
         return self.bottle.get_absolute_url()
 
 

@@ -12,7 +12,19 @@ from bottles.models import Custody, Standing
 from bottles.services import custody
 from shop.base import clock
 from shop.base.errors import AlreadyDone, NotReady
-from tests.factories import BottleFactory, PlaceFactory
+from tests.factories import (
+    BottleFactory,
+    CarFactory,
+    CustomerFactory,
+    DecisionFactory,
+    PlaceFactory,
+    RefillFactory,
+    StationFactory,
+    SupplyFactory,
+    owned,
+    placed,
+    weighed,
+)
 
 pytestmark = pytest.mark.django_db
 
@@ -134,3 +146,86 @@ def test_a_double_click_on_the_page_is_answered_with_the_bottle(shop: Any, front
     assert first.status_code == second.status_code == 302
     assert first.url == second.url == f"/b/{bottle.code}"
     assert Custody.objects.filter(bottle=bottle).count() == 1
+
+
+# --- out of the shop ------------------------------------------------------------------------------
+
+
+def handed(client: Any, bottle: Any, **typed: Any) -> Any:
+    data = {"form_key": str(uuid.uuid4()), "kind": "out", "to_whom": "R. Quill", "told": "on"} | typed
+    return client.post(f"/b/{bottle.code}/hand-over", data)
+
+
+@pytest.fixture
+def known(shop: Any) -> Any:
+    """A customer's bottle that is in and holds 1,000 g by the scale."""
+    bottle = BottleFactory(code="T-0412", last_held="nitrous")
+    placed(owned(bottle, CustomerFactory()))
+    weighed(bottle, gross_g=7_420, tare_g=6_420)
+    return bottle
+
+
+@pytest.mark.parametrize(
+    ("kind", "state"), [("out", "handed over"), ("loan", "lent"), ("test", "at the test house"), ("car", "on car 27")]
+)
+def test_from_its_page_a_bottle_goes_out_in_each_way_and_its_place_is_known(
+    known: Any, front_desk: Any, client_of: Any, kind: str, state: str
+) -> None:
+    desk = client_of(front_desk)
+    page = desk.get("/b/T-0412/hand-over").content.decode()
+    assert "it holds 2.2 ±0.1 lb of nitrous (weighed)" in page  # 1000 g = 2.205 lb, ±28 g = 0.06 lb, up
+    car = CarFactory(number="27").pk if kind == "car" else ""
+    answer = handed(desk, known, kind=kind, car=car)
+    assert answer.status_code == 302, answer.context["form"].errors
+    last = Custody.objects.latest("id")
+    assert (last.kind, last.is_in, last.with_whom) == (kind, False, "R. Quill")
+    assert "it holds 2.2 ±0.1 lb of nitrous" in desk.get("/b/T-0412").content.decode()
+    rows = {row["code"]: row["where"] for row in desk.get("/bottles/").context["rows"]}
+    assert rows["T-0412"] == state
+
+
+def test_the_word_for_the_test_house_is_the_rule_sets(known: Any, shop: Any, front_desk: Any, client_of: Any) -> None:
+    assert "to the retester" in client_of(front_desk).get("/b/T-0412/hand-over").content.decode()
+    shop.country = "ADR"
+    shop.save()
+    assert "to the test house" in client_of(front_desk).get("/b/T-0412/hand-over").content.decode()
+
+
+def test_to_the_test_house_its_contents_are_stated(shop: Any, front_desk: Any, client_of: Any) -> None:
+    bottle = placed(owned(BottleFactory()))
+    answer = handed(client_of(front_desk), bottle, kind="test")
+    assert answer.status_code == 409 and answer.context["form"].has_error("reason", "contents not stated")
+    answer = handed(client_of(front_desk), bottle, kind="test", reason="valve seized; tag says contents unknown")
+    assert answer.status_code == 302 and Custody.objects.latest("id").kind == "test"
+
+
+def test_the_suppliers_bottle_is_swapped_and_never_sent_to_a_test(shop: Any, front_desk: Any, client_of: Any) -> None:
+    bottle = placed(owned(BottleFactory(use="supply"), supplier="Harrow Trade Supply"))
+    weighed(bottle, gross_g=48_500, tare_g=33_500)
+    answer = handed(client_of(front_desk), bottle, kind="test")
+    assert answer.status_code == 409 and answer.context["form"].has_error("kind", "suppliers bottle")
+    typed = {"form_key": str(uuid.uuid4()), "supplier": "Harrow Trade Supply"}
+    assert client_of(front_desk).post(f"/b/{bottle.code}/return", typed).status_code == 302
+    assert Custody.objects.latest("id").kind == "supplier"
+
+
+def test_a_supply_bottle_on_a_station_goes_nowhere(shop: Any) -> None:
+    supply = SupplyFactory(station=StationFactory())
+    elsewhere = PlaceFactory()
+    for going in (
+        lambda: gave(supply.bottle),
+        lambda: custody.move(key=uuid.uuid4(), person=None, bottle=supply.bottle, place=elsewhere),
+    ):
+        with pytest.raises(NotReady) as refusal:
+            going()
+        assert refusal.value.code == "on a station"
+    assert Standing.objects.get(bottle=supply.bottle).is_in
+
+
+def test_a_supply_bottle_that_feeds_an_open_refill_stays(shop: Any) -> None:
+    source = placed(owned(BottleFactory(use="supply")))
+    RefillFactory(decision=DecisionFactory(bottle=placed(owned(BottleFactory()))), source=source)
+    with pytest.raises(NotReady) as refusal:
+        gave(source)
+    assert refusal.value.code == "open refill"
+    assert Standing.objects.get(bottle=source).is_in
