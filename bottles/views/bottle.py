@@ -32,6 +32,7 @@ from shop.cars.models import Car
 
 LATEST = 8  # acts on the bottle's own page
 LONGEST_SEARCH = 120
+WITHOUT_A_REFILL = frozenset({"bottles:weigh", "bottles:fill", "bottles:hand_over"})
 
 
 @allow(EVERYONE, room="counter")
@@ -42,6 +43,7 @@ def bottle(request: HttpRequest, code: str) -> HttpResponse:
     request.shop = shop  # type: ignore[attr-defined]
     standing = standing_of(found)
     words = words_for(request, shop)
+    told = drawn(request, found, standing, shop)
     acts = acts_on(found).select_related("person")[: LATEST + 1]
     rows = history_rows(list(acts), words, shop)
     context = {
@@ -51,13 +53,13 @@ def bottle(request: HttpRequest, code: str) -> HttpResponse:
         "where": where_words(standing.custody),
         "wanted": standing.custody.wanted if standing.custody and standing.is_in else "",
         "cars": _cars(standing),
-        "actions": actions(found, standing, request.user.roles),  # type: ignore[union-attr]
+        "actions": actions(found, standing, request.user.roles, told),  # type: ignore[union-attr]
         "answers": ANSWERS,
         "sections": [template for template, _ in SECTIONS if template not in ANSWERS],
         "acts": rows[:LATEST],
         "more": len(rows) > LATEST,
     }
-    return render(request, "bottles/bottle.html", drawn(request, found, standing, shop) | context)
+    return render(request, "bottles/bottle.html", told | context)
 
 
 @allow(EVERYONE, room="counter")
@@ -115,21 +117,31 @@ def history_rows(acts: list[Act], words: Words, shop: Shop) -> list[dict[str, An
     ]
 
 
-def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role]) -> list[dict[str, Any]]:
-    """What this person may do with the bottle now, the likeliest first."""
+def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role], told: dict[str, Any]) -> list[dict[str, Any]]:
+    """What this person may do with the bottle now, the likeliest drawn heavier."""
     found: list[dict[str, Any]] = []
-    weighed = standing.is_in and not came_in_unweighed(standing)
+    likely = likeliest(standing, may_fill=told["may_fill"])
     for action in ACTIONS:
         if bottle.retired_at is not None or not action.roles & roles or action.needs_in not in (None, standing.is_in):
             continue
+        if told["refilled_now"] and action.page in WITHOUT_A_REFILL:
+            continue  # its own refill takes the weights, and holds it until it's closed
         try:
             url = reverse(action.page, args=[bottle.code])
         except NoReverseMatch:
             continue
-        done = action.page == "bottles:weigh" and weighed
-        heavier = action.likely and not done and not any(each["main"] for each in found)
-        found.append({"words": action.words, "url": url, "main": heavier})
+        found.append({"words": action.words, "url": url, "main": action.page == likely and not told["refilled_now"]})
+    if told["refilled_now"] and bottle.retired_at is None:
+        url = next(row["url"] for row in told["reasons"] if row["code"] == "in-open-refill")
+        found.insert(0, {"words": "Go on with its refill", "url": url, "main": True})
     return found
+
+
+def likeliest(standing: Standing, *, may_fill: bool) -> str:
+    """The page of what most likely comes next: a bottle that came in is weighed before it's filled."""
+    if not standing.is_in:
+        return "bottles:check_in"
+    return "bottles:fill" if may_fill and not came_in_unweighed(standing) else "bottles:weigh"
 
 
 def _line(bottle: Bottle, standing: Standing, words: Words) -> list[str]:

@@ -18,6 +18,7 @@ from bottles.rules.conditions import label_of
 from bottles.rules.fitness import Judgement
 from bottles.selectors.filling_offers import Offered, readings_offered, supplies_offered
 from bottles.selectors.judging import Rulebook, rulebook
+from bottles.selectors.register import standing_of
 from bottles.selectors.scales import scale_checked
 from bottles.services.forecasting import Asked, work_out
 from bottles.services.refilling import Opening, look_items, open_refill, refuse_source
@@ -25,7 +26,9 @@ from bottles.services.scales import check_scale
 from bottles.views.forecast_words import forecast_context, stop_figure
 from bottles.views.judgement import verdict
 from bottles.views.of_bottle import BottleActView, bottle_or_404
+from bottles.views.reason_rows import reason_rows
 from bottles.views.refill_words import RefillWords, refill_words
+from bottles.views.wording import words_for
 from shop.base.errors import AlreadyDone, Refusal
 from shop.base.models import Shop
 from shop.base.permissions import EVERYONE, allow
@@ -35,7 +38,8 @@ from shop.physics.errors import NoSolution, PhysicsError
 CAUTIONS = (
     "Nitrous is an oxidiser and is heavier than air: doors open, no oil or grease on any fitting, no flame, no inhaling.",
     "Liquid freezes skin at once: gloves and eye protection on. The bottle stands free on its scale and can't fall.",
-    "By weight, never by pressure; never above the limit. Nothing is warmed above 52\N{NO-BREAK SPACE}°C (125\N{NO-BREAK SPACE}°F).",
+    "By weight, never by pressure; never above the limit. "
+    "Nothing is warmed above 52\N{NO-BREAK SPACE}°C (125\N{NO-BREAK SPACE}°F).",
 )
 
 
@@ -132,10 +136,13 @@ class Fill(BottleActView):
     def context(self) -> dict[str, Any]:
         judgement = self.judged[self.bottle]
         answer = verdict(judgement)
-        reasons = [one for one in judgement.reasons if "filling" in one.about and one.severity not in ("explains", "warns")]
+        about = [one for one in judgement.reasons if "filling" in one.about and one.severity not in ("explains", "warns")]
+        reasons = [one for one in about if one.code not in ("look-owed", "star-check-owed")]
         return {
             "bottle": self.bottle, "cautions": CAUTIONS, "kind": answer.kind, "word": answer.word,
-            "reasons": [one for one in reasons if one.code not in ("look-owed", "star-check-owed")],
+            "reasons": (
+                reason_rows(reasons, self.bottle, standing_of(self.bottle), words_for(self.request, self.shop)) if reasons else []
+            ),
             "refused": judgement.may_be_filled in ("no", "unknown"), "has_supplies": self.supply is not None,
         }  # fmt: skip
 

@@ -10,6 +10,7 @@ from django.http import HttpRequest
 from bottles.models import Bottle, Standing
 from bottles.rules.fitness import Judgement
 from bottles.selectors.judging import judge_many, rulebook
+from bottles.views.reason_rows import IN_THE_SHOP, reason_rows
 from bottles.views.wording import Words, words_for
 from shop.base.models import Shop
 from shop.rules import month as months
@@ -61,8 +62,10 @@ def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop
         "kind": answer.kind,
         "word": answer.word,
         "lines": [line for line in lines if line],
-        "reasons": decides,
-        "others": [reason for reason in judgement.reasons if reason not in decides],
+        "may_fill": all(reason.code in IN_THE_SHOP for reason in decides if reason.severity != "warns"),
+        "refilled_now": any(reason.code == "in-open-refill" for reason in decides),
+        "reasons": reason_rows(decides, bottle, standing, words),
+        "others": reason_rows((one for one in judgement.reasons if one not in decides), bottle, standing, words),
         "limits": [
             [figure.label, words.mass(figure.grams), figure.origin, figure.source.citation]
             for figure in sorted(judgement.limit.candidates, key=lambda each: each.grams)
@@ -75,12 +78,12 @@ def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop
 
 
 def limit_line(judgement: Judgement, words: Words) -> str:
-    """Up to how much it may be filled, and what binds."""
+    """How much it may hold, and what binds."""
     limit = judgement.limit
     if limit.grams is None:
         return "No fill limit can be worked out."
     binding = next(figure for figure in limit.candidates if figure.code == limit.binds)
-    return f"Up to {words.mass(limit.grams)} of nitrous: {binding.label} ({binding.source.citation})."
+    return f"Limit {words.mass(limit.grams)} of nitrous: {binding.label} ({binding.source.citation})."
 
 
 def due_line(judgement: Judgement, words: Any) -> str:

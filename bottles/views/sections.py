@@ -19,8 +19,8 @@ from shop.base.permissions import EVERYONE, Role
 SECTIONS: list[tuple[str, str]] = [
     ("bottles/_judgement.html", "bottles.views.judgement.section"),
     ("bottles/_contents.html", "bottles.views.contents.section"),
-    ("bottles/_register.html", "bottles.views.register_section.section"),
     ("bottles/_refills.html", "bottles.views.refills.section"),
+    ("bottles/_register.html", "bottles.views.register_section.section"),
 ]
 
 # The answer stands above what can be done; all else below.
@@ -35,13 +35,12 @@ class Action:
     words: str
     roles: frozenset[Role] = EVERYONE
     needs_in: bool | None = None  # True: only while it's in the shop; False: only while it's out
-    likely: bool = False  # the first likely one that can be done is drawn heavier
 
 
 ACTIONS: list[Action] = [
-    Action("bottles:check_in", "Check in", needs_in=False, likely=True),
-    Action("bottles:weigh", "Weigh", likely=True),
-    Action("bottles:fill", "Forecast and fill", needs_in=True, likely=True),
+    Action("bottles:check_in", "Check in", needs_in=False),
+    Action("bottles:weigh", "Weigh"),
+    Action("bottles:fill", "Forecast and fill", needs_in=True),
     Action("bottles:hand_over", "Hand over", needs_in=True),
     Action("bottles:move", "Move", needs_in=True),
     Action("bottles:condition", "Note damage"),
