@@ -141,7 +141,7 @@ class FillForm(ReadingsForm):
     bottle_weight = MassField(
         label="The bottle to fill weighs",
         error_messages={"required": "Weigh the bottle with everything of its tare list on it."},
-        widget=forms.TextInput(attrs={"autocomplete": "off", "autofocus": True}),
+        widget=forms.TextInput(attrs={"autocomplete": "off", "data-focus": True}),
     )
     wet = forms.BooleanField(label="It's wet or frosted", required=False)
     start = forms.ChoiceField(label="How it starts", choices=STARTS, initial=WEIGHED)

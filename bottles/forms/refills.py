@@ -21,7 +21,7 @@ class WeighForm(ActForm):
 
     gross = MassField(
         label="The scale reads", error_messages={"required": "Type what the scale reads."},
-        widget=forms.TextInput(attrs={"autocomplete": "off", "autofocus": True}),
+        widget=forms.TextInput(attrs={"autocomplete": "off", "data-focus": True}),
     )
     line = forms.ChoiceField(label="The line is", choices=LINE, widget=forms.RadioSelect, initial="off")
     ended_by = forms.ChoiceField(

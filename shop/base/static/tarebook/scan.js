@@ -23,6 +23,9 @@
       errors.focus();
     } else if (root.querySelector('[data-scan="main"]')) {
       focusField();
+    } else {
+      // Ready to type, but what stands above it (a caution, an overfull bottle) isn't scrolled away.
+      root.querySelector("[data-focus]")?.focus({ preventScroll: true });
     }
   };
 
