@@ -1,4 +1,4 @@
-"""What the Counter shows: refills going on, bottles in the shop, supply bottles on the stations.
+"""What the Counter shows: bottles in the shop, supply bottles on the stations.
 
 Each in a fixed number of queries.
 """
@@ -9,19 +9,9 @@ from collections.abc import Sequence
 
 from django.db.models import F, QuerySet
 
-from bottles.models import Custody, Refill, Standing, Station, Supply
+from bottles.models import Custody, Standing, Station, Supply
 
 SHOWN = 100  # bottles on the counter's own list; more are on the bottles page
-
-
-def open_refills() -> QuerySet[Refill]:
-    """Return the refills that are open, the oldest first."""
-    return (
-        Refill.objects.filter(closed_at__isnull=True)
-        .select_related("bottle", "station__scale")
-        .prefetch_related("draws__source")
-        .order_by("station__name", "opened_at")
-    )
 
 
 def waiting() -> Sequence[Standing]:
@@ -56,20 +46,26 @@ def came_in_unweighed(standing: Standing) -> bool:
 
 
 def supplies() -> Sequence[Supply]:
-    """Return the supply bottles on the stations in use, with what was last weighed of them."""
+    """Return the supply bottles on the stations in use, each with its books and what was last weighed of it."""
+    weighing = "bottle__standing__weighing"
     return list(
         Supply.objects.filter(station__active=True)
-        .select_related("station", "bottle__standing__weighing", "bottle__account")
+        .annotate(
+            code=F("bottle__code"), station_name=F("station__name"), books_g=F("bottle__account__balance_g"),
+            net_g=F(f"{weighing}__net_g"), error_g=F(f"{weighing}__error_g"),
+        )
         .order_by("station__name", "bottle__code")
-    )
+    )  # fmt: skip
 
 
-def stations() -> Sequence[Station]:
-    """Return the stations in use."""
-    return list(Station.objects.filter(active=True).order_by("name"))
+def has_stations() -> bool:
+    """Return whether any station is in use."""
+    return Station.objects.filter(active=True).exists()
 
 
 def _standings() -> QuerySet[Standing]:
-    return Standing.objects.select_related(
-        "bottle", "ownership__customer", "custody__place", "custody__car", "weighing"
-    )
+    """Standings with what is judged, and by name what is shown beside that: a row for each, no more objects."""
+    return Standing.objects.select_related("bottle", "ownership", "weighing").annotate(
+        customer=F("ownership__customer__name"), place=F("custody__place__name"), wanted=F("custody__wanted"),
+        promised_at=F("custody__promised_at"),
+    )  # fmt: skip

@@ -126,4 +126,4 @@ def last_sources(refills: Iterable[Refill]) -> dict[int, Bottle]:
 
 
 def _listed() -> QuerySet[Refill]:
-    return Refill.objects.select_related("bottle", "station__scale", "decision", "person")
+    return Refill.objects.select_related("bottle", "station__scale")
