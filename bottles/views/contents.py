@@ -13,9 +13,9 @@ from django.utils.safestring import mark_safe
 from bottles.models import Bottle, Line, Standing, Weighing
 from bottles.selectors.contents import holding_of
 from bottles.selectors.course import Course, course_over_time
-from bottles.selectors.judging import judge_bottle
 from bottles.views.holding_words import account_words, at, pressure_rows, tell
 from bottles.views.refill_words import RefillWords, refill_words
+from bottles.views.sections import Seen
 from shop.base import clock
 from shop.base.models import Shop
 from shop.base.permissions import MANAGERS
@@ -28,11 +28,12 @@ from shop.physics.units import value_in
 LATEST = 8  # weighings and movements listed on the page; the chart shows more
 
 
-def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop) -> dict[str, Any]:
+def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     """Contents with ±, the chart and its table, weighings with their strikes, movements."""
+    bottle, standing, shop = seen.bottle, seen.standing, seen.shop
     words = refill_words(request, shop)
     holding = holding_of(bottle)
-    limit = judge_bottle(bottle, shop=shop).limit.grams
+    limit = seen.judgement.limit.grams
     course = course_over_time(bottle)
     manager = bool(MANAGERS & request.user.roles)  # type: ignore[union-attr]
     told: dict[str, Any] = {

@@ -7,12 +7,10 @@ from typing import Any
 
 from django.http import HttpRequest
 
-from bottles.models import Bottle, Standing
 from bottles.rules.fitness import Judgement
-from bottles.selectors.judging import judge_many, rulebook
 from bottles.views.reason_rows import IN_THE_SHOP, reason_rows
+from bottles.views.sections import Seen
 from bottles.views.wording import Words, words_for
-from shop.base.models import Shop
 from shop.rules import month as months
 from shop.rules.reason import Reason
 
@@ -50,12 +48,11 @@ def verdict(judgement: Judgement) -> Verdict:
     return FILLING[judgement.may_be_filled]
 
 
-def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop) -> dict[str, Any]:
+def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     """The decision's frame, the limit with every figure behind it, what wasn't judged."""
-    judgement = judge_many([bottle], shop=shop)[bottle.pk]
-    words = words_for(request, shop)
+    bottle, standing, book, judgement = seen.bottle, seen.standing, seen.book, seen.judgement
+    words = words_for(request, seen.shop)
     answer = verdict(judgement)
-    book = rulebook(shop)
     decides = [reason for reason in judgement.reasons if reason.severity != "explains" and "filling" in reason.about]
     lines = (limit_line(judgement, words), due_line(judgement, book.edition.words), EMPTYING[judgement.may_be_emptied])
     return {

@@ -13,14 +13,15 @@ from django.urls import reverse
 from django.utils.functional import cached_property
 
 from bottles.forms.refills import AnotherSupplyForm, CloseForm, WaitForm, WeighForm
-from bottles.models import Bottle, Refill, Standing, Supply
+from bottles.models import Bottle, Refill, Supply
 from bottles.selectors import refills as selected
 from bottles.selectors.filling_offers import Offered, readings_offered
 from bottles.services import refill_steps as steps
 from bottles.services.forecasting import Asked, work_out
-from bottles.views.filling import Judged, asked_for, chosen_supply, forecast_part
+from bottles.views.filling import CAUTIONS, Judged, asked_for, chosen_supply, forecast_part
 from bottles.views.refill_rows import page_context, refill_rows, section_rows
 from bottles.views.refill_words import refill_words
+from bottles.views.sections import Seen
 from shop.base.errors import Refusal
 from shop.base.models import Shop
 from shop.base.paging import page_of
@@ -102,7 +103,7 @@ class RefillPage(OfRefill):
 
     def context(self) -> dict[str, Any]:
         words = refill_words(self.request, self.shop)
-        return super().context() | page_context(self.refill, words, self.shop)
+        return super().context() | {"cautions": CAUTIONS} | page_context(self.refill, words, self.shop)
 
 
 class Wait(OfRefill):
@@ -224,8 +225,8 @@ def receipt(request: HttpRequest, pk: int) -> HttpResponse:
     return render(request, "bottles/receipt.html", context | page_context(refill, words, shop))
 
 
-def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop) -> dict[str, Any]:
+def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     """The bottle's last refills, forecast against what came."""
-    words = refill_words(request, shop)
-    found = list(selected.refills_of(bottle)[: LATEST + 1])
-    return {"refills": section_rows(found[:LATEST], words, shop), "more_refills": len(found) > LATEST}
+    words = refill_words(request, seen.shop)
+    found = list(selected.refills_of(seen.bottle)[: LATEST + 1])
+    return {"refills": section_rows(found[:LATEST], words, seen.shop), "more_refills": len(found) > LATEST}

@@ -13,15 +13,16 @@ from bottles.rules.lying import how_it_lies
 from bottles.rules.marks import read_mark
 from bottles.selectors.missing import what_is_missing
 from bottles.selectors.register import conditions_of, owner_words, stamps_of, tares_of
+from bottles.views.sections import Seen
 from bottles.views.wording import Words, words_for
 from shop.base import clock
-from shop.base.models import Shop
 from shop.base.permissions import BENCH, DESK, MANAGERS
 from shop.rules import month as months
 
 
-def section(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop) -> dict[str, Any]:
+def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     """What is missing, tare, stamps, conditions, owner, how it lies."""
+    bottle, standing, shop = seen.bottle, seen.standing, seen.shop
     words = words_for(request, shop)
     stamps = stamps_of(bottle)
     counted = {stamp.kind for stamp in stamps if not hasattr(stamp, "strike")}

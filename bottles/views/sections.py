@@ -1,7 +1,8 @@
 """The sections of a bottle's page, in order: a template part, and the function that fills it.
 
-Each function takes (request, bottle, standing, shop) and returns the variables of its part. They
-are imported when the page is drawn, so that a section may belong to any module of views.
+Each function takes (request, seen) and returns the variables of its part; what several of them need
+is read once and stands in `seen`. They are imported when the page is drawn, so that a section may
+belong to any module of views.
 """
 
 from __future__ import annotations
@@ -13,6 +14,8 @@ from django.http import HttpRequest
 from django.utils.module_loading import import_string
 
 from bottles.models import Bottle, Standing
+from bottles.rules.fitness import Judgement
+from bottles.selectors.judging import Rulebook, rulebook
 from shop.base.models import Shop
 from shop.base.permissions import EVERYONE, Role
 
@@ -25,6 +28,17 @@ SECTIONS: list[tuple[str, str]] = [
 
 # The answer stands above what can be done; all else below.
 ANSWERS = [template for template, _ in SECTIONS if template == "bottles/_judgement.html"]
+
+
+@dataclass(frozen=True, slots=True)
+class Seen:
+    """The bottle of the page, what stands of it, and how it's judged."""
+
+    bottle: Bottle
+    standing: Standing
+    shop: Shop
+    book: Rulebook
+    judgement: Judgement
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,9 +63,11 @@ ACTIONS: list[Action] = [
 
 def drawn(request: HttpRequest, bottle: Bottle, standing: Standing, shop: Shop) -> dict[str, Any]:
     """The variables of every section of the page, each under a name of its own."""
+    book = rulebook(shop)
+    seen = Seen(bottle, standing, shop, book, book.judge_all([bottle], {bottle.pk: standing})[bottle.pk])
     context: dict[str, Any] = {}
     for template, function in SECTIONS:
-        told = import_string(function)(request, bottle, standing, shop)
+        told = import_string(function)(request, seen)
         if doubled := told.keys() & context.keys():
             raise ValueError(f"{template} and a section before it both set {', '.join(sorted(doubled))}")
         context |= told
