@@ -1,6 +1,7 @@
 """The rules of the house that a reader would overlook."""
 
 import ast
+import importlib
 import os
 import re
 import subprocess
@@ -194,17 +195,52 @@ def test_every_app_of_ours_has_its_layer():
     assert ours <= set(APPS_FROM_BELOW)
 
 
+# Errors of the machinery, not of a person's input: whoever opens the shop or runs its jobs meets them.
+MACHINERY = {"CannotOpen", "JobCancelled", "LeaseLost", "FactChanged", "EditionError"}
+
+
 def walk(error: type[Exception]) -> Iterator[type[Exception]]:
     for below in error.__subclasses__():
         yield below
         yield from walk(below)
 
 
+def errors_of_ours() -> dict[str, type[Exception]]:
+    """Every class of error that a module of ours defines, by its whole name."""
+    found = {}
+    for path in python_files("shop", "bottles", "tuning"):
+        if path.name == "wsgi.py" or "migrations" in path.parts:
+            continue
+        name = relative(path).removesuffix(".py").removesuffix("/__init__").replace("/", ".")
+        for thing in vars(importlib.import_module(name)).values():
+            if isinstance(thing, type) and issubclass(thing, Exception) and thing.__module__ == name:
+                found[f"{name}.{thing.__name__}"] = thing
+    return found
+
+
+def test_every_error_of_ours_belongs_to_a_tree():
+    from bottles.rules.stamps import StampError
+    from shop.base.errors import Refusal
+    from shop.physics.errors import PhysicsError
+
+    found = errors_of_ours()
+    assert len(found) > 20
+    roots = (Refusal, PhysicsError, StampError)
+    loose = {
+        name for name, error in found.items() if not issubclass(error, roots) and name.rpartition(".")[2] not in MACHINERY
+    }
+    assert loose == set()
+
+
 def test_each_refusal_has_a_code_of_its_own_and_a_sentence():
     from shop.base.errors import Refusal
     from shop.physics.errors import PhysicsError
 
+    ours = errors_of_ours()  # imports every module, so that the trees are whole
     for root in (Refusal, PhysicsError):
-        codes = [root.code] + [below.code for below in walk(root)]
+        below = [error for error in ours.values() if issubclass(error, root)]
+        assert set(below) == {root, *walk(root)}
+        codes = [error.code for error in below]
         assert len(codes) == len(set(codes))
-        assert all(below.__doc__ and below.__doc__.strip().endswith(".") for below in walk(root))
+        assert all("code" in vars(error) for error in below)
+        assert all(error.__doc__ and error.__doc__.strip().endswith(".") for error in below)

@@ -81,10 +81,11 @@ def want(
 ) -> Custody:
     """Change what a bottle that is in waits for; empty says that it's done.
 
-    Raises NotReady where it isn't in.
+    Raises NotReady where it isn't in, or retired.
     """
     with acts.begin(key=key, person=person, code="bottle.wanted", subject=f"bottle:{bottle.code}") as act:
         lock([bottle])
+        _refuse_retired(bottle)
         standing = restate(bottle)
         last = standing.custody
         if last is None or not standing.is_in:
