@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import Any
 
 from django import forms
@@ -44,9 +45,9 @@ class OnScaleForm(ActForm):
     )
     wet = forms.BooleanField(label="Wet or frosted", required=False, help_text=WET_HINT)
 
-    def __init__(self, *args: Any, **kwargs: Any) -> None:
+    def __init__(self, *args: Any, scales: Sequence[Checked] | None = None, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
-        checked = {one.scale.pk: one for one in checked_scales(self.shop)}
+        checked = {one.scale.pk: one for one in (checked_scales(self.shop) if scales is None else scales)}
         if len(checked) == 1:
             self.fields["scale"].initial = next(iter(checked))
         self.fields["scale"].label_from_instance = lambda scale: _told(checked.get(scale.pk), scale)  # type: ignore[attr-defined]

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 
-from django.db.models import F, Q, Window
-from django.db.models.functions import RowNumber
+from django.db.models import Q
 
-from bottles.models import Account, Bottle, Line, Weighing
+from bottles.models import Account, Bottle, Line, Standing, Weighing
 from bottles.physics.weighing import net_uncertainty
 
 
@@ -36,22 +35,17 @@ class Holding:
         return self.weighing.happened_at if self.weighing else None
 
 
-def holding_of(bottle: Bottle) -> Holding:
-    """Return what one bottle holds now."""
-    return holdings([bottle])[bottle.pk]
+def holding_of(bottle: Bottle, standing: Standing | None = None) -> Holding:
+    """Return what one bottle holds now; whoever has just read its standing hands that over."""
+    return holdings([bottle], [standing] if standing else None)[bottle.pk]
 
 
-def holdings(bottles: Sequence[Bottle]) -> dict[int, Holding]:
+def holdings(bottles: Sequence[Bottle], standings: Iterable[Standing] | None = None) -> dict[int, Holding]:
     """Return what bottles hold now, by key: three queries, however many they are."""
     keys = [bottle.pk for bottle in bottles]
-    newest = Window(RowNumber(), partition_by=F("bottle"), order_by=[F("happened_at").desc(), F("id").desc()])
-    weighings = {
-        row.bottle_id: row
-        for row in Weighing.objects.filter(bottle__in=keys, strike__isnull=True)
-        .select_related("scale")
-        .annotate(place=newest)
-        .filter(place=1)
-    }
+    if standings is None:
+        standings = Standing.objects.filter(pk__in=keys).select_related("weighing__scale")
+    weighings = {one.pk: one.weighing for one in standings if one.weighing}
     books = dict(Account.objects.filter(bottle__in=keys).values_list("bottle_id", "balance_g"))
     since = _since(weighings, keys)
     return {key: _holding(weighings.get(key), books.get(key), since.get(key, (0, 0))) for key in keys}

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from datetime import datetime
 from typing import Any
 
@@ -10,9 +10,9 @@ from django.http import HttpRequest
 from django.urls import reverse
 from django.utils.safestring import mark_safe
 
-from bottles.models import Bottle, Line, Standing, Weighing
+from bottles.models import Account, Bottle, Line, Movement, Standing, Weighing
 from bottles.selectors.contents import holding_of
-from bottles.selectors.course import Course, course_over_time
+from bottles.selectors.course import Course, Moved, Weighed, course_over_time, others_of
 from bottles.views.holding_words import account_words, at, pressure_rows, tell
 from bottles.views.refill_words import RefillWords, refill_words
 from bottles.views.sections import Seen
@@ -25,6 +25,7 @@ from shop.charts.table import to_rows
 from shop.people.models import full_name
 from shop.physics.units import value_in
 
+STEPS, KINDS, ORIGINS = dict(Weighing.STEPS), dict(Movement.KINDS), dict(Line.ORIGINS)
 LATEST = 8  # weighings and movements listed on the page; the chart shows more
 
 
@@ -32,16 +33,18 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     """Contents with ±, the chart and its table, weighings with their strikes, movements."""
     bottle, standing, shop = seen.bottle, seen.standing, seen.shop
     words = refill_words(request, shop)
-    holding = holding_of(bottle)
+    holding = holding_of(bottle, standing)
     limit = seen.judgement.limit.grams
     course = course_over_time(bottle)
+    moved = course.lines[: -LATEST - 1 : -1]
+    others = others_of(bottle, moved)
     manager = bool(MANAGERS & request.user.roles)  # type: ignore[union-attr]
     told: dict[str, Any] = {
         "told": tell(holding, limit, words, shop),
         "pressure_head": ["Temperature", "Gauge"],
         "pressures": pressure_rows(holding, bottle, words),
         "weighings": [_weighing(row, words, shop) for row in course.weighings[: -LATEST - 1 : -1]],
-        "moves": [_move(line, bottle, words, shop, linked=manager) for line in course.lines[: -LATEST - 1 : -1]],
+        "moves": [_move(line, bottle, others, words, shop, linked=manager) for line in moved],
         "acts": list(_acts(bottle, standing, manager)),
         "chart": None,
     }
@@ -86,30 +89,31 @@ def _chart(bottle: Bottle, course: Course, limit: int | None, words: RefillWords
     )
 
 
-def _weighing(row: Weighing, words: RefillWords, shop: Shop) -> dict[str, Any]:
+def _weighing(row: Weighed, words: RefillWords, shop: Shop) -> dict[str, Any]:
     return {
         "when": at(row.happened_at, shop),
         "net": words.mass(row.net_g, plus_minus_g=row.error_g),
         "typed": row.typed,
-        "scale": row.scale.name,
-        "step": row.get_step_display(),
+        "scale": row.scale,
+        "step": STEPS[row.step],
         "wet": row.wet,
-        "who": full_name(row.act.person),
-        "strike_url": reverse("bottles:strike_weighing", args=[row.pk]),
+        "who": row.person or full_name(None),
+        "strike_url": reverse("bottles:strike_weighing", args=[row.key]),
     }
 
 
-def _move(line: Line, bottle: Bottle, words: RefillWords, shop: Shop, *, linked: bool) -> dict[str, Any]:
-    out = line.source.bottle_id == bottle.pk
-    other = line.target if out else line.source
-    movement = line.movement
-    undone = movement.reverses_id is None and hasattr(movement, "reversal")
+def _move(
+    line: Moved, bottle: Bottle, others: Mapping[int, Account], words: RefillWords, shop: Shop, *, linked: bool
+) -> dict[str, Any]:
+    came = line.own == bottle.pk
+    other = others[line.source if came else line.target]
+    undone = line.reverses is None and line.reversed_by is not None
     return {
-        "when": at(movement.happened_at, shop),
-        "what": f"{movement.get_kind_display()}{', reversed' if undone else ''}: {'to' if out else 'from'} {account_words(other)}",
-        "grams": f"{'−' if out else '+'}{words.mass(line.grams)}",
-        "origin": line.get_origin_display(),
-        "who": full_name(movement.act.person),
-        "note": movement.note,
-        "url": reverse("bottles:movement", args=[movement.pk]) if linked else "",
+        "when": at(line.happened_at, shop),
+        "what": f"{KINDS[line.kind]}{', reversed' if undone else ''}: {'from' if came else 'to'} {account_words(other)}",
+        "grams": f"{'+' if came else '−'}{words.mass(line.grams)}",
+        "origin": ORIGINS[line.origin],
+        "who": line.person or full_name(None),
+        "note": line.note,
+        "url": reverse("bottles:movement", args=[line.movement]) if linked else "",
     }

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from django.http import Http404
+from django.utils.functional import cached_property
 
 from bottles.models import Bottle, Standing
 from bottles.services.standing import restate
@@ -31,10 +32,11 @@ class BottleActView(ActView):
     def find(self, **kwargs: Any) -> None:
         self.bottle = bottle_or_404(kwargs["code"])
 
-    @property
+    @cached_property
     def standing(self) -> Standing:
-        """The bottle's standing, worked out where it's missing."""
-        found = Standing.objects.filter(bottle=self.bottle).select_related("custody__place", "tare", "weighing").first()
+        """The bottle's standing as the page was asked for, worked out where it's missing."""
+        named = ("ownership", "custody__place", "tare", "weighing__scale")
+        found = Standing.objects.filter(bottle=self.bottle).select_related(*named).first()
         return found or restate(self.bottle)
 
     @property

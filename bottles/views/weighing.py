@@ -7,13 +7,14 @@ from typing import Any
 
 from django.contrib import messages
 from django.http import Http404
+from django.utils.functional import cached_property
 
 from bottles.forms.weighing import StrikeWeighingForm, WeighForm
 from bottles.models import Bottle, Weighing
 from bottles.selectors.contents import holding_of
 from bottles.selectors.counter import came_in_unweighed
-from bottles.selectors.judging import judge_bottle
-from bottles.selectors.scales import checked_scales
+from bottles.selectors.judging import rulebook
+from bottles.selectors.scales import Checked, checked_scales
 from bottles.services import weighing
 from bottles.views.holding_words import at, expected_pressure, tell
 from bottles.views.of_bottle import BottleActView
@@ -42,10 +43,18 @@ class Weigh(BottleActView):
             step = "arrival" if came_in_unweighed(self.standing) else "stored"
         return {"scale": scale, "step": step}
 
+    @cached_property
+    def scales(self) -> list[Checked]:
+        """The scales in use with their last checks, for the form and for what stands beside it."""
+        return checked_scales(self.shop)
+
+    def form_kwargs(self) -> dict[str, Any]:
+        return {"scales": self.scales}
+
     def context(self) -> dict[str, Any]:
         words = refill_words(self.request, self.shop)
-        holding = holding_of(self.bottle)
-        limit = judge_bottle(self.bottle, shop=self.shop).limit.grams
+        holding = holding_of(self.bottle, self.standing)
+        limit = rulebook(self.shop).judge_all([self.bottle], {self.bottle.pk: self.standing})[self.bottle.pk].limit.grams
         typed = self.request.GET.get("t", "")[:64]
         expects, trouble = "", ""
         if typed and holding.grams is not None:
@@ -55,7 +64,7 @@ class Weigh(BottleActView):
             except QuantityError as wrong:
                 trouble = wrong.sentence
         tare = self.standing.tare
-        scales = [check_words(checked, self.shop) for checked in checked_scales(self.shop)]
+        scales = [check_words(checked, self.shop) for checked in self.scales]
         return super().context() | {
             "heading": f"Weigh {self.bottle.code}",
             "holds": tell(holding, limit, words, self.shop),
