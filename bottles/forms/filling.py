@@ -66,6 +66,13 @@ def read_off(form: ActForm, station: Station | None) -> None:
                 field.help_text = f"{field.help_text} {said}".strip()
 
 
+# What a forecast waits for, as its page says it; without the first three there is none.
+NEEDED = {
+    "supply": "the supply bottle",
+    "supply_temperature": "the supply bottle's temperature",
+    "bottle_temperature": "the temperature of the bottle to fill",
+    "bottle_weight": "what the bottle to fill weighs",
+}
 READ = frozenset({
     "supply", "gauge", "supply_temperature", "supply_weight", "bottle_temperature", "bottle_weight", "gross", "target", "method",
 })  # fmt: skip
@@ -98,7 +105,7 @@ class ReadingsForm(ActForm):
         self.bottle = bottle
         self.offered = offered
         supply: Any = self.fields["supply"]
-        supply.mass = mass
+        supply.mass = self.mass = mass
         supply.queryset = supplies_offered(bottle, station, but)
         for name, words in offered.ages.items():
             self.fields[name].help_text = words
@@ -131,8 +138,7 @@ class ReadingsForm(ActForm):
     def missing(self) -> list[str]:
         """The readings without which nothing can be worked out."""
         data = getattr(self, "cleaned_data", {})
-        names = ("supply", "supply_temperature", "bottle_temperature")
-        return [str(self.fields[name].label) for name in names if data.get(name) is None]
+        return [NEEDED[name] for name in list(NEEDED)[:3] if data.get(name) is None]
 
 
 class FillForm(ReadingsForm):
@@ -175,10 +181,11 @@ class FillForm(ReadingsForm):
     MORE = ("happened_at", "reason")
 
     def __init__(
-        self, *args: Any, items: Sequence[LookItem], ask_pressure: bool, check_due: str, **kwargs: Any
+        self, *args: Any, items: Sequence[LookItem], ask_pressure: bool, check_due: str, limit_g: int | None = None, **kwargs: Any
     ) -> None:
         super().__init__(*args, **kwargs)
         self.items = items
+        self.limit_g = limit_g
         choices = [(item.code, item.words) for item in items]
         for name in ("look_ok", "look_failed"):
             field: Any = self.fields[name]
@@ -227,6 +234,13 @@ class FillForm(ReadingsForm):
         if both:
             words = "; ".join(item.words for item in self.items if item.code in both)
             self.add_error("look_failed", forms.ValidationError(f"Ticked both ways: {words}.", code="both"))
+        if self.items and not (cleaned.get("look_all") or cleaned.get("look_ok") or cleaned.get("look_failed")):
+            sentence = "Look the bottle over, each point above; then tick this, or answer item by item below."
+            self.add_error("look_all", forms.ValidationError(sentence, code="look"))
+        target = cleaned.get("target")
+        if target is not None and self.limit_g and target.stored > self.limit_g:
+            sentence = f"It may hold no more than {self.mass(self.limit_g)}. Write less, or leave it empty for the limit."
+            self.add_error("target", forms.ValidationError(sentence, code="above the limit"))
         if cleaned.get("method") == "warmed" and not cleaned.get("heater_listed"):
             self.add_error(
                 "heater_listed",

@@ -12,7 +12,7 @@ from django.shortcuts import render
 from django.urls import reverse
 from django.utils.functional import cached_property
 
-from bottles.forms.filling import READ, FillForm, ReadingsForm
+from bottles.forms.filling import NEEDED, READ, FillForm, ReadingsForm
 from bottles.models import Bottle, Refill, Station, Supply
 from bottles.rules.conditions import label_of
 from bottles.rules.fitness import Judgement
@@ -211,7 +211,7 @@ def fill_form_kwargs(
     return {
         "bottle": bottle, "offered": offered, "at": station,
         "mass": refill_words(request, shop).mass, "items": look_items(bottle, shop),
-        "ask_pressure": asks_pressure(judged[bottle]), "check_due": due,
+        "ask_pressure": asks_pressure(judged[bottle]), "check_due": due, "limit_g": judged[bottle].limit.grams,
     }  # fmt: skip
 
 
@@ -232,7 +232,7 @@ def forecast_part(form: ReadingsForm, bottle: Bottle, judged: Judged, words: Ref
         return {"forecast": None, "trouble": ["This bottle has no fill limit yet. Complete its record first."]}
     if not form.is_bound:
         lacking = [name for name in ("supply_temperature", "bottle_temperature") if not form.initial.get(name)]
-        waits = [str(form.fields[name].label) for name in lacking or ["bottle_weight"]]
+        waits = [NEEDED[name] for name in lacking or ["bottle_weight"]]
         first = stop_figure(bottle, judged.supply, limit, words) if judged.supply else None
         return {"forecast": None, "stop": first, "waits": waits}
     wrong = [

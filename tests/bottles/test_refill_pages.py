@@ -54,7 +54,7 @@ def fill(client: Client, works: Works, **changes: str) -> Any:
 def test_the_page_shows_where_to_stop_before_anything_is_typed(client: Client, works: Works) -> None:
     page = words_of(client.get(reverse("bottles:fill", args=["T-0412"])))
     assert "Stop at 11.01 kg on scale B (24 lb 4 oz)" in page
-    assert "The forecast waits for: Its temperature, Temperature of the bottle to fill" in page
+    assert "The forecast waits for: the supply bottle's temperature, the temperature of the bottle to fill" in page
 
 
 def test_without_javascript_a_button_works_the_forecast_out_and_saves_nothing(client: Client, works: Works) -> None:
@@ -102,11 +102,22 @@ def test_bad_input_gets_a_sentence_and_keeps_what_was_typed(
 
 
 def test_the_look_is_answered_item_by_item(client: Client, works: Works) -> None:
-    assert fill(client, works, look_all="").status_code == 409
+    unlooked = fill(client, works, look_all="")
+    assert unlooked.status_code == 422 and list(unlooked.context["form"].errors) == ["look_all"]
+    assert fill(client, works, look_all="", look_ok="outlet").status_code == 409
     answer = fill(client, works, look_failed="outlet")
     assert answer["Location"] == works.bottle.get_absolute_url()
     assert Condition.objects.get().code == "dirty outlet" and Refill.objects.count() == 0
     assert "Not filled. Noted on the bottle" in words_of(client.get(answer["Location"]))
+
+
+def test_a_target_above_the_limit_is_refused_beside_its_field(client: Client, works: Works) -> None:
+    answer = fill(client, works, target="12 lb")
+    assert answer.status_code == 422 and list(answer.context["form"].errors) == ["target"]
+    assert Refill.objects.count() == 0
+    assert "It may hold no more than 10.2 lb" in words_of(answer)
+    assert "It may hold no more than 10.2 lb" in live(client, works, target="12 lb")
+    assert fill(client, works, target="9 lb").status_code == 302
 
 
 def test_a_warmer_must_be_listed(client: Client, works: Works) -> None:
@@ -158,7 +169,7 @@ def live(client: Client, works: Works, **changes: str) -> str:
 
 def test_while_typing_nothing_is_saved_and_nothing_breaks(client: Client, works: Works) -> None:
     acts = Act.objects.count()
-    assert "The forecast waits for: Temperature of the bottle to fill" in live(client, works, bottle_temperature="")
+    assert "The forecast waits for: the temperature of the bottle to fill" in live(client, works, bottle_temperature="")
     assert "Its temperature:" in live(client, works, supply_temperature="6x8")
     assert "Goes over:" in live(client, works)
     assert "between -40 °C and 52 °C" in live(client, works, bottle_temperature="-80")
