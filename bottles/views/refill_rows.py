@@ -89,13 +89,15 @@ def section_rows(refills: Sequence[Refill], words: RefillWords, shop: Shop) -> l
     return rows
 
 
-def compared(course: Course, words: RefillWords) -> dict[str, str] | None:
-    """What was forecast for the first supply bottle, beside what came over from it; None without either."""
-    first = course.draws[0] if course.draws else None
-    if first is None or first.forecast is None or not course.reads:
+def compared(course: Course, words: RefillWords, number: int = 0) -> dict[str, str] | None:
+    """What was forecast for a supply bottle, beside what came over from it; None without either."""
+    draw = course.draws[number] if course.draws else None
+    if draw is None or draw.forecast is None or not course.reads:
         return None
-    came = sum(flow.grams for flow in flows_of(course) if flow.draw == 0 and flow.kind in ("arrived", "found", "found beyond"))
-    forecast = first.forecast
+    flows = [flow for flow in flows_of(course) if flow.draw == number and flow.kind in ("arrived", "found", "found beyond")]
+    if not flows and number == len(course.draws) - 1 and course.refill.closed_at is None:
+        return None  # not weighed since it was connected
+    came, forecast = sum(flow.grams for flow in flows), draw.forecast
     inside = forecast.low_g <= came <= forecast.high_g
     return {
         "forecast": words.span(forecast.low_g, forecast.high_g), "came": words.mass(came),
@@ -159,14 +161,14 @@ def _weighing(refill: Refill, row: Weighing, words: RefillWords, shop: Shop) -> 
     ]  # fmt: skip
 
 
-def _draw(course: Course, number: int, words: RefillWords, shop: Shop) -> dict[str, str]:
+def _draw(course: Course, number: int, words: RefillWords, shop: Shop) -> dict[str, Any]:
     draw = course.draws[number]
     forecast = draw.forecast
     return {
         "code": draw.source.code, "url": draw.source.get_absolute_url(), "lot": draw.lot or "lot not known",
         "since": at(draw.happened_at, shop),
         "forecast": words.span(forecast.low_g, forecast.high_g) if forecast else "not forecast",
-        "now": "yes" if number == len(course.draws) - 1 else "",
+        "now": "yes" if number == len(course.draws) - 1 else "", "compared": compared(course, words, number),
     }  # fmt: skip
 
 
