@@ -103,8 +103,10 @@ def kept_form(facts: Facts) -> Mapping[str, object]:
     form: dict[str, object] = {}
     for name in Facts.__dataclass_fields__:
         value = getattr(facts, name)
-        if isinstance(value, (SpecMark, DateStamp)):
+        if isinstance(value, SpecMark):
             value = value.typed
+        elif isinstance(value, DateStamp):
+            value = _stamp_form(value)
         elif isinstance(value, Permit):
             value = {
                 "lists_nitrous": value.lists_nitrous,
@@ -113,8 +115,16 @@ def kept_form(facts: Facts) -> Mapping[str, object]:
                 "interval_years": value.interval_years,
             }
         elif name == "tests" and value is not None:
-            value = [stamp.typed for stamp in value]
+            value = [_stamp_form(stamp) for stamp in value]
         elif name == "conditions" and value is not None:
             value = [[each.code, each.noted.isoformat() if each.noted else None] for each in value]
         form[name] = value
     return form
+
+
+def _stamp_form(stamp: DateStamp) -> dict[str, object]:
+    """A stamp as understood: its typed text alone may lack the star that was ticked beside it."""
+    return {
+        "typed": stamp.typed, "year": stamp.year, "month": stamp.month, "star": stamp.star, "plus": stamp.plus,
+        "letters": list(stamp.letters), "facility": stamp.facility,
+    }  # fmt: skip
