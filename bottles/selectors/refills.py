@@ -105,7 +105,7 @@ def closed_refills() -> QuerySet[Refill]:
 
 def refills_of(bottle: Bottle) -> QuerySet[Refill]:
     """Return a bottle's refills, the latest first."""
-    return _listed().filter(bottle=bottle).order_by("-opened_at", "-id")
+    return bottle.refills.select_related("station__scale").order_by("-opened_at", "-id")
 
 
 def last_weighings(refills: Iterable[Refill]) -> dict[int, Weighing]:

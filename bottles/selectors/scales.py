@@ -61,7 +61,8 @@ def checked_scales(shop: Shop, scales: Iterable[Scale] | None = None) -> list[Ch
 
 def scale_checked(scale: Scale, shop: Shop) -> Checked:
     """Return one scale with its last check."""
-    return checked_scales(shop, [scale])[0]
+    check = last_check(scale)
+    return Checked(scale, check, _on(check, clock.today(shop), shop))
 
 
 def _on(check: ScaleCheck | None, day: date, shop: Shop) -> bool:
