@@ -14,11 +14,12 @@ import pytest
 from django.db import connection, connections
 
 from bottles.models import Condition, Draw, Movement, Refill, Supply, Weighing
-from bottles.services import conditions, refill_steps, refilling
+from bottles.services import conditions, custody, refill_steps, refilling, stations
 from bottles.services.stations import disconnect
 from shop.base import clock
 from shop.base.errors import AlreadyDone, Refusal
 from shop.base.models import Act
+from tests import factories
 from tests.bottles.books import check_books
 from tests.bottles.of_refill import SUPPLY_NET_G, Works, holds, key
 
@@ -237,3 +238,36 @@ def test_closing_twice_closes_once(works: Works, at_once: Any) -> None:
     assert one.found == "closed" and codes(two) == ["refill closed"]
     assert Refill.objects.get().ended_by == "by hand"
     assert Act.objects.filter(code="refill.closed").count() == 1
+
+
+def test_a_supply_connected_while_it_is_handed_over_stays(works: Works, at_once: Any) -> None:
+    spare = factories.BottleFactory(code="S-30", use="supply")
+    factories.placed(factories.owned(spare), "in")
+
+    def hand_over() -> Any:
+        return custody.hand_over(key=key(), person=works.person, bottle=spare, kind="loan", to_whom="R. Quill", limit_g=None)
+
+    one, two = at_once(
+        lambda: stations.connect(key=key(), person=works.person, station=works.station, bottle=spare), hand_over,
+        place=(stations, "restate"),
+    )  # fmt: skip
+    assert one.found is not None and codes(two) == ["on a station"]
+    spare.standing.refresh_from_db()
+    assert spare.standing.is_in
+
+
+def test_a_bottle_handed_over_while_a_refill_is_opened_stays(works: Works, at_once: Any) -> None:
+    opening = works.opening()
+
+    def hand_over() -> Any:
+        return custody.hand_over(
+            key=key(), person=works.person, bottle=works.bottle, kind="out", to_whom="R. Quill", limit_g=None
+        )
+
+    one, two = at_once(
+        lambda: refilling.open_refill(key=key(), person=works.person, opening=opening), hand_over,
+        place=(refilling, "draw_on"),
+    )  # fmt: skip
+    assert one.found.refill is not None and codes(two) == ["open refill"]
+    works.bottle.standing.refresh_from_db()
+    assert works.bottle.standing.is_in
