@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections import defaultdict
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 
@@ -19,6 +20,7 @@ class Course:
     before: Weighing | None
     reads: tuple[Weighing, ...]  # of the bottle to fill, after the first
     draws: tuple[Draw, ...]
+    supply_reads: tuple[Weighing, ...]  # of the supply bottles, made for it
 
     @property
     def last(self) -> Weighing | None:
@@ -62,35 +64,96 @@ def in_force(draws: Sequence[Draw]) -> Draw:
 
 
 def course_of(refill: Refill, draws: Sequence[Draw] | None = None) -> Course:
-    """Return a refill's course: two queries, one for whoever has just read its draws.
+    """Return a refill's course; whoever has just read its draws hands them over."""
+    return courses_of([refill], draws)[0]
 
-    A weighing counts that was made for it, or that took the place of one that was struck.
-    """
-    draws = draws_of(refill) if draws is None else tuple(draws)
-    mine = Q(refill=refill) | Q(act_id=refill.act_id) | Q(act_id__gt=refill.act_id, happened_at__gte=refill.opened_at)
-    if refill.closed_at is not None:
-        mine &= Q(happened_at__lte=refill.closed_at)
-    rows = list(
-        Weighing.objects.filter(mine, bottle_id=refill.bottle_id, strike__isnull=True)
-        .exclude(act_id__in=Refill.objects.filter(bottle_id=refill.bottle_id, id__gt=refill.pk).values("act_id"))
-        .select_related("scale", "tare")
-        .order_by("happened_at", "act_id", "id")
-    )
+
+def courses_of(refills: Sequence[Refill], draws: Sequence[Draw] | None = None) -> list[Course]:
+    """Return the courses of refills: three queries, four where one of them is closed."""
+    if draws is None:
+        rows = Draw.objects.filter(refill__in=refills).select_related("source", "forecast")
+        draws = rows.order_by("happened_at", "id")
+    of_refill: dict[int, list[Draw]] = defaultdict(list)
+    for draw in draws:
+        of_refill[draw.refill_id].append(draw)
+    weighings = _weighings_since(refills)
+    supply_reads = _supply_reads(of_refill)
+    opened_later = _opened_later(refills)
+    return [
+        _course(
+            refill, tuple(of_refill[refill.pk]), tuple(supply_reads.get(refill.pk, ())),
+            [row for row in weighings if _counts(row, refill) and row.act_id not in opened_later[refill.pk]],
+        )
+        for refill in refills
+    ]  # fmt: skip
+
+
+def _course(refill: Refill, draws: tuple[Draw, ...], supply_reads: tuple[Weighing, ...], rows: list[Weighing]) -> Course:
     firsts = [row for row in rows if row.step == "before"]
-    before = firsts[-1] if firsts else None
     reads = tuple(row for row in rows if row.step in ("after", "disconnected"))
-    return Course(refill, before, reads, draws)
+    return Course(refill, firsts[-1] if firsts else None, reads, draws, supply_reads)
+
+
+def _weighings_since(refills: Sequence[Refill]) -> Sequence[Weighing]:
+    """The weighings of the bottles filled that may count for one of these refills, in order."""
+    if not refills:
+        return []
+    rows = Weighing.objects.filter(
+        bottle__in={refill.bottle_id for refill in refills}, strike__isnull=True, act_id__gte=min(one.act_id for one in refills)
+    )
+    ends = [refill.closed_at for refill in refills]
+    if None not in ends:
+        rows = rows.filter(happened_at__lte=max(end for end in ends if end))
+    return list(rows.select_related("scale", "tare").order_by("happened_at", "act_id", "id"))
+
+
+def _counts(row: Weighing, refill: Refill) -> bool:
+    """Whether a weighing was made for a refill, or took the place of one that was struck."""
+    if row.bottle_id != refill.bottle_id or (refill.closed_at is not None and row.happened_at > refill.closed_at):
+        return False
+    since = row.act_id > refill.act_id and row.happened_at >= refill.opened_at
+    return row.refill_id == refill.pk or row.act_id == refill.act_id or since
+
+
+def _opened_later(refills: Sequence[Refill]) -> dict[int, set[int]]:
+    """For each refill the acts that opened later ones of its bottle: their first weighings aren't its own."""
+    found: dict[int, set[int]] = {refill.pk: set() for refill in refills}
+    closed = [refill for refill in refills if refill.closed_at is not None]  # while one is open there is no later one
+    if not closed:
+        return found
+    later = Refill.objects.filter(bottle__in={one.bottle_id for one in closed}, id__gt=min(one.pk for one in closed))
+    for key, bottle, act in later.values_list("id", "bottle_id", "act_id"):
+        for refill in closed:
+            if refill.bottle_id == bottle and refill.pk < key:
+                found[refill.pk].add(act)
+    return found
+
+
+def _supply_reads(of_refill: Mapping[int, Sequence[Draw]]) -> dict[int, list[Weighing]]:
+    """For each refill the weighings of its supply bottles that came with a draw or were made for it."""
+    draws = [draw for each in of_refill.values() for draw in each]
+    came_with: dict[tuple[int, int], int] = {(draw.act_id, draw.source_id): draw.refill_id for draw in draws}
+    rows = Weighing.objects.filter(
+        Q(act_id__in=[draw.act_id for draw in draws]) | Q(refill__in=of_refill.keys()),
+        bottle__in={draw.source_id for draw in draws}, strike__isnull=True,
+    )
+    found: dict[int, list[Weighing]] = defaultdict(list)
+    for row in rows.order_by("happened_at", "act_id", "id"):
+        refill = row.refill_id or came_with.get((row.act_id, row.bottle_id))
+        if refill is not None:
+            found[refill].append(row)
+    return found
 
 
 def source_weighings(course: Course, number: int) -> list[Weighing]:
     """Return the weighings of one draw's supply bottle, from its start on."""
     draw = course.draws[number]
-    following = course.draws[number + 1] if number + 1 < len(course.draws) else None
-    rows = Weighing.objects.filter(bottle_id=draw.source_id, strike__isnull=True, act_id__gte=draw.act_id)
-    rows = rows.filter(Q(act_id=draw.act_id) | Q(refill=course.refill))
-    if following is not None:
-        rows = rows.filter(act_id__lte=following.act_id)
-    return list(rows.order_by("happened_at", "act_id", "id"))
+    end = course.draws[number + 1].act_id if number + 1 < len(course.draws) else None
+    mine = [
+        row for row in course.supply_reads
+        if row.bottle_id == draw.source_id and (row.act_id == draw.act_id or row.refill_id == course.refill.pk)
+    ]  # fmt: skip
+    return [row for row in mine if row.act_id >= draw.act_id and (end is None or row.act_id <= end)]
 
 
 def open_refills() -> QuerySet[Refill]:

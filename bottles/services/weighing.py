@@ -189,7 +189,8 @@ def strike(
             )
         _undo(act, weighing, kept)
         if refill is not None:
-            post_flows(act=act, course=course_of(refill), weighing=kept)
+            now = Refill.objects.get(pk=refill.pk)  # someone else may have closed it before the lock
+            post_flows(act=act, course=course_of(now), weighing=kept)
         settle_books(act=act, bottle=bottle, reason=reason)
         standing: Standing = restate(bottle)
         return standing.weighing if right is None else kept

@@ -11,7 +11,7 @@ from django.urls import reverse
 from bottles.models import Refill, Weighing
 from bottles.physics.filling import percent_of_limit
 from bottles.rules.refill_flows import Flow
-from bottles.selectors.refills import Course, course_of, last_sources, last_weighings, net_without_hose
+from bottles.selectors.refills import Course, course_of, courses_of, last_sources, last_weighings, net_without_hose
 from bottles.selectors.scales import scale_uncertainty
 from bottles.services.overfull import timer_of
 from bottles.services.refill_books import flows_of
@@ -37,6 +37,8 @@ WENT = {
 
 def refill_rows(refills: Sequence[Refill], words: RefillWords, shop: Shop) -> list[dict[str, Any]]:
     """Rows of a list: what, where, from what, how it stands."""
+    if not refills:
+        return []
     weighed, sources = last_weighings(refills), last_sources(refills)
     rows = []
     for refill in refills:
@@ -84,8 +86,8 @@ def page_context(refill: Refill, words: RefillWords, shop: Shop) -> dict[str, An
 def section_rows(refills: Sequence[Refill], words: RefillWords, shop: Shop) -> list[dict[str, Any]]:
     """A bottle's refills with what was forecast and what came."""
     rows = refill_rows(refills, words, shop)
-    for row, refill in zip(rows, refills, strict=True):
-        row["compared"] = compared(course_of(refill), words)
+    for row, course in zip(rows, courses_of(refills), strict=True):
+        row["compared"] = compared(course, words)
     return rows
 
 

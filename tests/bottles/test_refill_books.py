@@ -8,13 +8,14 @@ from typing import Any
 import pytest
 
 from bottles.models import Movement, Refill, Weighing
+from bottles.selectors.refills import courses_of
 from bottles.services import refill_steps as steps
 from bottles.services.weighing import strike
 from shop.base import clock
 from shop.base.errors import Refusal
 from tests import factories
 from tests.bottles.books import check_books
-from tests.bottles.of_refill import LIMIT_G, SUPPLY_NET_G, SUPPLY_TARE_G, Works, balance, grams, holds, key
+from tests.bottles.of_refill import LIMIT_G, SUPPLY_NET_G, SUPPLY_TARE_G, TARE_G, Works, balance, grams, holds, key
 
 pytestmark = pytest.mark.django_db(transaction=True)
 
@@ -216,3 +217,20 @@ def test_weighings_that_cant_be_right_post_nothing(works: Works) -> None:
 def test_the_last_gram_fits(works: Works) -> None:
     refill = works.open()
     assert weighed(works, refill, LIMIT_G, "limit").closed
+
+
+def test_each_refill_of_a_bottle_has_its_own_weighings_and_draws(works: Works, django_assert_num_queries: Any) -> None:
+    other = works.connected("S-08")
+    first = works.open()
+    go_on(works, first, other, 1_500)
+    weighed(works, first, 2_000, ended_by="by hand")
+    second = works.open(bottle_weight=grams(TARE_G + 2_000))
+    weighed(works, second, 2_600, line_off=False)
+    weighed(works, second, 3_000, ended_by="by hand")
+    third = works.open(bottle_weight=grams(TARE_G + 3_000))
+    refills = list(Refill.objects.filter(pk__in=(first.pk, second.pk, third.pk)).order_by("id"))
+    with django_assert_num_queries(4):
+        courses = courses_of(refills)
+    assert [course.before.net_g for course in courses if course.before] == [300, 2_000, 3_000]
+    assert [[read.net_g for read in course.reads] for course in courses] == [[1_500, 2_000], [2_600, 3_000], []]
+    assert [[draw.source.code for draw in course.draws] for course in courses] == [["S-07", "S-08"], ["S-07"], ["S-07"]]
