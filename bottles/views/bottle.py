@@ -120,7 +120,7 @@ def history_rows(acts: list[Act], words: Words, shop: Shop) -> list[dict[str, An
 def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role], told: dict[str, Any]) -> list[dict[str, Any]]:
     """What this person may do with the bottle now, the likeliest drawn heavier."""
     found: list[dict[str, Any]] = []
-    likely = likeliest(standing, may_fill=told["may_fill"])
+    likely = likeliest(standing, may_fill=told["may_fill"], full=told["full"])
     for action in ACTIONS:
         if bottle.retired_at is not None or not action.roles & roles or action.needs_in not in (None, standing.is_in):
             continue
@@ -137,11 +137,13 @@ def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role], told: di
     return found
 
 
-def likeliest(standing: Standing, *, may_fill: bool) -> str:
+def likeliest(standing: Standing, *, may_fill: bool, full: bool) -> str:
     """The page of what most likely comes next: a bottle that came in is weighed before it's filled."""
     if not standing.is_in:
         return "bottles:check_in"
-    return "bottles:fill" if may_fill and not came_in_unweighed(standing) else "bottles:weigh"
+    if came_in_unweighed(standing):
+        return "bottles:weigh"
+    return "bottles:hand_over" if full else "bottles:fill" if may_fill else "bottles:weigh"
 
 
 def _line(bottle: Bottle, standing: Standing, words: Words) -> list[str]:

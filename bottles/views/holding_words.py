@@ -65,7 +65,7 @@ def tell(holding: Holding, limit_g: int | None, words: RefillWords, shop: Shop) 
     if holding.weighing is not None:
         if holding.over_g:
             word = "over" if holding.over_g > 0 else "short"
-            beside = f"the scale says {words.mass(abs(holding.over_g))} {word}, within the ±"
+            beside = f"the scale says {words.small(abs(holding.over_g))} {word}, within the ±"
         else:
             beside = "as the scale"
     spread = words.mass(holding.error_g) if holding.error_g else ""

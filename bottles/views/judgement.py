@@ -29,6 +29,8 @@ FILLING = {
     "unknown": Verdict("unknown", "Can't be judged: not filled until it can"),
 }
 AFTER_THE_LOOK = Verdict("yes", "May be filled, after the filler's look")
+FULL = Verdict("open", "Full: nothing more goes in")
+FULL_BY_ITS_WEIGHT = frozenset({"at-its-limit", "within-plus-minus"})
 IN_ITS_MONTH = Verdict("after", "May be filled; its test is due this month")
 EMPTYING = {
     "yes": "It may be emptied into another bottle.",
@@ -43,9 +45,18 @@ def verdict(judgement: Judgement) -> Verdict:
 
     Every fill owes a look, so a bottle for which only that is left reads as one that may.
     """
+    if is_full(judgement):
+        return FULL
     if judgement.only_the_look_is_left or judgement.may_be_filled == "yes":
         return IN_ITS_MONTH if judgement.status == "due this month" else AFTER_THE_LOOK
     return FILLING[judgement.may_be_filled]
+
+
+def is_full(judgement: Judgement) -> bool:
+    """Whether all that speaks against filling is that it holds its limit already, as near as the scale can tell."""
+    about = [reason for reason in judgement.reasons if "filling" in reason.about]
+    against = {reason.code for reason in about if reason.severity not in ("explains", "warns")}
+    return any(reason.code in FULL_BY_ITS_WEIGHT for reason in about) and against <= FULL_BY_ITS_WEIGHT | set(IN_THE_SHOP)
 
 
 def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
@@ -54,11 +65,14 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     words = words_for(request, seen.shop)
     answer = verdict(judgement)
     decides = [reason for reason in judgement.reasons if reason.severity != "explains" and "filling" in reason.about]
+    if any(reason.severity == "refuses" for reason in decides):
+        decides = [reason for reason in decides if reason.code != "look-owed"]  # nobody looks it over for a fill that can't be
     lines = (limit_line(judgement, words), due_line(judgement, book.edition.words), EMPTYING[judgement.may_be_emptied])
     return {
         "kind": answer.kind,
         "word": answer.word,
         "lines": [line for line in lines if line],
+        "full": is_full(judgement),
         "may_fill": all(reason.code in IN_THE_SHOP for reason in decides if reason.severity != "warns"),
         "refilled_now": any(reason.code == "in-open-refill" for reason in decides),
         "reasons": reason_rows(decides, bottle, standing, words),
@@ -80,7 +94,8 @@ def limit_line(judgement: Judgement, words: Words) -> str:
     if limit.grams is None:
         return "No fill limit can be worked out."
     binding = next(figure for figure in limit.candidates if figure.code == limit.binds)
-    return f"Limit {words.mass(limit.grams)} of nitrous: {binding.label} ({binding.source.citation})."
+    cited = "" if binding.code == "charge" else f" ({binding.source.citation})"  # a label is its own source
+    return f"Limit {words.mass(limit.grams)} of nitrous: {binding.label}{cited}."
 
 
 def due_line(judgement: Judgement, words: Any) -> str:

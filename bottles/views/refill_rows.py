@@ -50,7 +50,8 @@ def refill_rows(refills: Sequence[Refill], words: RefillWords, shop: Shop) -> li
             "stop_at": words.on_scale(refill.stop_at_g, refill.station.scale),
             "holds": _net(refill, last, words) or "not weighed since it began",
             "limit": words.mass(refill.limit_g), "opened": at(refill.opened_at, shop), "closed": at(refill.closed_at, shop),
-            "waits": wait_words(refill, shop), "kind": "no" if over else "after" if refill.closed_at is None else "yes",
+            "waits": wait_words(refill, shop), "wait_over": bool(refill.wait_until and refill.wait_until <= clock.now()),
+            "kind": "no" if over else "after" if refill.closed_at is None else "yes",
             "word": "overfull" if over else "waits" if refill.wait_until else "filling" if refill.closed_at is None
             else refill.get_ended_by_display(),
         })  # fmt: skip
@@ -87,7 +88,7 @@ def section_rows(refills: Sequence[Refill], words: RefillWords, shop: Shop) -> l
     """A bottle's refills with what was forecast and what came."""
     rows = refill_rows(refills, words, shop)
     for row, course in zip(rows, courses_of(refills), strict=True):
-        row["compared"] = compared(course, words)
+        row["compared"] = compared(course, words) if len(course.draws) == 1 else None  # of several: on its own page
     return rows
 
 
@@ -201,7 +202,8 @@ def _proven(course: Course) -> bool:
 
 
 def _as_read(weighing: Weighing | None, grams: int, refill: Refill, words: RefillWords) -> str:
-    return words.on_scale(grams, weighing.scale if weighing else refill.station.scale)
+    scale = weighing.scale if weighing else refill.station.scale
+    return words.read(grams, scale) if scale else words.mass(grams)
 
 
 def _left_at(course: Course, words: RefillWords) -> str:

@@ -50,11 +50,12 @@ def _bottle(one: Any, judgement: Judgement, words: Words, shop: Shop) -> dict[st
     answer, promised = verdict(judgement), one.promised_at
     reason = first_reason(judgement) if answer.kind != "yes" else None
     owner = one.ownership
+    of_limit = f" of {words.mass(judgement.limit.grams)}" if judgement.limit.grams else ""
     return {
         "url": one.bottle.get_absolute_url(),
         "code": one.bottle.code,
         "owner": (one.customer or "erased customer") if owner and owner.customer_id
-        else "shop" if owner and owner.kind == "shop" else "supplier",
+        else "the shop" if owner and owner.kind == "shop" else "the supplier",
         "wanted": one.wanted or "",
         "place": one.place or "",
         "promised": f"{promised.astimezone(clock.zone(shop)):%a %d %b %H:%M}" if promised else "",
@@ -63,7 +64,7 @@ def _bottle(one: Any, judgement: Judgement, words: Words, shop: Shop) -> dict[st
         "word": answer.word,
         "reason": in_own_units(reason.sentence, words) if reason else "",
         "holds": (
-            words.mass(one.weighing.net_g, plus_minus_g=one.weighing.error_g) if one.weighing else "contents unknown"
+            words.mass(one.weighing.net_g, plus_minus_g=one.weighing.error_g) + of_limit if one.weighing else "contents unknown"
         ),
     }  # fmt: skip
 

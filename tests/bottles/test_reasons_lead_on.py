@@ -89,3 +89,11 @@ def test_what_is_not_known_leads_to_its_page(client: Client, works: Works) -> No
     assert f'→ <a href="{reverse("bottles:weigh", args=["T-0900"])}">' in page
     assert "?purpose=fill" in page
     assert main_acts(client, "T-0900") == [reverse("bottles:weigh", args=["T-0900"])]
+
+
+def test_a_full_bottle_is_called_full_and_handed_over(client: Client, works: Works) -> None:
+    full = works.bottle_to_fill("T-0413", net_g=4_600)  # a limit of 4,614 g, weighed to some 20 g
+    page = client.get(full.get_absolute_url()).content.decode()
+    assert "Full: nothing more goes in" in page and "Must not be filled" not in page
+    assert main_acts(client, "T-0413") == [reverse("bottles:hand_over", args=["T-0413"])]
+    assert "Full: nothing more goes in" not in client.get(works.bottle.get_absolute_url()).content.decode()
