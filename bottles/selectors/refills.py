@@ -1,4 +1,4 @@
-"""Read refills: their weighings in order, the draw in force, what a page lists."""
+"""Read refills as they went: their weighings and draws in order, the draw in force."""
 
 from __future__ import annotations
 
@@ -7,9 +7,9 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 
-from django.db.models import Q, QuerySet
+from django.db.models import Q
 
-from bottles.models import Bottle, Draw, Refill, Weighing
+from bottles.models import Draw, Refill, Weighing
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,7 +55,7 @@ def net_without_hose(refill: Refill, weighing: Weighing) -> int:
 
 def draws_of(refill: Refill) -> tuple[Draw, ...]:
     """Return a refill's draws in the order in which they happened, with supply bottles and forecasts."""
-    return tuple(refill.draws.select_related("source", "forecast").order_by("happened_at", "id"))
+    return tuple(_draws([refill]))
 
 
 def in_force(draws: Sequence[Draw]) -> Draw:
@@ -70,11 +70,8 @@ def course_of(refill: Refill, draws: Sequence[Draw] | None = None) -> Course:
 
 def courses_of(refills: Sequence[Refill], draws: Sequence[Draw] | None = None) -> list[Course]:
     """Return the courses of refills: three queries, four where one of them is closed."""
-    if draws is None:
-        rows = Draw.objects.filter(refill__in=refills).select_related("source", "forecast")
-        draws = rows.order_by("happened_at", "id")
     of_refill: dict[int, list[Draw]] = defaultdict(list)
-    for draw in draws:
+    for draw in _draws(refills) if draws is None else draws:
         of_refill[draw.refill_id].append(draw)
     weighings = _weighings_since(refills)
     supply_reads = _supply_reads(of_refill)
@@ -86,6 +83,10 @@ def courses_of(refills: Sequence[Refill], draws: Sequence[Draw] | None = None) -
         )
         for refill in refills
     ]  # fmt: skip
+
+
+def _draws(refills: Sequence[Refill]) -> Iterable[Draw]:
+    return Draw.objects.filter(refill__in=refills).select_related("source", "forecast").order_by("happened_at", "id")
 
 
 def _course(refill: Refill, draws: tuple[Draw, ...], supply_reads: tuple[Weighing, ...], rows: list[Weighing]) -> Course:
@@ -154,39 +155,3 @@ def source_weighings(course: Course, number: int) -> list[Weighing]:
         if row.bottle_id == draw.source_id and (row.act_id == draw.act_id or row.refill_id == course.refill.pk)
     ]  # fmt: skip
     return [row for row in mine if row.act_id >= draw.act_id and (end is None or row.act_id <= end)]
-
-
-def open_refills() -> QuerySet[Refill]:
-    """Return the open refills, the oldest first."""
-    return _listed().filter(closed_at__isnull=True).order_by("opened_at", "id")
-
-
-def closed_refills() -> QuerySet[Refill]:
-    """Return the closed refills, the latest first."""
-    return _listed().filter(closed_at__isnull=False).order_by("-closed_at", "-id")
-
-
-def refills_of(bottle: Bottle) -> QuerySet[Refill]:
-    """Return a bottle's refills, the latest first."""
-    return bottle.refills.select_related("station__scale").order_by("-opened_at", "-id")
-
-
-def last_weighings(refills: Iterable[Refill]) -> dict[int, Weighing]:
-    """Return each refill's last weighing of the bottle being filled, by the refill's key: one query."""
-    found: dict[int, Weighing] = {}
-    keys = {refill.pk: refill.bottle_id for refill in refills}
-    rows = Weighing.objects.filter(refill__in=keys, strike__isnull=True).order_by("happened_at", "act_id", "id")
-    for row in rows:
-        if row.refill_id and keys[row.refill_id] == row.bottle_id:
-            found[row.refill_id] = row
-    return found
-
-
-def last_sources(refills: Iterable[Refill]) -> dict[int, Bottle]:
-    """Return the supply bottle in force of each refill: one query."""
-    rows = Draw.objects.filter(refill__in=[refill.pk for refill in refills]).select_related("source").order_by("id")
-    return {row.refill_id: row.source for row in rows}
-
-
-def _listed() -> QuerySet[Refill]:
-    return Refill.objects.select_related("bottle", "station__scale")

@@ -11,7 +11,8 @@ from django.urls import reverse
 from bottles.models import Refill, Weighing
 from bottles.physics.filling import percent_of_limit
 from bottles.rules.refill_flows import Flow
-from bottles.selectors.refills import Course, course_of, courses_of, last_sources, last_weighings, net_without_hose
+from bottles.selectors.refill_lists import last_sources, last_weighings
+from bottles.selectors.refills import Course, course_of, courses_of, net_without_hose
 from bottles.selectors.scales import scale_uncertainty
 from bottles.services.overfull import timer_of
 from bottles.services.refill_books import flows_of

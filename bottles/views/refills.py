@@ -14,8 +14,9 @@ from django.utils.functional import cached_property
 
 from bottles.forms.refills import AnotherSupplyForm, CloseForm, WaitForm, WeighForm
 from bottles.models import Bottle, Refill, Supply
-from bottles.selectors import refills as selected
 from bottles.selectors.filling_offers import Offered, readings_offered
+from bottles.selectors.refill_lists import closed_refills, open_refills, refills_of
+from bottles.selectors.refills import draws_of, in_force
 from bottles.services import refill_steps as steps
 from bottles.services.forecasting import Asked, work_out
 from bottles.views.filling import CAUTIONS, Judged, asked_for, chosen_supply, forecast_part
@@ -37,8 +38,8 @@ def refills(request: HttpRequest) -> HttpResponse:
     """What is being filled now, and what was."""
     shop = Shop.objects.get()
     words = refill_words(request, shop)
-    page = page_of(request, selected.closed_refills())
-    now = refill_rows(list(selected.open_refills()), words, shop)
+    page = page_of(request, closed_refills())
+    now = refill_rows(list(open_refills()), words, shop)
     context = {"open": now, "closed": refill_rows(list(page), words, shop), "page": page}
     return render(request, "bottles/refills.html", context)
 
@@ -146,7 +147,7 @@ class AnotherSupply(OfRefill):
     @cached_property
     def in_force(self) -> Bottle:
         """The supply bottle that it's filled from now."""
-        return selected.in_force(selected.draws_of(self.refill)).source
+        return in_force(draws_of(self.refill)).source
 
     @cached_property
     def chosen(self) -> Supply | None:
@@ -228,5 +229,5 @@ def receipt(request: HttpRequest, pk: int) -> HttpResponse:
 def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     """The bottle's last refills, forecast against what came."""
     words = refill_words(request, seen.shop)
-    found = list(selected.refills_of(seen.bottle)[: LATEST + 1])
+    found = list(refills_of(seen.bottle)[: LATEST + 1])
     return {"refills": section_rows(found[:LATEST], words, seen.shop), "more_refills": len(found) > LATEST}

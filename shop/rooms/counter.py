@@ -11,7 +11,7 @@ from django.urls import reverse
 from bottles.rules.fitness import Judgement
 from bottles.selectors import counter as selected
 from bottles.selectors.judging import rulebook
-from bottles.selectors.refills import open_refills
+from bottles.selectors.refill_lists import open_refills
 from bottles.views.judgement import first_reason, verdict
 from bottles.views.reason_rows import in_own_units
 from bottles.views.refill_rows import refill_rows
