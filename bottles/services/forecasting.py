@@ -251,7 +251,14 @@ def _start(asked: Asked, readings: Readings, known: Known, notes: list[tuple[str
     """How the bottle to fill starts, and what the scale has to say about that."""
     net = known.grams if known.still_as_weighed else None
     if readings.bottle_weight is not None and known.tare is not None:
-        net = max(0, readings.bottle_weight.stored - known.tare.total_g)
+        net = readings.bottle_weight.stored - known.tare.total_g
+        if net < -known.error_on(asked.supply.station.scale):
+            raise Refusal(
+                "The bottle to fill weighs less than its tare. Read the scale again, and check that what its tare list names "
+                "is on it.",
+                code="tare above gross", field="bottle_weight",
+            )  # fmt: skip
+        net = max(0, net)
     ambient = air_pressure(asked.shop)
     if readings.start != WEIGHED:
         start = Start(readings.start, net / 1000 if net is not None and readings.start == OWN_VAPOUR else None, ambient)

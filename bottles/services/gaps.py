@@ -97,6 +97,12 @@ def _kind(owner: Ownership | None, *, opening: bool) -> OwnerKind | None:
     return cast(OwnerKind, owner.kind)
 
 
+LIKELY_WHY = {
+    "short": "a leak, a run that wasn't logged, a spill",
+    "over": "a refill that wasn't logged, something on it that its tare list doesn't name, ice",
+}
+
+
 def refuse_without_reason(bottle: Bottle, history: History, at: Spoken, gap: Gap, reason: str) -> None:
     """Raise NeedsReason with what is short or over, where none was given."""
     if reason.strip():
@@ -104,8 +110,7 @@ def refuse_without_reason(bottle: Bottle, history: History, at: Spoken, gap: Gap
     short = "short" if gap.grams < 0 else "over"
     raise NeedsReason(
         f"The books say {in_both(history.level_at(at.key))}, the scale {in_both(at.net_g)}: {in_both(abs(gap.grams))} "
-        f"{short}, beyond the ± of {in_both(gap.error_g)}. Weigh it again; if that stays, say why: a leak, a run that "
-        "wasn't logged, a spill.",
+        f"{short}, beyond the ± of {in_both(gap.error_g)}. Weigh it again; if that stays, say why: {LIKELY_WHY[short]}.",
         field="reason",
     )
 

@@ -51,6 +51,8 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
     """Everything that the forecast's part of the page shows."""
     found, supply = answer.transferred, asked.supply
     kind, reached = REACHES[found.reaches_limit]
+    if answer.target_g < asked.limit_g:
+        reached = reached.replace("limit", "target")
     warnings = [sentence for code, sentence in found.warnings if code not in HIDDEN]
     reading = [sentence for code, sentence in (answer.contents.warnings if answer.contents else ())]
     return {
@@ -64,6 +66,7 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
         "method": _method(answer),
         "kind": kind,
         "reached": reached,
+        "already": found.reaches_limit == "already",
         "limits": _limits(answer, words),
         "cold": _cold(answer, words),
         "left": _left(answer, supply, words),
@@ -156,7 +159,10 @@ def _cold(answer: Answer, words: RefillWords) -> str:
                 "No cooling beforehand will do for a full fill. Kept as cold as it is now, in its bath or freezer, for as long "
                 "as it takes, it would fill."
             )
-        return "No cooling will do: the supply bottle doesn't hold enough for a full fill however cold this one is."
+        return (
+            "No cooling will do: the supply bottle doesn't hold enough for a full fill however cold this one is. Choose a fuller "
+            "one, or go on from a second one in turn."
+        )
     if found.warmest_receiver_k - 273.15 > HOTTEST_C:
         return "It needs no cooling for a full fill, done quickly."
     at = words.temperature(found.warmest_receiver_k * 1000)

@@ -120,6 +120,15 @@ def test_a_target_above_the_limit_is_refused_beside_its_field(client: Client, wo
     assert fill(client, works, target="9 lb").status_code == 302
 
 
+def test_a_weight_that_forbids_filling_is_told_while_typing(client: Client, works: Works) -> None:
+    light = live(client, works, bottle_weight="5 kg")
+    assert "weighs less than its tare" in light and "Goes over" not in light
+    heavy = live(client, works, bottle_weight="12 kg")
+    assert "It holds its limit already: don't add to it" in heavy
+    assert "Goes over" not in heavy and "Stop at" not in heavy
+    assert "It holds its target already" in live(client, works, target="200 g")
+
+
 def test_a_warmer_must_be_listed(client: Client, works: Works) -> None:
     answer = fill(client, works, method="warmed")
     assert answer.status_code == 422 and list(answer.context["form"].errors) == ["heater_listed"]
