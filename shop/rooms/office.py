@@ -9,11 +9,13 @@ from django.http import HttpRequest, HttpResponse
 from django.shortcuts import render
 from django.urls import NoReverseMatch, reverse
 
+from bottles.models import Refill, Scale, Station, Supply
 from bottles.selectors.books import balance_between
 from bottles.views.wording import words_for
 from shop.base import clock
-from shop.base.models import Shop
+from shop.base.models import Place, Shop
 from shop.base.permissions import MANAGERS, allow
+from shop.people.models import User
 from shop.rooms.jobs import going_on
 
 # What can be opened from here, in groups; a page that isn't in the addresses isn't shown.
@@ -66,6 +68,7 @@ def office(request: HttpRequest) -> HttpResponse:
     context = {
         "groups": [group for group in groups if group["links"]],
         "nitrous": nitrous_lately(request),
+        "first_steps": first_steps(),
         "going_on": going_on(request),
     }
     return render(request, "rooms/office.html", context)
@@ -87,14 +90,40 @@ def nitrous_lately(request: HttpRequest) -> dict[str, Any]:
         for code, word in LATELY
         if code in flows
     ]
+    if told.filled_g:
+        at = sum(flow["what"] == "delivered" for flow in shown)
+        shown.insert(at, {"what": "filled", "value": words.mass(told.filled_g), "way": ""})
+    if shown and "unaccounted" not in flows:
+        shown.append({"what": "unaccounted", "value": "nothing", "way": ""})
     return {
         "first": told.first,
         "last": told.last,
-        "filled": words.mass(told.filled_g),
         "stock": words.mass(told.closing_g, plus_minus_g=told.closing_error_g),
         "flows": shown,
         "url": f"{reverse('bottles:balance')}?first={told.first}&last={told.last}",
     }
+
+
+def first_steps() -> list[dict[str, str]]:
+    """What a new shop still has to do before it can fill, in its order; empty once a bottle was filled."""
+    if Refill.objects.exists():
+        return []
+    steps = (
+        (Place, "rooms:places", "Write down the places", "the counter, a shelf, the quarantine"),
+        (Scale, "bottles:scales", "Add a scale", "its step and its error: they decide the ± of every weight"),
+        (Station, "bottles:stations", "Set up a filling station", "its scale, its hose"),
+        (Supply, "bottles:register", "Register a supply bottle, enter its delivery, connect it", "with its tare and its lot"),
+        (User, "people:people", "Add the people who work here", "each with a badge or a short code"),
+        (Refill, "rooms:counter", "Fill the first bottle at the Counter", "register it, check it in, weigh it"),
+    )
+    return [
+        {"words": words, "hint": hint, "url": reverse(page), "done": "yes" if _begun(model) else ""}
+        for model, page, words, hint in steps
+    ]
+
+
+def _begun(model: Any) -> bool:
+    return model.objects.count() > 1 if model is User else model.objects.exists()
 
 
 def links(entries: tuple[tuple[str, str, str], ...]) -> list[dict[str, Any]]:
