@@ -70,6 +70,8 @@ def course_of(refill: Refill, draws: Sequence[Draw] | None = None) -> Course:
 
 def courses_of(refills: Sequence[Refill], draws: Sequence[Draw] | None = None) -> list[Course]:
     """Return the courses of refills: three queries, four where one of them is closed."""
+    if not refills:
+        return []
     of_refill: dict[int, list[Draw]] = defaultdict(list)
     for draw in _draws(refills) if draws is None else draws:
         of_refill[draw.refill_id].append(draw)
@@ -97,8 +99,6 @@ def _course(refill: Refill, draws: tuple[Draw, ...], supply_reads: tuple[Weighin
 
 def _weighings_since(refills: Sequence[Refill]) -> Sequence[Weighing]:
     """The weighings of the bottles filled that may count for one of these refills, in order."""
-    if not refills:
-        return []
     rows = Weighing.objects.filter(
         bottle__in={refill.bottle_id for refill in refills}, strike__isnull=True, act_id__gte=min(one.act_id for one in refills)
     )

@@ -42,11 +42,7 @@ def tares_of(bottle: Bottle) -> QuerySet[Tare]:
 
 def conditions_of(bottle: Bottle) -> QuerySet[Condition]:
     """What was noted on it, open ones first, then the latest."""
-    return (
-        Condition.objects.filter(bottle=bottle)
-        .select_related("end__act__person", "act__person")
-        .order_by("end", "-seen_on", "-id")
-    )
+    return Condition.objects.filter(bottle=bottle).select_related("end").order_by("end", "-seen_on", "-id")
 
 
 def owners_of(bottle: Bottle) -> QuerySet[Ownership]:
