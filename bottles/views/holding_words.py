@@ -68,7 +68,8 @@ def tell(holding: Holding, limit_g: int | None, words: RefillWords, shop: Shop) 
             beside = f"the scale says {words.small(abs(holding.over_g))} {word}, within the ±"
         else:
             beside = "as the scale"
-    spread = words.mass(holding.error_g) if holding.error_g else ""
+    # Rounded up, as wherever a figure is told with its ±.
+    spread = words.mass(holding.grams, plus_minus_g=holding.error_g).split("±")[1] if holding.error_g else ""
     return Told(figure, True, spread, percent, holding.origin, when, books, beside)
 
 
