@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from bottles.models import Account, Bottle, Scale, Tare
 from bottles.physics.vessel import wall_heat
 from bottles.physics.weighing import net_uncertainty
+from bottles.rules.marks import read_mark
 from bottles.selectors.history import Spoken, history_of
 from bottles.selectors.scales import scale_uncertainty
 from shop.base import clock
@@ -66,7 +67,8 @@ def walls_of(bottle: Bottle) -> Walls:
 
 def walls_by(bottle: Bottle, tare: Tare | None) -> Walls:
     """Return the wall's heat capacity by a tare that was read already."""
-    materials = (bottle.wall,) if bottle.wall in WALL_G_A_LITRE else tuple(WALL_G_A_LITRE)
+    made_of = wall_of(bottle)
+    materials = (made_of,) if made_of in WALL_G_A_LITRE else tuple(WALL_G_A_LITRE)
     if tare is None:
         litres = (bottle.capacity_ml or 0) / 1000
         return Walls(
@@ -80,6 +82,14 @@ def walls_by(bottle: Bottle, tare: Tare | None) -> Walls:
         return Walls(tuple(wall_heat(name, own / 1000) for name in materials), "")
     mass = tare.total_g - min(FITTINGS_G, tare.total_g // FITTINGS_SHARE)
     return Walls(tuple(wall_heat(name, mass / 1000) for name in materials), "its tare less an allowance for valve and fittings")
+
+
+def wall_of(bottle: Bottle) -> str | None:
+    """What a bottle is made of: as entered, else as its mark says; None where neither tells."""
+    if bottle.wall != "unknown":
+        return bottle.wall
+    specification = read_mark(bottle.mark).specification if bottle.mark else None
+    return specification.wall if specification else None
 
 
 def _tare_of(bottle: Bottle) -> Tare | None:

@@ -142,6 +142,11 @@ def test_an_unknown_wall_widens_the_span(works: Works) -> None:
     for bottle in (works.bottle, works.supply.bottle):
         bottle.wall = "unknown"
         bottle.save()
+    by_the_mark = works.forecast(**warm)  # DOT-3AL is aluminium, DOT-3AA steel (49 CFR 178.46, 178.37)
+    assert "wall_unknown" not in codes(by_the_mark)
+    assert (by_the_mark.low_g, by_the_mark.high_g) == (known.low_g, known.high_g)
+    works.supply.bottle.mark = ""
+    works.supply.bottle.save()
     unknown = works.forecast(**warm)
     assert "wall_unknown" in codes(unknown)
     assert unknown.low_g <= known.low_g and unknown.high_g >= known.high_g
