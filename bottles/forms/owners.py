@@ -5,6 +5,8 @@ from __future__ import annotations
 from typing import Any
 
 from django import forms
+from django.urls import reverse
+from django.utils.html import format_html
 
 from bottles.forms.parts import RegisterForm, day, text
 from bottles.models import Ownership
@@ -25,6 +27,17 @@ class OwnerFields(RegisterForm):
     )
     customer = CustomerField(label="Customer", required=False, help_text="If it's a customer's: a part of the name, or pick one.")
     supplier = text("Supplier", 120, help_text="If it's the supplier's: the name on its label.")
+
+    def __init__(self, *args: Any, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        customer: Any = self.fields["customer"]
+        # In a tab of its own: what was typed here stays.
+        customer.help_text = format_html(
+            '{} <a href="{}" target="_blank" rel="noopener">Add a new customer</a> (opens beside this).',
+            customer.help_text, reverse("people:customer_new"),
+        )  # fmt: skip
+        for name in ("customer", "supplier"):
+            self.fields[name].depends = True  # type: ignore[attr-defined]
 
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean() or {}
