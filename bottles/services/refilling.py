@@ -13,7 +13,7 @@ Guarantees:
 from __future__ import annotations
 
 import uuid
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import Any
@@ -23,6 +23,7 @@ from django.db.models import Q
 
 from bottles.models import Bottle, Condition, Delivery, Draw, Refill, RefillCheck, Scale, Standing, Supply, Tare
 from bottles.physics.weighing import stop_reading
+from bottles.rules.edition import LookItem
 from bottles.rules.fitness import Judgement
 from bottles.rules.look import LookResult, look_for, look_result
 from bottles.rules.marks import read_mark
@@ -30,7 +31,7 @@ from bottles.rules.specifications import Wall
 from bottles.selectors.edition import edition_in_force
 from bottles.selectors.judging import rulebook
 from bottles.selectors.scales import scale_checked, scale_uncertainty
-from bottles.services.deciding import decide
+from bottles.services.deciding import decide, keep_refusal
 from bottles.services.forecasting import Answer, Asked, DangerSign, keep_forecast
 from bottles.services.locking import lock
 from bottles.services.refusals import Retired
@@ -45,6 +46,10 @@ class MustNotBeFilled(NotReady):
     """This bottle must not be filled now. Its page says why, and what to do."""
 
     code = "must not be filled"
+
+    def __init__(self, sentence: str = "", *, given: dict[str, Any] | None = None) -> None:
+        super().__init__(sentence)
+        self.given = given or {}  # what the filler had seen, for the answer that is kept
 
 
 class ScaleCheckDue(NotReady):
@@ -91,17 +96,28 @@ def stop_at(tare: Tare, scale: Scale, *, target_g: int, hose_pull_g: int) -> int
 
 
 def open_refill(*, key: uuid.UUID, person: User | None, opening: Opening) -> Opened:
-    """Open a refill, or note what the look found.
+    """Open a refill, or note what the look found; an answer that refuses is kept whatever follows.
 
     Raises MustNotBeFilled, ScaleCheckDue, DangerSign, Retired; NotReady where either bottle is
     taken meanwhile; Refusal where the look isn't finished or the weight is missing.
     """
-    bottle, supply, shop = opening.asked.bottle, opening.asked.supply, opening.asked.shop
+    bottle, shop = opening.asked.bottle, opening.asked.shop
     items = look_items(bottle, shop)
     found = look_result(items, opening.look)
     if not found.done and not found.conditions:
         left = ", ".join(item.words for item in items if item.code in found.open_items)
         raise Refusal(f"The look isn't finished. Still open: {left}.", code="look not done", field="look")
+    try:
+        return _open(key, person, opening, items, found)
+    except MustNotBeFilled as refused:
+        keep_refusal(
+            key=key, person=person, bottle=bottle, shop=shop, given=refused.given, look=_answers(opening.look)
+        )
+        raise
+
+
+def _open(key: uuid.UUID, person: User | None, opening: Opening, items: Sequence[LookItem], found: LookResult) -> Opened:
+    bottle, supply, shop = opening.asked.bottle, opening.asked.supply, opening.asked.shop
     with acts.begin(
         key=key, person=person, code="refill.refused" if found.conditions else "refill.opened", subject=f"bottle:{bottle.code}",
         reason=opening.reason.strip(), changes={"supply": supply.bottle.code, "method": opening.method},
@@ -126,7 +142,7 @@ def open_refill(*, key: uuid.UUID, person: User | None, opening: Opening) -> Ope
         judgement, decision = decide(
             act=act, bottle=bottle, book=book, facts=replace(facts[bottle.pk], **given), look=_answers(opening.look)
         )
-        limit_g = _refuse_unfit(judgement)
+        limit_g = _refuse_unfit(judgement, given)
         refuse_source(source, book.judge(facts[source.pk]))
         target_g = min(limit_g, opening.answer.target_g)
         # A weighing entered late rests on the tare of then; the scale will be read with what is fitted now.
@@ -235,14 +251,14 @@ def _scale(supply: Supply, shop: Shop) -> Scale:
     return scale
 
 
-def _refuse_unfit(judgement: Judgement) -> int:
+def _refuse_unfit(judgement: Judgement, given: dict[str, Any]) -> int:
     limit = judgement.limit.grams
     if judgement.may_be_filled == "yes" and limit is not None:
         return limit
     stops = ("refuses", "unknown", "first")
     why = [reason for reason in judgement.reasons if "filling" in reason.about and reason.severity in stops]
     words = " ".join(f"{reason.sentence} {reason.next_step}" for reason in why[:3])
-    raise MustNotBeFilled(f"{words or 'It has no fill limit.'} Nothing was saved.")
+    raise MustNotBeFilled(f"{words or 'It has no fill limit.'} No refill was opened; this answer is kept.", given=given)
 
 
 def _answers(look: Mapping[str, bool | None]) -> dict[str, bool]:

@@ -11,14 +11,14 @@ from typing import Any
 import pytest
 from django.urls import reverse
 
-from bottles.models import Decision, Refill
+from bottles.models import Decision, Refill, Weighing
 from bottles.rules.edition_files import edition_by_code
 from bottles.rules.facts import Condition, Facts, Permit
 from bottles.rules.fitness import Judgement, judge
 from bottles.rules.marks import read_mark
 from bottles.rules.stamps import DateStamp
 from bottles.selectors.edition import policy_of
-from bottles.services.refilling import open_refill
+from bottles.services.refilling import MustNotBeFilled, open_refill
 from shop.base import clock
 from tests import factories
 from tests.bottles.of_refill import Works, key
@@ -107,6 +107,19 @@ def test_what_the_look_stopped_is_kept_too(works: Works) -> None:
     assert kept.may_fill in ("no", "only after")
     assert list(kept.inputs["look"].values()).count(False) == 1
     check(kept)
+
+
+def test_what_the_rules_refused_is_kept_once_however_often_the_form_arrives(works: Works) -> None:
+    factories.ConditionFactory(bottle=works.bottle, code="dent")
+    form = key()
+    for _ in range(2):
+        with pytest.raises(MustNotBeFilled):
+            open_refill(key=form, person=works.person, opening=works.opening())
+    kept = Decision.objects.get()
+    assert kept.may_fill == "no" and kept.act.code == "refill.refused"
+    assert "condition" in {reason["code"] for reason in kept.reasons}
+    assert kept.inputs["look_done"] is True
+    assert not Refill.objects.exists() and not Weighing.objects.filter(step="before").exists()
 
 
 def test_a_refill_outlives_the_sign_out_of_whoever_opened_it(

@@ -26,10 +26,12 @@ def works(shop: Any, front_desk: Any) -> Works:
 
 def refused(works: Works, **changes: Any) -> str:
     """Open a refill that must be refused; return the code."""
-    before = [model.objects.count() for model in (Refill, Weighing, Decision, Forecast, Draw)]
+    before = [model.objects.count() for model in (Refill, Weighing, Forecast, Draw)]
+    answers = Decision.objects.count()
     with pytest.raises(Refusal) as caught:
         open_refill(key=key(), person=works.person, opening=works.opening(**changes))
-    assert [model.objects.count() for model in (Refill, Weighing, Decision, Forecast, Draw)] == before
+    assert [model.objects.count() for model in (Refill, Weighing, Forecast, Draw)] == before
+    assert Decision.objects.count() == answers + (caught.value.code == "must not be filled")  # that answer is kept
     return caught.value.code
 
 
