@@ -13,7 +13,8 @@ from shop.base.fields import HappenedField, InstantField, MassField
 from shop.people.acting import ActForm
 
 LINE = [("on", "still connected"), ("off", "disconnected")]
-ENDS = [("", "not finished yet"), *Refill.ENDS]
+AS_WEIGHED = "weighed"
+ENDS = [(AS_WEIGHED, "as the scale tells: the limit if it's full, else not finished"), ("", "not finished yet"), *Refill.ENDS]
 
 
 class WeighForm(ActForm):
@@ -25,7 +26,8 @@ class WeighForm(ActForm):
     )
     line = forms.ChoiceField(label="The line is", choices=LINE, widget=forms.RadioSelect, initial="off")
     ended_by = forms.ChoiceField(
-        label="What ended it", choices=ENDS, required=False, help_text="Closes the refill, once the line is disconnected."
+        label="What ended it", choices=ENDS, required=False, initial=AS_WEIGHED,
+        help_text="Closes the refill, once the line is disconnected.",
     )
     wet = forms.BooleanField(label="The bottle is wet or frosted", required=False)
     supply_gross = MassField(label="The supply bottle weighs", required=False)
@@ -39,12 +41,23 @@ class WeighForm(ActForm):
 
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean() or {}
-        if cleaned.get("ended_by") and cleaned.get("line") == "on":
+        if self.end_chosen(cleaned) and cleaned.get("line") == "on":
             self.add_error(
                 "ended_by",
                 forms.ValidationError("Disconnect the line and weigh again before the refill is closed.", code="not disconnected"),
             )
         return cleaned
+
+    @staticmethod
+    def end_chosen(cleaned: dict[str, Any]) -> str:
+        """What ended it as chosen; nothing where that's left to the scale."""
+        chosen: str = cleaned.get("ended_by") or ""
+        return "" if chosen == AS_WEIGHED else chosen
+
+    @property
+    def close_when_full(self) -> bool:
+        """Whether it's left to the scale to say that it's finished."""
+        return bool(self.cleaned_data["ended_by"] == AS_WEIGHED)
 
     def weight(self) -> Weight:
         """The weighing as the service takes it."""

@@ -10,6 +10,7 @@ from datetime import datetime
 from django.db.models import Q
 
 from bottles.models import Draw, Refill, Weighing
+from bottles.selectors.scales import scale_uncertainty
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +47,19 @@ class Course:
         """The latest weighing where it shows more than the limit."""
         last = self.last
         return last if last and net_without_hose(self.refill, last) > self.refill.limit_g else None
+
+    @property
+    def proves_full(self) -> bool:
+        """Whether the latest weighing proves a full fill: dry, line off, the target reached within the scale's ±.
+
+        Twice the ±, and one step: the reading to stop at is the target less the scale's ±, rounded
+        down, and the scale may be that much out once more.
+        """
+        last, scale = self.closable, self.refill.station.scale
+        if last is None or last.wet:
+            return False
+        slack = 2 * scale_uncertainty(scale) + scale.resolution_g if scale else last.error_g
+        return last.net_g >= self.refill.target_g - slack
 
 
 def net_without_hose(refill: Refill, weighing: Weighing) -> int:

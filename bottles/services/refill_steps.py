@@ -49,12 +49,13 @@ class Weighed:
 
 
 def weigh_refill(
-    *, key: uuid.UUID, person: User | None, refill: Refill, weight: Weight, ended_by: str = ""
+    *, key: uuid.UUID, person: User | None, refill: Refill, weight: Weight, ended_by: str = "", close_when_full: bool = False
 ) -> Weighed:
     """Weigh the bottle being filled, post what moved, and close the refill where that was asked for.
 
-    The weighing is kept even where the refill can't be closed on it. Raises Closed; NotReady where
-    the supply bottle changed meanwhile; what `weigh_in` raises.
+    With `close_when_full` a weighing that proves a full fill closes it as *limit*. The weighing is
+    kept even where the refill can't be closed on it. Raises Closed; NotReady where the supply bottle
+    changed meanwhile; what `weigh_in` raises.
     """
     seen = draws_of(refill)
     with acts.begin(
@@ -63,6 +64,8 @@ def weigh_refill(
     ) as act:
         refill, draws = _locked(refill, seen)
         weighing, course = _weigh(act, refill, draws, weight)
+        if close_when_full and not ended_by and course.proves_full:
+            ended_by = "limit"
         if not ended_by:
             return Weighed(weighing)
         try:

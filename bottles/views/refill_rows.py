@@ -13,7 +13,6 @@ from bottles.physics.filling import percent_of_limit
 from bottles.rules.refill_flows import Flow
 from bottles.selectors.refill_lists import last_sources, last_weighings
 from bottles.selectors.refills import Course, course_of, courses_of, net_without_hose
-from bottles.selectors.scales import scale_uncertainty
 from bottles.services.overfull import timer_of
 from bottles.services.refill_books import flows_of
 from bottles.services.refill_steps import may_close
@@ -79,7 +78,7 @@ def page_context(refill: Refill, words: RefillWords, shop: Shop) -> dict[str, An
         "binds": BINDS.get(refill.decision.binds, refill.decision.binds), "edition": refill.decision.edition,
         "empty_weight": _as_read(course.before, course.before.tare.total_g if course.before else 0, refill, words),
         "full_weight": words.on_scale(refill.stop_at_g, refill.station.scale),
-        "left_at": _left_at(course, words), "wet": bool(last and last.wet), "proven_full": _proven(course),
+        "left_at": _left_at(course, words), "wet": bool(last and last.wet), "proven_full": course.proves_full,
         "opened": at(refill.opened_at, shop), "closed": at(refill.closed_at, shop), "looked": _looked(refill),
         "compared": compared(course, words),
     }  # fmt: skip
@@ -191,15 +190,6 @@ def _why_not(course: Course) -> str:
     except NotReady as why:
         return why.sentence
     return ""
-
-
-def _proven(course: Course) -> bool:
-    """Whether the last weighing proves a full fill: dry, line off, no less than the target within the scale's ±."""
-    last, scale = course.reads[-1] if course.reads else None, course.refill.station.scale
-    if last is None or last.wet or last.step != "disconnected":
-        return False
-    slack = 2 * scale_uncertainty(scale) + scale.resolution_g if scale else last.error_g
-    return last.net_g >= course.refill.target_g - slack
 
 
 def _as_read(weighing: Weighing | None, grams: int, refill: Refill, words: RefillWords) -> str:

@@ -91,8 +91,9 @@ class RefillPage(OfRefill):
 
     def act(self, form: WeighForm, person: User, key: uuid.UUID) -> str:
         found = steps.weigh_refill(
-            key=key, person=person, refill=self.refill, weight=form.weight(), ended_by=form.cleaned_data["ended_by"]
-        )
+            key=key, person=person, refill=self.refill, weight=form.weight(), ended_by=form.end_chosen(form.cleaned_data),
+            close_when_full=form.close_when_full,
+        )  # fmt: skip
         if found.closed:
             messages.success(self.request, "Weighed and closed.")
             return reverse("bottles:receipt", args=[self.refill.pk]) if "receipt" in self.request.POST else self.home

@@ -249,6 +249,22 @@ def test_a_second_weight_closes_it_and_the_receipt_says_so(client: Client, works
     assert client.get(reverse("bottles:receipt", args=[refill.pk])).content.count(b"<h1") == 1
 
 
+def test_a_weight_that_proves_a_full_fill_closes_it_and_a_short_one_does_not(works: Works, client: Any) -> None:
+    refill = works.open()
+    weigh(client, refill, gross="10.40 kg", ended_by="weighed")
+    refill.refresh_from_db()
+    assert refill.closed_at is None
+    weigh(client, refill, gross="11.01 kg", line="on", ended_by="weighed")
+    refill.refresh_from_db()
+    assert refill.closed_at is None  # the line still pulls
+    weigh(client, refill, gross="11.01 kg", wet="on", ended_by="weighed")
+    refill.refresh_from_db()
+    assert refill.closed_at is None  # ice may be part of it
+    weigh(client, refill, gross="11.01 kg", ended_by="weighed")
+    refill.refresh_from_db()
+    assert refill.ended_by == "limit"
+
+
 def test_a_wet_weight_isnt_called_full(client: Client, works: Works) -> None:
     refill = works.open()
     weigh(client, refill, gross="11.01 kg", wet="on", ended_by="limit")
