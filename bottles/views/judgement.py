@@ -7,6 +7,7 @@ from typing import Any
 
 from django.http import HttpRequest
 
+from bottles.models import Standing
 from bottles.rules.fitness import Judgement
 from bottles.views.reason_rows import IN_THE_SHOP, reason_rows
 from bottles.views.sections import Seen
@@ -32,6 +33,13 @@ AFTER_THE_LOOK = Verdict("yes", "May be filled, after the filler's look")
 FULL = Verdict("open", "Full: nothing more goes in")
 FULL_BY_ITS_WEIGHT = frozenset({"at-its-limit", "within-plus-minus"})
 IN_ITS_MONTH = Verdict("after", "May be filled; its test is due this month")
+FILLED_SHORT = Verdict("open", "Filled short, to hand over")
+SUPPLY = {
+    "yes": Verdict("yes", "May be emptied into another bottle"),
+    "only after": Verdict("after", "May be emptied only after…"),
+    "no": Verdict("no", "Must not be emptied into another bottle"),
+    "unknown": Verdict("unknown", "Can't be judged: not emptied until it can"),
+}
 EMPTYING = {
     "yes": "It may be emptied into another bottle.",
     "only after": "It may be emptied into another bottle only after what is marked below.",
@@ -63,18 +71,20 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     """The decision's frame, the limit with every figure behind it, what wasn't judged."""
     bottle, standing, book, judgement = seen.bottle, seen.standing, seen.book, seen.judgement
     words = words_for(request, seen.shop)
-    answer = verdict(judgement)
-    decides = [reason for reason in judgement.reasons if reason.severity != "explains" and "filling" in reason.about]
+    supply = bottle.use == "supply"  # what a supply bottle is asked is whether it may be emptied
+    answer, asked = (SUPPLY[judgement.may_be_emptied], "emptying") if supply else (verdict(judgement), "filling")
+    decides = [reason for reason in judgement.reasons if reason.severity != "explains" and asked in reason.about]
     if any(reason.severity == "refuses" for reason in decides):
         decides = [reason for reason in decides if reason.code != "look-owed"]  # nobody looks it over for a fill that can't be
-    lines = (limit_line(judgement, words), due_line(judgement, book.edition.words), EMPTYING[judgement.may_be_emptied])
+    other = _filling_line(standing, judgement) if supply else EMPTYING[judgement.may_be_emptied]
+    lines = (limit_line(judgement, words), due_line(judgement, book.edition.words), other)
     return {
         "kind": answer.kind,
         "word": answer.word,
         "lines": [line for line in lines if line],
         "full": is_full(judgement),
-        "may_fill": all(reason.code in IN_THE_SHOP for reason in decides if reason.severity != "warns"),
-        "refilled_now": any(reason.code == "in-open-refill" for reason in decides),
+        "may_fill": not supply and all(reason.code in IN_THE_SHOP for reason in decides if reason.severity != "warns"),
+        "refilled_now": any(reason.code == "in-open-refill" for reason in judgement.reasons),
         "reasons": reason_rows(decides, bottle, standing, words),
         "others": reason_rows((one for one in judgement.reasons if one not in decides), bottle, standing, words),
         "limits": [
@@ -86,6 +96,13 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
         "edition": book.edition.title,
         "edition_code": book.edition.code,
     }
+
+
+def _filling_line(standing: Standing, judgement: Judgement) -> str:
+    """What is said of filling a supply bottle."""
+    if standing.ownership is not None and standing.ownership.kind == "supplier":
+        return "The supplier's: never filled here, nor sent to test; it's swapped."
+    return f"Filling it: {verdict(judgement).word[0].lower()}{verdict(judgement).word[1:]}."
 
 
 def limit_line(judgement: Judgement, words: Words) -> str:

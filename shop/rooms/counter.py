@@ -12,7 +12,7 @@ from bottles.rules.fitness import Judgement
 from bottles.selectors import counter as selected
 from bottles.selectors.judging import rulebook
 from bottles.selectors.refill_lists import open_refills
-from bottles.views.judgement import FULL, first_reason, verdict
+from bottles.views.judgement import FILLED_SHORT, first_reason, verdict
 from bottles.views.reason_rows import in_own_units
 from bottles.views.refill_rows import refill_rows
 from bottles.views.refill_words import refill_words
@@ -48,7 +48,10 @@ def counter(request: HttpRequest) -> HttpResponse:
 
 def _bottle(one: Any, judgement: Judgement, words: Words, shop: Shop) -> dict[str, Any]:
     answer, promised = verdict(judgement), one.promised_at
-    reason = first_reason(judgement) if answer.kind not in ("yes", FULL.kind) else None
+    weighed_now = one.weighing is not None and "net" not in judgement.not_judged
+    if answer.kind in ("yes", "after") and weighed_now and one.weighing.step == "disconnected":
+        answer = FILLED_SHORT  # its refill is closed: it waits for its owner, not for nitrous
+    reason = first_reason(judgement) if answer.kind not in ("yes", "open") else None
     owner = one.ownership
     of_limit = f" of {words.mass(judgement.limit.grams)}" if judgement.limit.grams else ""
     return {

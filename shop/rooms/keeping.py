@@ -9,6 +9,7 @@ from django.http import Http404, HttpRequest, HttpResponse
 from django.shortcuts import render
 from django.urls import reverse
 
+from bottles.selectors.edition import edition_in_force
 from shop.base import clock
 from shop.base.models import Place, Policy, Shop
 from shop.base.paging import page_of
@@ -31,7 +32,7 @@ def settings(request: HttpRequest) -> HttpResponse:
     shop = Shop.objects.get()
     facts = [
         ("Name", shop.name),
-        ("Country of rules", f"{shop.country}{f', {shop.authority}' if shop.authority else ''}"),
+        ("Rule set", edition_in_force(shop, clock.today(shop)).title),
         ("Units", shop.get_units_display()),
         ("Time zone", shop.time_zone),
         ("Height above sea", f"{shop.height_m} m"),

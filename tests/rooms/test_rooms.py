@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
+import uuid
 from collections.abc import Callable
 from typing import Any
 
 import pytest
 from django.test import Client
+from django.urls import reverse
 from django.utils import timezone
 
 from shop.people.models import User
 from shop.rooms.office import BOOKS
+from tests.bottles.of_refill import Works
 from tests.factories import BottleFactory, CarFactory, CustomerFactory, PlaceFactory, owned, placed, weighed
 
 pytestmark = pytest.mark.django_db
@@ -111,3 +114,23 @@ def test_a_cars_page_shows_what_is_on_it_and_its_owners_other_bottles(
     assert [row.code for row in page.context["bottles"]] == [on.code]
     assert [(row.code, row.where) for row in page.context["others"]] == [(other.code, "on car 31")]
     assert client_of(technician).get("/cars/999999").status_code == 404
+
+
+def test_a_bottle_that_was_filled_short_waits_to_be_handed_over(
+    shop: Any, front_desk: User, client_of: Callable[..., Client]
+) -> None:
+    works = Works(shop, front_desk)
+    placed(works.bottle, "moved", place=PlaceFactory(kind="counter"), wanted="refill", happened_at=timezone.now())
+    refill = works.open()
+    weigh = {"form_key": str(uuid.uuid4()), "gross": "10.2 kg", "line": "off", "ended_by": "flow ceased"}
+    assert client_of(front_desk).post(reverse("bottles:refill", args=[refill.pk]), weigh).status_code == 302
+    html = client_of(front_desk).get(reverse("rooms:counter")).content.decode()
+    assert "Filled short, to hand over" in html
+
+
+def test_a_supply_bottle_leads_with_whether_it_may_be_emptied(
+    shop: Any, front_desk: User, client_of: Callable[..., Client]
+) -> None:
+    works = Works(shop, front_desk)
+    html = client_of(front_desk).get(works.supply.bottle.get_absolute_url()).content.decode()
+    assert "May be emptied into another bottle" in html
