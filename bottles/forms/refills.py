@@ -14,7 +14,7 @@ from shop.people.acting import ActForm
 
 LINE = [("on", "still connected"), ("off", "disconnected")]
 AS_WEIGHED = "weighed"
-ENDS = [(AS_WEIGHED, "as the scale tells: the limit if it's full, else not finished"), ("", "not finished yet"), *Refill.ENDS]
+ENDS = [(AS_WEIGHED, "as the scale tells"), ("", "not finished yet"), *Refill.ENDS]
 
 
 class WeighForm(ActForm):
@@ -27,7 +27,7 @@ class WeighForm(ActForm):
     line = forms.ChoiceField(label="The line is", choices=LINE, widget=forms.RadioSelect, initial="off")
     ended_by = forms.ChoiceField(
         label="What ended it", choices=ENDS, required=False, initial=AS_WEIGHED,
-        help_text="Closes the refill, once the line is disconnected.",
+        help_text="Left to the scale, the refill closes where the weight proves it full, line off and dry; else it stays open.",
     )
     wet = forms.BooleanField(label="The bottle is wet or frosted", required=False)
     supply_gross = MassField(label="The supply bottle weighs", required=False)
