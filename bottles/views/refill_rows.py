@@ -11,6 +11,7 @@ from django.urls import reverse
 from bottles.models import Refill, Weighing
 from bottles.physics.filling import percent_of_limit
 from bottles.rules.refill_flows import Flow
+from bottles.rules.tares import together
 from bottles.selectors.refill_lists import last_sources, last_weighings
 from bottles.selectors.refills import Course, course_of, courses_of, net_without_hose
 from bottles.services.overfull import timer_of
@@ -101,9 +102,10 @@ def compared(course: Course, words: RefillWords, number: int = 0) -> dict[str, s
     if not flows and number == len(course.draws) - 1 and course.refill.closed_at is None:
         return None  # not weighed since it was connected
     came, forecast = sum(flow.grams for flow in flows), draw.forecast
-    inside = forecast.low_g <= came <= forecast.high_g
+    error = together(flow.error_g for flow in flows)  # within the ± of the weighings it can't be told apart
+    inside = forecast.low_g - error <= came <= forecast.high_g + error
     return {
-        "forecast": words.span(forecast.low_g, forecast.high_g), "came": words.mass(came),
+        "forecast": words.span(forecast.low_g, forecast.high_g), "came": words.mass(came, plus_minus_g=error or None),
         "word": "within what was forecast" if inside else "less than forecast" if came < forecast.low_g else "more than forecast",
         "kind": "yes" if inside else "after",
     }  # fmt: skip
