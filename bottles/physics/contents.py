@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from bottles.physics.contents_words import sentence
+from bottles.physics.contents_words import SENTENCES
 from shop.physics.errors import OutOfRange
 from shop.physics.fluid import (
     ATMOSPHERE,
@@ -163,7 +163,7 @@ def contents_from_reading(
         codes.append("too_hot")
     return Contents(
         region, least, most, overfull, saturation, liquid, vapour, expected, agrees,
-        tuple((code, sentence(code)) for code in codes),
+        tuple((code, SENTENCES[code]) for code in codes),
     )  # fmt: skip
 
 

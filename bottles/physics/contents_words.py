@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-_SENTENCES = {
+from collections.abc import Mapping
+
+SENTENCES: Mapping[str, str] = {
     "liquid_unknown": (
         "While any liquid is left, pressure and temperature can't tell how much. Weigh the bottle to know."
     ),
@@ -47,34 +49,3 @@ _SENTENCES = {
         "of its safety disc and let it cool."
     ),
 }
-
-
-def sentence(code: str) -> str:
-    """Look up the default sentence of a warning.
-
-    Parameters
-    ----------
-    code : str, the warning's code [-]
-
-    Returns
-    -------
-    str, one or two sentences: what it means and what to do [-]
-
-    Assumptions
-    -----------
-    None.
-
-    Valid for
-    ---------
-    The codes of this module.
-
-    Raises
-    ------
-    KeyError
-        For a code that isn't one of them.
-
-    References
-    ----------
-    Common practice, no source.
-    """
-    return _SENTENCES[code]

@@ -8,7 +8,7 @@ from math import floor, sqrt
 
 from bottles.physics.condensation import PRIOR, Condensation, band, between
 from bottles.physics.contents import NEAR_CRITICAL, SCALE_TOLERANCE, THERMOMETER_TOLERANCE
-from bottles.physics.forecast_words import sentence
+from bottles.physics.forecast_words import SENTENCES
 from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, Start, start_vessel
 from bottles.physics.transfer import (
     PHYSICS_VERSION,
@@ -238,7 +238,7 @@ def _standing_codes(
 
 def _told(codes: list[str]) -> tuple[tuple[str, str], ...]:
     """Codes with their sentences."""
-    return tuple((code, sentence(code)) for code in codes)
+    return tuple((code, SENTENCES[code]) for code in codes)
 
 
 def _reaches(room: float, low: float, likely: float | None, high: float) -> str:

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-_SENTENCES = {
+from collections.abc import Mapping
+
+SENTENCES: Mapping[str, str] = {
     "receiver_full": (
         "The bottle to fill already holds its limit or more. Don't add to it; above its limit it must come down first."
     ),
@@ -32,34 +34,3 @@ _SENTENCES = {
         "between two limits (common practice, no source) until refills are logged."
     ),
 }
-
-
-def sentence(code: str) -> str:
-    """Look up the default sentence of a warning.
-
-    Parameters
-    ----------
-    code : str, the warning's code [-]
-
-    Returns
-    -------
-    str, one or two sentences: what it means and what to do [-]
-
-    Assumptions
-    -----------
-    None.
-
-    Valid for
-    ---------
-    The codes of this module.
-
-    Raises
-    ------
-    KeyError
-        For a code that isn't one of them.
-
-    References
-    ----------
-    Common practice, no source.
-    """
-    return _SENTENCES[code]

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from math import expm1, log, log1p, pi
 
 from bottles.physics.contents import NEAR_CRITICAL, one_phase_temperature, pressures_when_hot
-from bottles.physics.heating_words import sentence
+from bottles.physics.heating_words import SENTENCES
 from bottles.physics.vessel import HOTTEST, Vessel, pressure_and_energy
 from shop.physics.errors import NoSolution, OutOfRange
 from shop.physics.fluid import P_MAX, T_MAX
@@ -225,7 +225,7 @@ def heat_to_pressure(
     return Heating(
         target, energy, seconds, one_phase, becomes,
         pressures_when_hot(net, volume, (328.15,))[0],
-        tuple((code, sentence(code)) for code in codes),
+        tuple((code, SENTENCES[code]) for code in codes),
     )  # fmt: skip
 
 

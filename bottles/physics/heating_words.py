@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-_SENTENCES = {
+from collections.abc import Mapping
+
+SENTENCES: Mapping[str, str] = {
     "already_there": "The bottle already shows this pressure or more. Don't warm it.",
     "never_gets_there": (
         "With this power the bottle never gets there: it loses as much to the room. Wrap it, "
@@ -18,34 +20,3 @@ _SENTENCES = {
     "boils_dry": ("On the way the last liquid boils off: from there pressure hardly rises. Refill the bottle instead."),
     "near_critical": "Near and above 36.4 °C these figures are rough. Go by the gauge.",
 }
-
-
-def sentence(code: str) -> str:
-    """Look up the default sentence of a warning.
-
-    Parameters
-    ----------
-    code : str, the warning's code [-]
-
-    Returns
-    -------
-    str, one or two sentences: what it means and what to do [-]
-
-    Assumptions
-    -----------
-    None.
-
-    Valid for
-    ---------
-    The codes of this module.
-
-    Raises
-    ------
-    KeyError
-        For a code that isn't one of them.
-
-    References
-    ----------
-    Common practice, no source.
-    """
-    return _SENTENCES[code]

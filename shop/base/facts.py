@@ -24,10 +24,8 @@ class FactChanged(Exception):
         super().__init__(type(self).__doc__)
 
 
-class Fact(models.Model):
-    """A row that is inserted only; `act` says who recorded it, when, and by which form."""
-
-    act = models.ForeignKey("base.Act", on_delete=models.PROTECT, related_name="+")
+class InsertedOnce(models.Model):
+    """A row that is inserted and never changed again."""
 
     class Meta:
         abstract = True
@@ -41,11 +39,18 @@ class Fact(models.Model):
         raise FactChanged
 
 
+class Fact(InsertedOnce):
+    """A row that is inserted only; `act` says who recorded it, when, and by which form."""
+
+    act = models.ForeignKey("base.Act", on_delete=models.PROTECT, related_name="+")
+
+    class Meta:
+        abstract = True
+
+
 def fact_tables() -> list[str]:
     """Return the tables that hold facts, in order of name."""
-    from shop.base.models import Act
-
-    return sorted(m._meta.db_table for m in apps.get_models() if m is Act or issubclass(m, Fact))
+    return sorted(model._meta.db_table for model in apps.get_models() if issubclass(model, InsertedOnce))
 
 
 def protect_after_migrate(**kwargs: Any) -> None:

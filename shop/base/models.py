@@ -15,10 +15,10 @@ from django.core.validators import MaxValueValidator, MinValueValidator
 from django.db import models
 from django.utils import timezone
 
-from shop.base.facts import Fact, FactChanged
+from shop.base.facts import Fact, InsertedOnce
 
 
-class Act(models.Model):
+class Act(InsertedOnce):
     """One submission: who, when, what, and the key of the form that carried it."""
 
     key = models.UUIDField(unique=True)
@@ -36,14 +36,6 @@ class Act(models.Model):
 
     def __str__(self) -> str:
         return f"{self.code} {self.subject}"
-
-    def save(self, *args: object, **kwargs: object) -> None:
-        if not self._state.adding:
-            raise FactChanged
-        super().save(*args, **kwargs)  # type: ignore[arg-type]
-
-    def delete(self, *args: object, **kwargs: object) -> tuple[int, dict[str, int]]:
-        raise FactChanged
 
 
 class Shop(models.Model):
