@@ -116,9 +116,9 @@ def test_the_next_code_passes_by_what_was_typed_in_another_way(shop: Any) -> Non
 
 
 def test_a_typed_code_is_kept_in_capitals_and_never_given_twice(shop: Any) -> None:
-    assert bottle(code=" nos-7 ").code == "NOS-7"
+    assert bottle(code=" kit-7 ").code == "KIT-7"
     with pytest.raises(CodeTaken):
-        bottle(code="NOS-7", serial="other")
+        bottle(code="KIT-7", serial="other")
     assert Bottle.objects.count() == 1
 
 
