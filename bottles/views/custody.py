@@ -8,6 +8,7 @@ from typing import Any
 from django.contrib import messages
 
 from bottles.forms.custody import CheckInForm, HandOverForm, MoveForm, WantedForm, wanted_words
+from bottles.models import Custody, Standing
 from bottles.selectors.contents import holding_of
 from bottles.selectors.judging import judge_bottle, rulebook
 from bottles.services import custody
@@ -16,7 +17,17 @@ from bottles.views.refill_words import refill_words
 from shop.people.models import User
 
 
-class CheckIn(BottleActView):
+class CustodyView(BottleActView):
+    """Goes back to the bottle, and says where what was entered late changed nothing of today."""
+
+    def after(self, kept: Custody) -> str:
+        """Return the bottle's page; tell where something later already says where it is."""
+        if Standing.objects.get(bottle=self.bottle).custody_id != kept.pk:
+            messages.info(self.request, "Kept with the time at which it happened. Something later says where the bottle is now.")
+        return self.bottle.get_absolute_url()
+
+
+class CheckIn(CustodyView):
     """Take a bottle in."""
 
     form_class = CheckInForm
@@ -30,14 +41,14 @@ class CheckIn(BottleActView):
 
     def act(self, form: CheckInForm, person: User, key: uuid.UUID) -> str:
         data = form.cleaned_data
-        custody.check_in(
+        kept = custody.check_in(
             key=key, person=person, bottle=self.bottle, place=data["place"], brought_by=data["brought_by"],
             wanted=wanted_words(data), promised_at=data["promised_at"], happened_at=data["happened_at"],
         )
-        return self.bottle.get_absolute_url()
+        return self.after(kept)
 
 
-class Move(BottleActView):
+class Move(CustodyView):
     """Put a bottle at another place."""
 
     form_class = MoveForm
@@ -48,10 +59,10 @@ class Move(BottleActView):
 
     def act(self, form: MoveForm, person: User, key: uuid.UUID) -> str:
         data = form.cleaned_data
-        custody.move(
+        kept = custody.move(
             key=key, person=person, bottle=self.bottle, place=data["place"], happened_at=data["happened_at"]
         )
-        return self.bottle.get_absolute_url()
+        return self.after(kept)
 
 
 class Want(BottleActView):
@@ -75,7 +86,7 @@ class Want(BottleActView):
         return self.bottle.get_absolute_url()
 
 
-class HandOver(BottleActView):
+class HandOver(CustodyView):
     """Give a bottle out."""
 
     form_class = HandOverForm
@@ -107,14 +118,14 @@ class HandOver(BottleActView):
 
     def act(self, form: HandOverForm, person: User, key: uuid.UUID) -> str:
         data, holds = form.cleaned_data, self.holds
-        custody.hand_over(
+        kept = custody.hand_over(
             key=key, person=person, bottle=self.bottle, kind=data["kind"], to_whom=data["to_whom"], car=data["car"],
             limit_g=judge_bottle(self.bottle, shop=self.shop).limit.grams, happened_at=data["happened_at"],
             reason=data["reason"],
         )
         went = dict(form.fields["kind"].choices)[data["kind"]]  # type: ignore[attr-defined]
         messages.success(self.request, f"{self.bottle.code} went {went}; {holds}.")
-        return self.bottle.get_absolute_url()
+        return self.after(kept)
 
 
 def owner_name(standing: Any) -> str:

@@ -229,3 +229,14 @@ def test_a_supply_bottle_that_feeds_an_open_refill_stays(shop: Any) -> None:
         gave(source)
     assert refusal.value.code == "open refill"
     assert Standing.objects.get(bottle=source).is_in
+
+
+def test_a_hand_over_entered_late_is_said_to_change_nothing_of_today(shop: Any, front_desk: Any, client_of: Any) -> None:
+    bottle, place = BottleFactory(), PlaceFactory()
+    took_in(bottle, place, happened_at=clock.now() - timedelta(days=2))
+    custody.move(key=uuid.uuid4(), person=None, bottle=bottle, place=place)
+    earlier = (clock.now() - timedelta(days=1)).astimezone(clock.zone(shop))
+    form = {"form_key": str(uuid.uuid4()), "place": place.pk, "happened_at": f"{earlier:%Y-%m-%dT%H:%M}"}
+    answer = client_of(front_desk).post(f"/b/{bottle.code}/move", form, follow=True)
+    assert "Something later says where the bottle is now" in answer.content.decode()
+    assert Custody.objects.filter(bottle=bottle).count() == 3
