@@ -169,8 +169,15 @@ class AnotherSupply(OfRefill):
         if "forecast" in request.POST:
             form = self.form(request.POST)
             form.look_only()
+            if request.headers.get("HX-Request"):  # asked while typing: the forecast's part alone
+                part = self.part(form) | {"bottle": self.refill.bottle}
+                return render(request, "bottles/_forecast.html", part)
             return self.show(form)
         return super().post(request, *args, **kwargs)
+
+    def part(self, form: AnotherSupplyForm) -> dict[str, Any]:
+        """The variables of the forecast's part."""
+        return forecast_part(form, self.refill.bottle, self.judged, refill_words(self.request, self.shop))
 
     def asked(self, form: AnotherSupplyForm) -> Asked:
         """What the forecast is asked for: the limit that the refill was opened with."""
@@ -193,8 +200,7 @@ class AnotherSupply(OfRefill):
         return super().context() | {"heading": f"Fill {self.refill.bottle.code} on from another supply bottle"}
 
     def show(self, form: Any, *, status: int = 200) -> HttpResponse:
-        words = refill_words(self.request, self.shop)
-        part = forecast_part(form, self.refill.bottle, self.judged, words) if form.is_bound else {"forecast": None}
+        part = self.part(form) if form.is_bound else {"forecast": None}
         context = {"form": form, "submit": self.submit} | self.context() | part
         return render(self.request, self.template_name, context, status=status)
 

@@ -335,6 +335,9 @@ def test_it_goes_on_from_another_supply_of_the_station(client: Client, works: Wo
     }
     looked = client.post(address, typed | {"forecast": "yes"})
     assert looked.status_code == 200 and "Goes over:" in words_of(looked)
+    while_typing = client.post(address, typed | {"forecast": "yes"}, headers={"HX-Request": "true"})
+    assert b"Goes over" in while_typing.content and b"<html" not in while_typing.content
+    assert refill.draws.count() == 1  # nothing was saved by looking
     assert client.post(address, typed).status_code == 302
     assert [draw.source.code for draw in refill.draws.order_by("id")] == ["S-07", "S-09"]
     assert holds(works.bottle) == 2_000
