@@ -51,7 +51,7 @@ def test_a_child_that_stops_is_started_again_with_growing_pauses_and_said_so(sup
         supervisor.look(now)
         assert one.process is not None
         one.started = now
-    assert pauses == [1, 2, 4, 8, 16, 32, LONGEST_PAUSE, LONGEST_PAUSE]
+    assert pauses == pytest.approx([1, 2, 4, 8, 16, 32, LONGEST_PAUSE, LONGEST_PAUSE])
     assert "bell-ringer" in supervisor.said[0]
     assert "exit code 3" in supervisor.said[0]
     assert len(supervisor.said) == 16  # each stop and each start
