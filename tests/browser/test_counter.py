@@ -118,6 +118,17 @@ def test_a_second_fill_in_a_row_asks_for_two_weighings_and_the_look(new_page: Ca
     assert Refill.objects.get(bottle=bottle).ended_by == "limit"
 
 
+def test_going_on_from_another_supply_is_forecast_while_typing(new_page: Callable[..., Page], desk: Desk) -> None:
+    desk.connected("S-09")
+    refill = desk.open(desk.bottle_to_fill("T-0432"))
+    page = new_page()
+    steps.sign_in(page, "front desk")
+    page.goto(f"/refills/{refill.pk}/another-supply")
+    page.get_by_label("The bottle being filled weighs now").fill("8.42 kg")
+    expect(page.locator("#forecast")).to_contain_text("Goes over")
+    assert refill.draws.count() == 1  # nothing was saved by looking
+
+
 def fit_for_a_phone(page: Page) -> None:
     assert steps.overflow(page) == 0, page.url
     assert steps.too_small(page) == [], page.url
