@@ -126,6 +126,8 @@ def actions(bottle: Bottle, standing: Standing, roles: frozenset[Role], told: di
             continue
         if told["refilled_now"] and action.page in WITHOUT_A_REFILL:
             continue  # its own refill takes the weights, and holds it until it's closed
+        if action.page == "bottles:fill" and not told["offers_fill"]:
+            continue  # the answer above says why, and what to do
         try:
             url = reverse(action.page, args=[bottle.code])
         except NoReverseMatch:

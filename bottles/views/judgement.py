@@ -73,9 +73,10 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     words = words_for(request, seen.shop)
     supply = bottle.use == "supply"  # what a supply bottle is asked is whether it may be emptied
     answer, asked = (SUPPLY[judgement.may_be_emptied], "emptying") if supply else (verdict(judgement), "filling")
-    decides = [reason for reason in judgement.reasons if reason.severity != "explains" and asked in reason.about]
-    if any(reason.severity == "refuses" for reason in decides):
-        decides = [reason for reason in decides if reason.code != "look-owed"]  # nobody looks it over for a fill that can't be
+    stopped = any(reason.severity in ("refuses", "unknown") and "filling" in reason.about for reason in judgement.reasons)
+    # Nobody looks a bottle over for a fill that can't be.
+    shown = [reason for reason in judgement.reasons if not (stopped and reason.code == "look-owed")]
+    decides = [reason for reason in shown if reason.severity != "explains" and asked in reason.about]
     other = _filling_line(standing, judgement) if supply else EMPTYING[judgement.may_be_emptied]
     lines = (limit_line(judgement, words), due_line(judgement, book.edition.words), other)
     return {
@@ -84,9 +85,10 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
         "lines": [line for line in lines if line],
         "full": is_full(judgement),
         "may_fill": not supply and all(reason.code in IN_THE_SHOP for reason in decides if reason.severity != "warns"),
+        "offers_fill": not stopped,
         "refilled_now": any(reason.code == "in-open-refill" for reason in judgement.reasons),
         "reasons": reason_rows(decides, bottle, standing, words),
-        "others": reason_rows((one for one in judgement.reasons if one not in decides), bottle, standing, words),
+        "others": reason_rows((one for one in shown if one not in decides), bottle, standing, words),
         "limits": [
             [figure.label, words.mass(figure.grams), figure.origin, figure.source.citation]
             for figure in sorted(judgement.limit.candidates, key=lambda each: each.grams)

@@ -14,7 +14,16 @@ from django.utils import timezone
 from shop.people.models import User
 from shop.rooms.office import BOOKS
 from tests.bottles.of_refill import Works
-from tests.factories import BottleFactory, CarFactory, CustomerFactory, PlaceFactory, owned, placed, weighed
+from tests.factories import (
+    BottleFactory,
+    CarFactory,
+    ConditionFactory,
+    CustomerFactory,
+    PlaceFactory,
+    owned,
+    placed,
+    weighed,
+)
 
 pytestmark = pytest.mark.django_db
 
@@ -134,3 +143,14 @@ def test_a_supply_bottle_leads_with_whether_it_may_be_emptied(
     works = Works(shop, front_desk)
     html = client_of(front_desk).get(works.supply.bottle.get_absolute_url()).content.decode()
     assert "May be emptied into another bottle" in html
+
+
+def test_a_bottle_that_must_not_be_filled_offers_no_filling(
+    shop: Any, front_desk: User, client_of: Callable[..., Client]
+) -> None:
+    works = Works(shop, front_desk)
+    address = reverse("bottles:fill", args=[works.bottle.code])
+    before = client_of(front_desk).get(works.bottle.get_absolute_url()).content.decode()
+    assert f'href="{address}"' in before
+    ConditionFactory(bottle=works.bottle, code="dent")
+    assert f'href="{address}"' not in client_of(front_desk).get(works.bottle.get_absolute_url()).content.decode()
