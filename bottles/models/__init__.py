@@ -1,6 +1,8 @@
 """The tables of the bottles app, one concept a file."""
 
 from bottles.models.bottle import Bottle, Custody, Ownership
+from bottles.models.day_plan import DayPlan, DayPlanResult
+from bottles.models.fit import Fit
 from bottles.models.movement import Account, Delivery, Line, Movement
 from bottles.models.refill import Decision, Draw, Forecast, Refill, RefillCheck
 from bottles.models.scale import Scale, ScaleCheck
@@ -11,8 +13,8 @@ from bottles.models.tare import Tare, TarePart
 from bottles.models.weighing import Weighing, WeighingStrike
 
 __all__ = [
-    "Account", "Bottle", "Condition", "ConditionEnd", "Custody", "Decision", "Delivery", "Draw",
-    "Forecast", "Line", "Movement", "Ownership", "Refill", "RefillCheck", "Scale", "ScaleCheck",
+    "Account", "Bottle", "Condition", "ConditionEnd", "Custody", "DayPlan", "DayPlanResult", "Decision",
+    "Delivery", "Draw", "Fit", "Forecast", "Line", "Movement", "Ownership", "Refill", "RefillCheck", "Scale", "ScaleCheck",
     "Stamp", "StampStrike", "Standing", "Station", "Supply", "Tare", "TarePart", "Weighing",
     "WeighingStrike",
 ]

@@ -56,6 +56,8 @@ class Bottle(models.Model):
     wall = models.CharField(max_length=10, choices=WALLS, default="unknown")
     alloy = models.CharField(max_length=40, blank=True)
     dip_tube = models.CharField(max_length=8, choices=DIP_TUBES, default="unknown")
+    below_tube_ml = models.PositiveIntegerField(null=True)  # liquid that the dip tube's end doesn't reach; null: not known
+    below_tube_typed = models.CharField(max_length=64, blank=True)
     outlet = models.CharField(max_length=60, blank=True)
     disc = models.CharField(max_length=60, blank=True)  # safety disc: burst pressure as marked
     use = models.CharField(max_length=8, choices=USES, default="car")

@@ -10,6 +10,7 @@ from django.conf import settings
 from django.db import models
 
 from bottles.models.bottle import Bottle
+from bottles.models.fit import Fit
 from bottles.models.station import Station
 from shop.base.facts import Fact
 
@@ -91,6 +92,7 @@ class Forecast(Fact):
     station = models.ForeignKey(Station, on_delete=models.PROTECT, related_name="+")
     readings = models.JSONField()  # {name: {"typed": …, "stored": …}}
     physics_version = models.CharField(max_length=20)
+    fit = models.ForeignKey(Fit, null=True, on_delete=models.PROTECT, related_name="+")  # null: the prior
     low_g = models.PositiveIntegerField()
     likely_g = models.PositiveIntegerField(null=True)  # null: the supply bottle was known by a reading alone
     high_g = models.PositiveIntegerField()

@@ -12,8 +12,6 @@ from shop.base.models import Place
 class Station(models.Model):
     """Supply bottles, a hose, a scale for the bottle to fill, one for the supply or none."""
 
-    ENTRIES = [("dip", "under the vapour, through a dip tube"), ("spray", "sprayed through the vapour")]
-
     code = models.CharField(max_length=20, unique=True)
     name = models.CharField(max_length=80)
     place = models.ForeignKey(Place, null=True, blank=True, on_delete=models.PROTECT, related_name="+")
@@ -31,6 +29,10 @@ class Station(models.Model):
     thermometer_tolerance_mk = models.PositiveIntegerField(default=1000)
     pumped = models.BooleanField(default=False)
     pump_note = models.CharField(max_length=200, blank=True)  # limits from its plate
+    pump_most_pa = models.PositiveIntegerField(null=True)  # highest delivery pressure on its plate
+    pump_most_typed = models.CharField(max_length=64, blank=True)
+    pump_least_pa = models.PositiveIntegerField(null=True)  # lowest pressure at its inlet
+    pump_least_typed = models.CharField(max_length=64, blank=True)
     active = models.BooleanField(default=True)
     version = models.PositiveIntegerField(default=1)
 

@@ -92,6 +92,9 @@ class Place(models.Model):
     kind = models.CharField(max_length=12, choices=KINDS)
     outdoors = models.BooleanField(default=False)
     limit_g = models.PositiveIntegerField(null=True, blank=True)
+    coldest_mk = models.PositiveIntegerField(null=True, blank=True)  # of a freezer or bath
+    coldest_typed = models.CharField(max_length=64, blank=True)
+    takes_at_once = models.PositiveSmallIntegerField(null=True, blank=True)  # bottles that it chills together
     active = models.BooleanField(default=True)
     version = models.PositiveIntegerField(default=1)
 
