@@ -20,7 +20,7 @@ class Vessel:
 
     `air` is the amount of air inside as pressure times volume over temperature [J/K];
     `liquid_pickup` says that liquid leaves first (dip tube upright, or no dip tube and
-    lying upside down).
+    lying upside down); `below_tube_m3` is the liquid that the tube's end doesn't reach.
     """
 
     volume_m3: float
@@ -29,6 +29,7 @@ class Vessel:
     temperature_k: float
     air: float = 0.0
     liquid_pickup: bool = True
+    below_tube_m3: float = 0.0
 
     def __post_init__(self) -> None:
         """Refuse what no bottle can be."""
@@ -36,6 +37,8 @@ class Vessel:
             raise OutOfRange("capacity", "A bottle's capacity is above nothing. Check it and its unit.")
         if not 0.0 <= self.wall_j_k < 1e9:
             raise OutOfRange("wall", "A wall's mass can't be below nothing. Check it and its unit.")
+        if not 0.0 <= self.below_tube_m3 < 0.5 * self.volume_m3:
+            raise OutOfRange("below_tube", "A dip tube reaches into the lower half of its bottle. Check what it leaves.")
         if not 0.0 <= self.net_kg < 1e6:
             raise OutOfRange("net", "Contents can't be below nothing. Weigh again, check the tare.")
         if not COLDEST - 1e-9 <= self.temperature_k <= HOTTEST + 1e-9:
