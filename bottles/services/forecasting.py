@@ -11,6 +11,7 @@ from itertools import product
 from typing import Any
 
 from bottles.models import Bottle, Forecast, Station, Supply
+from bottles.physics.condensation import PRIOR, Condensation
 from bottles.physics.contents import Contents, contents_from_reading
 from bottles.physics.forecast import Forecast as Transferred
 from bottles.physics.forecast import Tolerances, forecast
@@ -53,6 +54,7 @@ class Readings:
     gauge: Entry | None = None
     supply_weight: Entry | None = None  # gross, on the station's supply scale
     bottle_weight: Entry | None = None  # gross, before filling
+    hose_pull_g: int = 0  # of that weight, where the line was on
     taken: str = "wall"
     bottle_taken: str = "wall"
     start: str = WEIGHED
@@ -77,10 +79,31 @@ class Held:
 
 
 @dataclass(frozen=True, slots=True)
+class Pair:
+    """The two bottles as the physics takes them, by their likeliest walls, and how well they were read."""
+
+    source: Vessel
+    receiver_volume_m3: float
+    receiver_wall_j_k: float
+    receiver_temperature_k: float
+    limit_kg: float  # what it's filled to: the target
+    start: Start
+    source_range_kg: tuple[float, float] | None
+    line_volume_m3: float
+    condensation: Condensation
+    tolerances: Tolerances
+
+    def worked_out(self) -> Transferred:
+        """The forecast of these two."""
+        return forecast(**{name: getattr(self, name) for name in self.__dataclass_fields__})
+
+
+@dataclass(frozen=True, slots=True)
 class Answer:
     """Everything that the page says of a refill to come; masses in grams."""
 
     readings: Readings
+    pair: Pair
     transferred: Transferred
     contents: Contents | None  # what the gauge allows; None where it wasn't read
     source: Held | None
@@ -143,14 +166,15 @@ def work_out(asked: Asked, readings: Readings) -> Answer:
         raise Refusal("A target must be above nothing. Leave it empty for the fill limit.", code="target", field="target")
     start = _start(asked, readings, own, notes)
     spread = _spread(contents, held, _contents(asked, readings, None, []) if held and held.origin == BOOKS else None)
-    answers = _each_wall(asked, readings, (source, own), start, held, spread, target_g, notes)
+    pairs = _each_wall(asked, readings, (source, own), start, held, spread, target_g, notes)
+    answers = [pair.worked_out() for pair in pairs]
     main = answers[0]
     likely = [one.likely_kg for one in answers if one.likely_kg is not None]
     danger = contents is not None and _dangerous(contents, held)
     resolved = contents is not None and contents.agrees is True and held is not None and held.origin != BOOKS
     left = [one.source_left_kg for one in answers if one.source_left_kg is not None]
     return Answer(
-        readings=readings, transferred=main, contents=contents, source=held,
+        readings=readings, pair=pairs[0], transferred=main, contents=contents, source=held,
         start_g=round((target_g / 1000 - main.room_kg) * 1000) if main.room_kg else target_g,
         target_g=target_g,
         low_g=int(min(one.low_kg for one in answers) * 1000),
@@ -251,7 +275,7 @@ def _start(asked: Asked, readings: Readings, known: Known, notes: list[tuple[str
     """How the bottle to fill starts, and what the scale has to say about that."""
     net = known.grams if known.still_as_weighed else None
     if readings.bottle_weight is not None and known.tare is not None:
-        net = readings.bottle_weight.stored - known.tare.total_g
+        net = readings.bottle_weight.stored - readings.hose_pull_g - known.tare.total_g
         if net < -known.error_on(asked.supply.station.scale):
             raise Refusal(
                 "The bottle to fill weighs less than its tare. Read the scale again, and check that what its tare list names "
@@ -286,8 +310,8 @@ def _vented_g(asked: Asked, readings: Readings, ambient_pa: float) -> int:
 def _each_wall(
     asked: Asked, readings: Readings, known: tuple[Known, Known], start: Start, held: Held | None,
     spread: tuple[float, float] | None, target_g: int, notes: list[tuple[str, str]],
-) -> list[Transferred]:  # fmt: skip
-    """Forecast for each wall that the two bottles may have; the first one is shown in full."""
+) -> list[Pair]:  # fmt: skip
+    """The two bottles with each wall that they may have; the first pair is shown in full."""
     bottle, source, station = asked.bottle, asked.supply.bottle, asked.supply.station
     source_walls, own_walls = walls_by(source, known[0].tare), walls_by(bottle, known[1].tare)
     notes.extend(_wall_notes(source, source_walls) + _wall_notes(bottle, own_walls))
@@ -305,13 +329,13 @@ def _each_wall(
             readings.supply_temperature.stored / 1000, liquid_pickup=liquid is not False,
         )  # fmt: skip
         found.append(
-            forecast(
+            Pair(
                 source=supply, receiver_volume_m3=(bottle.capacity_ml or 0) / 1e6, receiver_wall_j_k=own_wall,
                 receiver_temperature_k=readings.bottle_temperature.stored / 1000, limit_kg=target_g / 1000, start=start,
-                source_range_kg=spread, line_volume_m3=line_volume_m3(station),
+                source_range_kg=spread, line_volume_m3=line_volume_m3(station), condensation=PRIOR,
                 tolerances=replace(Tolerances(), thermometer_k=degrees, scale_kg=scale_kg),
             )
-        )
+        )  # fmt: skip
     return found
 
 
