@@ -18,6 +18,7 @@ from bottles.services.overfull import timer_of
 from bottles.services.refill_books import flows_of
 from bottles.services.refill_steps import may_close
 from bottles.services.weighing import tare_at
+from bottles.views.forecast_place import came_from, place
 from bottles.views.forecast_words import stop_words
 from bottles.views.refill_words import RefillWords
 from shop.base import clock
@@ -93,22 +94,17 @@ def section_rows(refills: Sequence[Refill], words: RefillWords, shop: Shop) -> l
     return rows
 
 
-def compared(course: Course, words: RefillWords, number: int = 0) -> dict[str, str] | None:
+def compared(course: Course, words: RefillWords, number: int = 0) -> dict[str, Any] | None:
     """What was forecast for a supply bottle, beside what came over from it; None without either."""
     draw = course.draws[number] if course.draws else None
     if draw is None or draw.forecast is None or not course.reads:
         return None
+    last = number == len(course.draws) - 1
     flows = [flow for flow in flows_of(course) if flow.draw == number and flow.kind in ("arrived", "found", "found beyond")]
-    if not flows and number == len(course.draws) - 1 and course.refill.closed_at is None:
+    if not flows and last and course.refill.closed_at is None:
         return None  # not weighed since it was connected
-    came, forecast = sum(flow.grams for flow in flows), draw.forecast
     error = together(flow.error_g for flow in flows)  # within the ± of the weighings it can't be told apart
-    inside = forecast.low_g - error <= came <= forecast.high_g + error
-    return {
-        "forecast": words.span(forecast.low_g, forecast.high_g), "came": words.mass(came, plus_minus_g=error or None),
-        "word": "within what was forecast" if inside else "less than forecast" if came < forecast.low_g else "more than forecast",
-        "kind": "yes" if inside else "after",
-    }  # fmt: skip
+    return place(draw.forecast, came_from(course.refill, sum(flow.grams for flow in flows), error, last=last), words)
 
 
 def at(instant: Any, shop: Shop) -> str:

@@ -230,7 +230,9 @@ def receipt(request: HttpRequest, pk: int) -> HttpResponse:
     shop = Shop.objects.get()
     words = refill_words(request, shop)
     context = {"refill": refill, "bottle": refill.bottle, "shop": shop, "back_url": reverse("bottles:refill", args=[pk])}
-    return render(request, "bottles/receipt.html", context | page_context(refill, words, shop))
+    context |= page_context(refill, words, shop)
+    context["placed"] = [draw for draw in context["draws"] if draw["compared"]]
+    return render(request, "bottles/receipt.html", context)
 
 
 def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
