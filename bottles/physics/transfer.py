@@ -12,9 +12,10 @@ from dataclasses import dataclass, replace
 
 from bottles.physics.vessel import HEAT, Vessel, pressure_and_energy, settle
 from bottles.physics.wall_condensing import Mark, slow_filling
-from bottles.physics.withdrawal import Adiabatic, Held
+from bottles.physics.withdrawal import Adiabatic, Held, mass_without_reach
 from shop.physics.fluid import T_SATURATION_MAX, engine
 from shop.physics.roots import find_root, first_true
+from shop.physics.saturation_table import saturated
 
 PHYSICS_VERSION = "transfer 1"
 FILL_LIMIT = "fill limit"
@@ -192,9 +193,11 @@ def line_loss(source: Vessel, line_volume_m3: float) -> float:
     density = source.net_kg / source.volume_m3
     t = source.temperature_k
     if t <= T_SATURATION_MAX:
-        _, rho_l, rho_v, _, _ = engine().saturation(t)
+        side = saturated(t)
+        _, rho_l, rho_v, _, _ = side
         if rho_v < density < rho_l:
-            density = rho_l if source.liquid_pickup else rho_v
+            reached = source.net_kg > mass_without_reach(side, source.volume_m3, source.below_tube_m3)
+            density = rho_l if source.liquid_pickup and reached else rho_v
     return min(density * line_volume_m3, 0.5 * source.net_kg)
 
 
@@ -275,7 +278,8 @@ def wall_condensing(transfer: Transfer, limit_kg: float) -> Outcome:
     share = (moved - before.moved_kg) / span if span > 0.0 else 0.0
     t2 = before.temperature_k + share * (after.temperature_k - before.temperature_k)
     p2 = before.pressure_pa + share * (after.pressure_pa - before.pressure_pa)
-    return _outcome(transfer, moved, stopped, t2, p2)
+    # At the end of the liquid itself rounding mustn't say that a drop is left.
+    return _outcome(transfer, moved, stopped, t2, p2, dry=stopped == LIQUID_OUT)
 
 
 def held(transfer: Transfer, limit_kg: float) -> Outcome:
@@ -354,7 +358,7 @@ def _stop(transfer: Transfer, limit_kg: float, free: Callable[[], float]) -> tup
     return moved, EQUAL
 
 
-def _outcome(transfer: Transfer, moved: float, stopped: str, t2: float, p2: float) -> Outcome:
+def _outcome(transfer: Transfer, moved: float, stopped: str, t2: float, p2: float, *, dry: bool = False) -> Outcome:
     """Put the supply's end beside the receiver's; nothing moved leaves the line empty."""
     given = moved + transfer.line_kg if moved > 0.0 else 0.0
     source = transfer.path.after(given)
@@ -367,7 +371,7 @@ def _outcome(transfer: Transfer, moved: float, stopped: str, t2: float, p2: floa
         source.pressure_pa,
         p2,
         stopped,
-        not source.liquid,
+        dry or not source.liquid,
     )
 
 

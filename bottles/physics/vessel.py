@@ -7,11 +7,13 @@ from dataclasses import dataclass
 from shop.physics.errors import OutOfRange
 from shop.physics.fluid import P_MAX, T_MAX, T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.roots import find_root
+from shop.physics.saturation_table import saturation_table, to_s, to_t
 
 WALL_HEAT = {"aluminium": 896.0, "steel": 470.0}  # J/kg/K
 COLDEST = 233.15  # K: -40 °C
 HOTTEST = 325.15  # K: 52 °C
 HEAT = 1500.0  # J/kg/K: a first guess at the heat capacity of contents at constant volume
+_BELOW_500_BAR = 900.0  # kg/m3: so much stands below 500 bar at any temperature that is taken
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,7 +40,9 @@ class Vessel:
         if not 0.0 <= self.wall_j_k < 1e9:
             raise OutOfRange("wall", "A wall's mass can't be below nothing. Check it and its unit.")
         if not 0.0 <= self.below_tube_m3 < 0.5 * self.volume_m3:
-            raise OutOfRange("below_tube", "A dip tube reaches into the lower half of its bottle. Check what it leaves.")
+            raise OutOfRange(
+                "below_tube", "A dip tube reaches into the lower half of its bottle. Check what it leaves."
+            )
         if not 0.0 <= self.net_kg < 1e6:
             raise OutOfRange("net", "Contents can't be below nothing. Weigh again, check the tare.")
         if not COLDEST - 1e-9 <= self.temperature_k <= HOTTEST + 1e-9:
@@ -47,7 +51,7 @@ class Vessel:
                 "Transfers are computed for bottles between -40 °C and 52 °C; above that no "
                 "bottle may be. Check the temperature and its unit.",
             )
-        if self.net_kg and not _pressure(self) <= P_MAX:
+        if self.net_kg > _BELOW_500_BAR * self.volume_m3 and not _pressure(self) <= P_MAX:
             raise OutOfRange(
                 "pressure_range",
                 "So much in so small a bottle would stand above 500 bar at this temperature. "
@@ -179,6 +183,20 @@ def settle(
         temperature = energy / wall if wall > 0.0 else guess
         return temperature, air * temperature / volume, heat
     density, fluid = mass / volume, engine()
+    if guess <= T_SATURATION_MAX:
+        table = saturation_table()
+        s = to_s(guess)
+        side = table.side(s)
+        if side[2] < density < side[1]:
+            found = table.settled(volume, wall, mass, energy, s)
+            if found is not None:
+                pressure, liquid, vapour, _, _ = table.side(found)
+                if vapour < density < liquid:
+                    new = to_t(found)
+                    if air:
+                        space = (liquid * volume - mass) / (liquid - vapour)
+                        pressure += air * new / max(space, 1e-6 * volume)
+                    return new, pressure, heat
     pair = fluid.pressure_energy
 
     def surplus(t: float) -> float:

@@ -14,6 +14,7 @@ from dataclasses import dataclass
 from bottles.physics.vessel import HEAT, Vessel, settle
 from bottles.physics.withdrawal import Adiabatic
 from shop.physics.fluid import P_CRITICAL, P_TRIPLE, T_SATURATION_MAX, T_TRIPLE, engine
+from shop.physics.saturation_table import saturated
 
 _STEPS = 20  # of the largest size, over what can go in
 _FIRST = 0.004  # the first step, as a share of what can go in
@@ -46,7 +47,7 @@ class _Above:
             _, energy = fluid.pressure_energy(density, t)
             quality = fluid.quality()
             if quality is not None:
-                p, _, rho_v, _, h_v = fluid.saturation(min(t, T_SATURATION_MAX))
+                p, _, rho_v, _, h_v = saturated(min(t, T_SATURATION_MAX))
                 self.mass *= quality
                 self.volume = self.mass / rho_v if quality > 0.0 else 1e-6 * v
                 energy = h_v - p / rho_v
@@ -62,7 +63,7 @@ class _Above:
         self.temperature, self.pressure = t, p
         if t > T_SATURATION_MAX or self.mass <= 0.0:
             return
-        p_sat, rho_l, rho_v, h_l, _ = engine().saturation(t)
+        p_sat, rho_l, rho_v, h_l, _ = saturated(t)
         density = self.mass / self.volume
         if rho_v < density < rho_l:
             drip = (self.mass - rho_v * self.volume) / (1.0 - rho_v / rho_l)
@@ -150,13 +151,12 @@ def slow_filling(source: Adiabatic, receiver: Vessel, line_kg: float, most_kg: f
 
 def _parted(enthalpy: float, pressure: float) -> tuple[float, float, float]:
     """Share that stays liquid on arriving, that liquid's density, the vapour's enthalpy."""
-    fluid = engine()
     if pressure >= P_CRITICAL:
         t = T_SATURATION_MAX
     elif pressure <= P_TRIPLE:
         t = T_TRIPLE
     else:
-        t = fluid.boiling_temperature(pressure)
-    _, rho_l, _, h_l, h_v = fluid.saturation(t)
+        t = engine().boiling_temperature(pressure)
+    _, rho_l, _, h_l, h_v = saturated(t)
     share = (h_v - enthalpy) / (h_v - h_l)
     return min(max(share, 0.0), 1.0), rho_l, max(h_v, enthalpy)

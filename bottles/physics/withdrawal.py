@@ -1,8 +1,9 @@
 """What a supply bottle shows after giving a mass: the paths that it takes.
 
 `Adiabatic`: contents and wall uniform, no heat from outside. Stages follow each other:
-one phase (full of liquid, or above the critical point), two phases giving liquid, and
-vapour when the liquid is out. `Held`: kept at its temperature.
+one phase (full of liquid, or above the critical point), two phases giving liquid, two phases
+giving vapour where liquid lies below the dip tube's end, and vapour when the liquid is out.
+`Held`: kept at its temperature.
 """
 
 from __future__ import annotations
@@ -14,15 +15,16 @@ from bottles.physics.withdrawal_table import Drain, withdrawal_table
 from shop.physics.errors import NoSolution
 from shop.physics.fluid import T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.roots import find_root
+from shop.physics.saturation_table import Side, saturated, saturation_table, to_s, to_t
 from shop.physics.states import RHO_CRITICAL
 
 _STEP, _STEP_THIN = 0.12, 0.25  # share of the mass that one step in one phase may take; in thin vapour
-_Side = tuple[float, float, float, float, float]  # saturated states, as the engine hands them out
+_RISE = (1e-3, 1e-2, 0.1, 0.3, 1.0, 3.0, 10.0, 30.0)  # K below saturation, where a level is looked for
 
 
 @dataclass(frozen=True, slots=True)
 class Given:
-    """A supply bottle after giving a mass, and what leaves it next."""
+    """A supply bottle after giving a mass, and what leaves it next: liquid, or else vapour."""
 
     temperature_k: float
     pressure_pa: float
@@ -38,7 +40,9 @@ class Held:
         """Fix the start."""
         self._vessel = vessel
         t = vessel.temperature_k
-        self._vapour = engine().saturation(t)[2] if t <= T_SATURATION_MAX else RHO_CRITICAL
+        self._out_of_reach = RHO_CRITICAL * vessel.volume_m3
+        if t <= T_SATURATION_MAX:
+            self._out_of_reach = mass_without_reach(engine().saturation(t), vessel.volume_m3, vessel.below_tube_m3)
 
     def pressure(self, given_kg: float) -> float:
         """Pressure after giving a mass [Pa]."""
@@ -47,8 +51,8 @@ class Held:
         return pressure_and_energy(vessel.volume_m3, left, vessel.temperature_k)[0]
 
     def has_liquid(self, given_kg: float) -> bool:
-        """Say whether there is liquid, or a fluid as dense, after giving a mass."""
-        return (self._vessel.net_kg - given_kg) / self._vessel.volume_m3 > self._vapour * (1 + 1e-9)
+        """Say whether there is liquid that can be drawn, or a fluid as dense, after giving a mass."""
+        return self._vessel.net_kg - given_kg > self._out_of_reach * (1.0 + 1e-9)
 
 
 class Adiabatic:
@@ -62,7 +66,7 @@ class Adiabatic:
             pressure_and_energy(self._v, vessel.net_kg, vessel.temperature_k)[1] + self._c * vessel.temperature_k
         )
         self._stages: list[_TwoPhase | _OnePhase] = []
-        self.dry_at_kg: float | None = None  # mass given when the liquid was out, once known
+        self.dry_at_kg: float | None = None  # mass given when no liquid could be drawn any more, once known
         self._last = (-1.0, Given(0.0, 0.0, 0.0, 0.0, False))
         self._open(vessel.net_kg, vessel.temperature_k, None)
 
@@ -76,8 +80,7 @@ class Adiabatic:
             if stage.reaches(left):
                 break
             mass, temperature = stage.end
-            dry = isinstance(stage, _TwoPhase)
-            if dry and self.dry_at_kg is None:
+            if isinstance(stage, _TwoPhase) and self.dry_at_kg is None and not stage.rises:
                 self.dry_at_kg = self._vessel.net_kg - mass
             self._open(mass, temperature, stage)
         else:
@@ -92,7 +95,7 @@ class Adiabatic:
         return answer
 
     def dry_out(self) -> float:
-        """Mass given when the liquid is out; nothing where there is none at the start [kg]."""
+        """Mass given when no liquid can be drawn any more; nothing where none can at the start [kg]."""
         if self.dry_at_kg is None:
             stage = self._stages[0]
             if not self.after(0.0).liquid:
@@ -107,26 +110,32 @@ class Adiabatic:
 
     def _open(self, mass: float, temperature: float, before: _TwoPhase | _OnePhase | None) -> None:
         """Begin the stage that follows from a state and from how it was reached."""
-        v, c, pickup = self._v, self._c, self._vessel.liquid_pickup
+        v, c = self._v, self._c
+        below = self._vessel.below_tube_m3
         if isinstance(before, _OnePhase):  # the crossing may be found a hair above the dome
             temperature = min(temperature, T_SATURATION_MAX)
         if temperature <= T_SATURATION_MAX:
-            side = engine().saturation(temperature)
+            side = saturated(temperature)
             _, rho_l, rho_v, _, _ = side
             edge = 1e-6 * rho_v
-            dried = isinstance(before, _TwoPhase)
-            if dried:
+            if isinstance(before, _TwoPhase) and before.dries:
                 mass = min(mass, rho_v * v)
             if rho_v + edge < mass / v < rho_l * (1.0 + 1e-6):
-                self._stages.append(_TwoPhase(v, c, mass, temperature, pickup, side))
+                draws = self._vessel.liquid_pickup and not (isinstance(before, _TwoPhase) and before.liquid)
+                if draws and below and mass <= mass_without_reach(side, v, below):
+                    draws = False
+                self._stages.append(_TwoPhase(v, c, mass, temperature, side, liquid=draws, below=below))
                 return
             wet = isinstance(before, _OnePhase)
             at_dew = mass / v <= rho_v + edge and (wet or mass / v >= rho_v - edge)
             if at_dew and (wet or _gets_wet(v, c, mass, temperature)):
                 # Mist after the liquid is out stays in the bottle: it's vapour that leaves.
                 # Where vapour turns wet by itself, enough liquid may gather to be drawn.
-                draws = pickup and wet and self._gathers(mass, temperature)
-                self._stages.append(_TwoPhase(v, c, mass, temperature, draws, side))
+                draws = self._vessel.liquid_pickup and wet and self._gathers(mass, temperature)
+                new = _TwoPhase(v, c, mass, temperature, side, liquid=draws and not below, below=below)
+                if draws and below:
+                    new.rise_to_tube()
+                self._stages.append(new)
                 return
         self._stages.append(_OnePhase(v, c, mass, temperature))
 
@@ -134,36 +143,66 @@ class Adiabatic:
         """Say whether liquid that appears in vapour outlasts its being drawn."""
         drain = Drain(withdrawal_table(liquid=True), self._v, self._c, mass, temperature)
         colder = max(temperature - 1e-3, T_TRIPLE)
-        return drain.mass_at(colder) > engine().saturation(colder)[2] * self._v
+        return drain.mass_at(colder) > saturated(colder)[2] * self._v
 
 
 class _TwoPhase:
-    """Liquid and vapour, one of which is drawn: closed, by the table."""
+    """Liquid and vapour, one of which is drawn: closed, by the table.
+
+    It ends where that phase can't be drawn any more: liquid at the dip tube's end, else with
+    the liquid; or, where liquid gathers below the tube first, where its level comes to the end.
+    """
 
     def __init__(
-        self, volume: float, wall: float, mass: float, temperature: float, liquid: bool, side: _Side
+        self, volume: float, wall: float, mass: float, temperature: float, side: Side, *, liquid: bool, below: float
     ) -> None:
-        self._v, self._liquid = volume, liquid
+        self._v, self._below = volume, below
+        self.liquid, self.rises = liquid, False
         self._top = (mass, temperature)
         self._drain = Drain(withdrawal_table(liquid=liquid), volume, wall, mass, temperature)
         self._end: tuple[float, float] | None = None
-        self._past = T_TRIPLE  # a temperature at which the liquid is out, where one was met
-        self._saturation = engine().saturation
+        self._past = T_TRIPLE  # a temperature at which the stage is over, where one was met
+        self._read = saturation_table().side
         self._known = (mass, temperature, side)
 
-    def _at(self, left: float) -> tuple[float, float, _Side]:
+    @property
+    def dries(self) -> bool:
+        """Say whether vapour alone is left at its end."""
+        return not self.rises and not (self.liquid and self._below)
+
+    def rise_to_tube(self) -> None:
+        """End where liquid that gathers comes up to the dip tube's end, if it ever does."""
+        top, below = self._top[1], self._below
+
+        def over(t: float) -> float:
+            return self._drain.mass_at(t) - mass_without_reach(saturated(t), self._v, below)
+
+        before = top
+        for colder in _RISE:
+            t = max(top - colder, T_TRIPLE)
+            if over(t) > 0.0:
+                t = find_root(over, t, before, tolerance=1e-7) if over(before) < 0.0 else t
+                self.rises, self._end = True, (self._drain.mass_at(t), t)
+                return
+            before = t
+
+    def _at(self, left: float) -> tuple[float, float, Side]:
         """Mass, temperature and saturated states, kept for the next question of the same mass."""
         if self._known[0] != left:
-            temperature = self._drain.temperature_at(left)
-            self._known = (left, temperature, self._saturation(temperature))
+            s = self._drain.s_at(left)
+            self._known = (left, to_t(s), self._read(s))
         return self._known
 
+    def _least(self, side: Side) -> float:
+        """Mass at which the stage is over, at a temperature's saturated states."""
+        return mass_without_reach(side, self._v, self._below if self.liquid else 0.0)
+
     def reaches(self, left: float) -> bool:
-        """Say whether both phases are still there with a mass left."""
+        """Say whether this stage goes on with a mass left."""
         if self._end is None:
             _, temperature, side = self._at(left)
-            if temperature > T_TRIPLE:
-                if left >= side[2] * self._v:
+            if temperature > T_TRIPLE + 1e-9:
+                if left >= self._least(side):
                     return True
                 self._past = temperature
             return left >= self.end[0]
@@ -171,41 +210,43 @@ class _TwoPhase:
 
     @property
     def end(self) -> tuple[float, float]:
-        """Mass and temperature where vapour alone fills the bottle."""
+        """Mass and temperature where it ends."""
         if self._end is None:
-            saturation = self._saturation
+            read, drain = self._read, self._drain
 
-            def liquid_left(t: float) -> float:
-                return self._drain.mass_at(t) - saturation(t)[2] * self._v
+            def over(s: float) -> float:
+                return drain.mass_and_slope(s)[0] - self._least(read(s))
 
-            past = self._past
-            at_past = liquid_left(past)
-            if at_past >= 0.0 and past > T_TRIPLE:
-                past, at_past = T_TRIPLE, liquid_left(T_TRIPLE)
+            cold = to_s(T_TRIPLE)
+            past = to_s(self._past)
+            at_past = over(past)
+            if at_past >= 0.0 and past < cold:
+                past, at_past = cold, over(cold)
             if at_past >= 0.0:
                 self._end = (0.0, T_TRIPLE)
             else:
                 # A sliver of liquid may end just below the start; what gathers begins there.
-                start = self._top[1]
-                below = start - 1e-3
-                at_below = liquid_left(below)
-                if at_below > 0.0:
-                    # Cooler than where the liquid is out, whichever side of `past` that is.
-                    t = find_root(liquid_left, past, below, tolerance=1e-7, at_low=at_past, at_high=at_below)
-                elif liquid_left(start) > 0.0:
-                    t = find_root(liquid_left, below, start, tolerance=1e-9)
+                start = to_s(self._top[1])
+                later = to_s(self._top[1] - 1e-3)
+                at_later = over(later)
+                if at_later > 0.0:
+                    # Cooler than where the stage is over, whichever side of `past` that is.
+                    s = find_root(over, past, later, tolerance=1e-10, at_low=at_past, at_high=at_later)
+                elif over(start) > 0.0:
+                    s = find_root(over, later, start, tolerance=1e-12)
                 else:
-                    t = start
-                self._end = (saturation(t)[2] * self._v, t)
+                    s = start
+                self._end = (self._least(read(s)), to_t(s))
         return self._end
 
     def state(self, left: float) -> tuple[float, float, float, float, bool]:
         """Temperature, pressure, energy, enthalpy of what leaves, liquid or not."""
-        _, temperature, (p, rho_l, rho_v, h_l, h_v) = self._at(left)
+        _, temperature, side = self._at(left)
+        p, rho_l, rho_v, h_l, h_v = side
         q = (h_v - h_l) / (1.0 / rho_v - 1.0 / rho_l)
         energy = left * (h_l - q / rho_l) + self._v * (q - p)
-        liquid = self._liquid and left > rho_v * self._v * (1.0 + 1e-9)
-        return temperature, p, energy, h_l if self._liquid else h_v, liquid
+        liquid = self.liquid and left > self._least(side) * (1.0 + 1e-9)
+        return temperature, p, energy, h_l if self.liquid else h_v, liquid
 
 
 class _OnePhase:
@@ -271,11 +312,43 @@ class _OnePhase:
         return temperature, pressure, energy, (energy + pressure * self._v) / left, liquid
 
 
+def mass_without_reach(side: Side, volume: float, below: float) -> float:
+    """Mass of a bottle whose liquid stands at its dip tube's end.
+
+    Parameters
+    ----------
+    side : tuple of float, saturated states [Pa, kg/m3, J/kg]
+    volume : float, inside volume [m3]
+    below : float, liquid that the tube's end doesn't reach; 0 to its last drop [m3]
+
+    Returns
+    -------
+    float, mass of liquid and vapour [kg]
+
+    Assumptions
+    -----------
+    The bottle stands still and upright, its liquid level.
+
+    Valid for
+    ---------
+    Two phases.
+
+    Raises
+    ------
+    Nothing of its own.
+
+    References
+    ----------
+    Mass balance, any text on thermodynamics.
+    """
+    return side[2] * volume + below * (side[1] - side[2])
+
+
 def _room(volume: float, mass: float, temperature: float) -> float:
     """How far one phase is from a second one, as a density; below nothing past saturation."""
     if temperature > T_SATURATION_MAX:
         return 1.0
-    _, rho_l, rho_v, _, _ = engine().saturation(max(temperature, T_TRIPLE))
+    _, rho_l, rho_v, _, _ = saturated(max(temperature, T_TRIPLE))
     density = mass / volume
     return density - rho_l if 2.0 * density > rho_l + rho_v else rho_v - density
 
@@ -292,6 +365,5 @@ def _gets_wet(volume: float, wall: float, mass: float, temperature: float) -> bo
     colder = temperature - 1e-3
     if colder < T_TRIPLE:
         return False
-    saturation = engine().saturation
-    shed = (saturation(temperature)[2] - saturation(colder)[2]) * volume
+    shed = (saturated(temperature)[2] - saturated(colder)[2]) * volume
     return _one_phase_slope(volume, wall, mass, temperature) * shed > temperature - colder

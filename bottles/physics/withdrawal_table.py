@@ -9,8 +9,8 @@ nitrous oxide alone therefore answer for every bottle:
 
     M(T) = exp(L(T) - L(T0)) M0 + exp(L(T)) (V (G(T) - G(T0)) + C (H(T) - H(T0)))
 
-They are tabulated once a process, at knots even in ``s = (1 - T/Tc)^(1/3)``, in which the
-coexistence curve is smooth up to the critical point, and read by cubic Hermite pieces.
+They are tabulated once a process, at the knots of the saturated states (`saturation_table`),
+and read by cubic Hermite pieces.
 """
 
 from __future__ import annotations
@@ -21,18 +21,16 @@ from math import exp
 import numpy as np
 from numpy.typing import NDArray
 
-from shop.physics.fluid import T_SATURATION_MAX, T_TRIPLE, engine
-from shop.physics.states import T_CRITICAL
+from shop.physics.saturation_table import KNOTS, TC, cubics, saturation_table, slopes, to_s, to_t
 
-_KNOTS = 640
-_TC = T_CRITICAL + 2.5e-7  # K, a hair above, so that s never meets nothing
+_NEAR = 2e-6  # in s: a thousandth of a kelvin at most, where the next step is about its square
 _Array = NDArray[np.float64]
 
 
 class WithdrawalTable:
     """The three integrals for drawing saturated liquid, or saturated vapour."""
 
-    __slots__ = ("_first", "_rows", "_step", "s_cold", "s_hot")
+    __slots__ = ("_first", "_per", "_rows", "s_cold")
 
     def __init__(self, s: _Array, integrand: tuple[_Array, _Array, _Array]) -> None:
         """Integrate the slopes of L, V- and C-parts over the knots."""
@@ -42,150 +40,112 @@ class WithdrawalTable:
         exponent -= np.interp(0.35, s, exponent)
         scale = np.exp(-exponent)
         g_slope, h_slope = v_slope * scale, c_slope * scale
-        columns = (
-            exponent, step * l_slope,
-            _cumulate(g_slope, step), step * g_slope,
-            _cumulate(h_slope, step), step * h_slope,
-        )  # fmt: skip
-        self._rows = [tuple(map(float, row)) for row in zip(*columns, strict=True)]
-        self._step = step
-        self._first = float(s[0])
-        self.s_hot, self.s_cold = float(s[0]), float(s[-1])
+        pieces = (
+            cubics(exponent, l_slope, step),
+            cubics(_cumulate(g_slope, step), g_slope, step),
+            cubics(_cumulate(h_slope, step), h_slope, step),
+        )
+        self._rows = [tuple(row) for row in np.concatenate(pieces).T.tolist()]
+        self._first, self._per = float(s[0]), 1.0 / step
+        self.s_cold = float(s[-1])
 
     def integrals(self, s: float) -> tuple[float, float, float, float, float, float]:
         """L, G, H and their slopes in s."""
-        step = self._step
-        place = (s - self._first) / step
+        per = self._per
+        place = (s - self._first) * per
         index = int(place)
         if index < 0:
             index = 0
-        elif index > _KNOTS - 2:
-            index = _KNOTS - 2
+        elif index > KNOTS - 2:
+            index = KNOTS - 2
         x = place - index
-        l0, dl0, g0, dg0, h0, dh0 = self._rows[index]
-        l1, dl1, g1, dg1, h1, dh1 = self._rows[index + 1]
-        xx = x * x
-        right = xx * (3.0 - 2.0 * x)
-        first, last = x * (1.0 - x) ** 2, xx * (x - 1.0)
-        slope = 6.0 * x * (1.0 - x)
-        slope_first, slope_last = 1.0 - 4.0 * x + 3.0 * xx, 3.0 * xx - 2.0 * x
+        l0, l1, l2, l3, g0, g1, g2, g3, h0, h1, h2, h3 = self._rows[index]
         return (
-            l0 + right * (l1 - l0) + first * dl0 + last * dl1,
-            g0 + right * (g1 - g0) + first * dg0 + last * dg1,
-            h0 + right * (h1 - h0) + first * dh0 + last * dh1,
-            (slope * (l1 - l0) + slope_first * dl0 + slope_last * dl1) / step,
-            (slope * (g1 - g0) + slope_first * dg0 + slope_last * dg1) / step,
-            (slope * (h1 - h0) + slope_first * dh0 + slope_last * dh1) / step,
+            l0 + x * (l1 + x * (l2 + x * l3)),
+            g0 + x * (g1 + x * (g2 + x * g3)),
+            h0 + x * (h1 + x * (h2 + x * h3)),
+            (l1 + x * (2.0 * l2 + 3.0 * x * l3)) * per,
+            (g1 + x * (2.0 * g2 + 3.0 * x * g3)) * per,
+            (h1 + x * (2.0 * h2 + 3.0 * x * h3)) * per,
         )
 
 
 class Drain:
     """One bottle giving one saturated phase: mass left against temperature, both ways."""
 
-    __slots__ = ("_c", "_g0", "_h0", "_m0", "_near", "_s0", "_table", "_v")
+    __slots__ = ("_c", "_g0", "_h0", "_m0", "_met", "_s0", "_table", "_v")
 
     def __init__(self, table: WithdrawalTable, volume: float, wall: float, mass: float, temperature: float) -> None:
         """Fix the start."""
         self._table = table
         self._v, self._c = volume, wall
-        self._s0 = self._near = to_s(temperature)
-        exponent, self._g0, self._h0, _, _, _ = table.integrals(self._s0)
-        self._m0 = mass * exp(-exponent)
+        self._s0 = s = to_s(temperature)
+        exponent, self._g0, self._h0, d_exponent, d_g, d_h = table.integrals(s)
+        scale = exp(exponent)
+        self._m0 = mass / scale
+        # A place on the path that was met before, its mass and its slope: where the next search begins.
+        self._met = s, mass, d_exponent * mass + scale * (volume * d_g + wall * d_h)
 
     def mass_at(self, temperature: float) -> float:
         """Mass left when the bottle has cooled to a temperature [kg]."""
-        return self._mass(to_s(temperature))[0]
+        return self.mass_and_slope(to_s(temperature))[0]
 
     def temperature_at(self, mass: float) -> float:
         """Temperature when a mass is left [K]."""
-        # Newton's steps kept in a bracket that shrinks: mass falls with rising s all the way.
+        return to_t(self.s_at(mass))
+
+    def s_at(self, mass: float) -> float:
+        """The table's variable when a mass is left."""
+        s0, m0, slope0 = self._met
+        if mass == m0:
+            return s0
+        s = s0 + (mass - m0) / slope0 if slope0 < 0.0 else s0
+        for _ in range(3):
+            if not self._s0 < s < self._table.s_cold:
+                break
+            m, slope = self.mass_and_slope(s)
+            span = m - m0
+            if not slope < 0.0 or span == 0.0:
+                break
+            newton = s + (mass - m) / slope
+            # Both places give a cubic of s in mass, whose error is far below the tangent's.
+            x = (mass - m0) / span
+            best = (
+                s0 + x * x * (3.0 - 2.0 * x) * (s - s0) + span * x * ((1.0 - x) ** 2 / slope0 + x * (x - 1.0) / slope)
+            )
+            if abs(best - newton) < _NEAR:
+                self._met = s, m, slope
+                return best
+            s0, m0, slope0, s = s, m, slope, best
+        return self._s_between(mass)
+
+    def _s_between(self, mass: float) -> float:
+        """The same by Newton's steps in a bracket that shrinks: mass falls with rising s all the way."""
         low, high = self._s0, self._table.s_cold
-        s = self._near
+        if mass <= self.mass_and_slope(high)[0]:
+            return high
+        s = 0.5 * (low + high)
         for _ in range(60):
-            value, slope = self._mass(s)
+            value, slope = self.mass_and_slope(s)
             gap = value - mass
             if gap > 0.0:
                 low = s
             else:
                 high = s
-            step = gap / slope if slope < 0.0 else 1.0
-            new = s - step
-            if not low <= new <= high:
+            new = s - gap / slope if slope < 0.0 else high
+            if not low < new < high:
                 new = 0.5 * (low + high)
-            small = abs(new - s) < 3e-6  # the next step would be about its square
+            if abs(new - s) < _NEAR:
+                return new
             s = new
-            if small:
-                break
-        self._near = s
-        return to_t(s)
+        return s
 
-    def _mass(self, s: float) -> tuple[float, float]:
-        """Mass and its slope in s."""
+    def mass_and_slope(self, s: float) -> tuple[float, float]:
+        """Mass left and its slope in s."""
         exponent, g, h, d_exponent, d_g, d_h = self._table.integrals(s)
         scale = exp(exponent)
         mass = scale * (self._m0 + self._v * (g - self._g0) + self._c * (h - self._h0))
         return mass, d_exponent * mass + scale * (self._v * d_g + self._c * d_h)
-
-
-def to_s(temperature: float) -> float:
-    """Turn temperature into the table's variable.
-
-    Parameters
-    ----------
-    temperature : float, temperature [K]
-
-    Returns
-    -------
-    float, (1 - T/Tc)^(1/3) [-]
-
-    Assumptions
-    -----------
-    None.
-
-    Valid for
-    ---------
-    Below the critical temperature.
-
-    Raises
-    ------
-    Nothing of its own.
-
-    References
-    ----------
-    The power is that of the coexistence curve's width: Guggenheim, J. Chem. Phys. 13
-    (1945) 253.
-    """
-    return float((1.0 - temperature / _TC) ** (1.0 / 3.0))
-
-
-def to_t(s: float) -> float:
-    """Turn the table's variable into temperature.
-
-    Parameters
-    ----------
-    s : float, (1 - T/Tc)^(1/3) [-]
-
-    Returns
-    -------
-    float, temperature, inside the range of saturation [K]
-
-    Assumptions
-    -----------
-    None.
-
-    Valid for
-    ---------
-    Any s that is not below nothing.
-
-    Raises
-    ------
-    Nothing of its own.
-
-    References
-    ----------
-    See `to_s`.
-    """
-    return min(max(_TC * (1.0 - s * s * s), T_TRIPLE), T_SATURATION_MAX)
 
 
 _lock = threading.Lock()
@@ -227,27 +187,16 @@ def withdrawal_table(*, liquid: bool) -> WithdrawalTable:
 
 
 def _build() -> tuple[WithdrawalTable, WithdrawalTable]:
-    """Tabulate the saturated states and their slopes."""
-    s = np.linspace(to_s(T_SATURATION_MAX), to_s(T_TRIPLE), _KNOTS)
-    fluid = engine()
-    temperature = np.array([to_t(float(x)) for x in s])
-    p, rho_l, rho_v, h_l, h_v = np.array([fluid.saturation(float(t)) for t in temperature]).T
-    q = (h_v - h_l) / (1.0 / rho_v - 1.0 / rho_l)
-    a, k = h_l - q / rho_l, q - p
-    step = float(s[1] - s[0])
-    da, dk, dt = _slope(a, step), _slope(k, step), -3.0 * _TC * s * s
+    """Tabulate the slopes of what drawing each phase needs."""
+    table = saturation_table()
+    s, q = table.s, table.q
+    _, rho_l, rho_v, _, _ = table.sides
+    da, dk, dt = slopes(table.a, table.step), slopes(table.k, table.step), -3.0 * TC * s * s
     gain_l, gain_v = q / rho_l, q / rho_v
     return (
         WithdrawalTable(s, (da / gain_l, dk / gain_l, dt / gain_l)),
         WithdrawalTable(s, (da / gain_v, dk / gain_v, dt / gain_v)),
     )
-
-
-def _slope(y: _Array, step: float) -> _Array:
-    """Slope by differences of sixth order, of second at the ends."""
-    slope = np.gradient(y, step, edge_order=2)
-    slope[3:-3] = ((y[6:] - y[:-6]) - 9.0 * (y[5:-1] - y[1:-5]) + 45.0 * (y[4:-2] - y[2:-4])) / (60.0 * step)
-    return slope
 
 
 def _cumulate(y: _Array, step: float) -> _Array:
