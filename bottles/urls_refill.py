@@ -14,6 +14,7 @@ urlpatterns = [
     path("supplies/<int:pk>/take-off", stations.Disconnect.as_view(), name="disconnect"),
     path("b/<str:code>/fill", filling.Fill.as_view(), name="fill"),
     path("b/<str:code>/fill/forecast", filling.forecast_live, name="forecast_live"),
+    path("b/<str:code>/fill/course", filling.course_live, name="course_live"),
     path("refills", refills.refills, name="refills"),
     path("refills/<int:pk>", refills.RefillPage.as_view(), name="refill"),
     path("refills/<int:pk>/wait", refills.Wait.as_view(), name="refill_wait"),

@@ -145,6 +145,7 @@ REFILLS = [
     Page("bottles:disconnect", EVERYONE, lambda world: {"pk": world.supply.pk}),
     Page("bottles:fill", EVERYONE, _of_bottle),
     Page("bottles:forecast_live", EVERYONE, _of_bottle, html=False),
+    Page("bottles:course_live", EVERYONE, _of_bottle, html=False),
     Page("bottles:refills", EVERYONE),
     Page("bottles:refill", EVERYONE, lambda world: {"pk": world.refill.pk}),
     Page("bottles:refill_wait", EVERYONE, lambda world: {"pk": world.refill.pk}),

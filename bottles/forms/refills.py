@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 from django import forms
 
 from bottles.forms.filling import ReadingsForm, read_off
 from bottles.models import Refill, Station
+from bottles.services.forecasting import Readings
 from bottles.services.refill_steps import Weight
 from shop.base.fields import HappenedField, InstantField, MassField
 from shop.people.acting import ActForm
@@ -90,9 +92,17 @@ class AnotherSupplyForm(ReadingsForm):
 
     def __init__(self, *args: Any, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
+        self.at: Station | None = kwargs.get("at")
         if "supply_weight" not in self.fields:
             del self.fields["old_supply_gross"]
         self.order_fields(self.field_order)
+
+    def readings(self, *, bottle_weight: Any = None) -> Readings | None:
+        """What was read; a hose that is on pulls at the weight."""
+        found = super().readings(bottle_weight=bottle_weight)
+        if found is None or self.at is None or self.cleaned_data.get("line") == "off":
+            return found
+        return replace(found, hose_pull_g=self.at.hose_pull_g)
 
     def weight(self) -> Weight:
         """The weighing as the service takes it."""

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import uuid
-from dataclasses import dataclass
 from typing import Any
 
 from django.contrib import messages
@@ -12,28 +11,27 @@ from django.shortcuts import render
 from django.urls import reverse
 from django.utils.functional import cached_property
 
-from bottles.forms.filling import NEEDED, READ, FillForm, ReadingsForm
-from bottles.models import Bottle, Refill, Station, Supply
+from bottles.forms.filling import FillForm, ReadingsForm
+from bottles.models import Bottle, Refill, Supply
 from bottles.rules.conditions import label_of
 from bottles.rules.fitness import Judgement
-from bottles.selectors.filling_offers import Offered, readings_offered, supplies_offered
-from bottles.selectors.judging import Rulebook, rulebook
+from bottles.selectors.filling_offers import Offered, readings_offered
 from bottles.selectors.register import standing_of
 from bottles.selectors.scales import scale_checked
 from bottles.services.forecasting import Asked, work_out
-from bottles.services.refilling import Opening, look_items, open_refill, refuse_source
+from bottles.services.refilling import Opening, look_items, open_refill
 from bottles.services.scales import check_scale
-from bottles.views.forecast_words import forecast_context, stop_figure
+from bottles.views.forecast_details_words import details_part
+from bottles.views.forecast_part import Judged, asked_for, chosen_supply, forecast_part, worked
 from bottles.views.judgement import verdict
 from bottles.views.of_bottle import BottleActView, bottle_or_404
 from bottles.views.reason_rows import reason_rows
-from bottles.views.refill_words import RefillWords, refill_words
+from bottles.views.refill_words import refill_words
 from bottles.views.wording import words_for
 from shop.base.errors import AlreadyDone, Refusal
 from shop.base.models import Shop
 from shop.base.permissions import EVERYONE, allow
 from shop.people.models import User
-from shop.physics.errors import NoSolution, PhysicsError
 
 CAUTIONS = (
     "Nitrous is an oxidiser and is heavier than air: doors open, no oil or grease on any fitting, no flame, no inhaling.",
@@ -65,7 +63,7 @@ class Fill(BottleActView):
         return super().get(request, *args, **kwargs)
 
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
-        if "forecast" in request.POST:
+        if {"forecast", "course"} & request.POST.keys():
             form = self.form(request.POST)
             form.look_only()
             return self.show(form)
@@ -148,14 +146,33 @@ class Fill(BottleActView):
 
     def show(self, form: Any, *, status: int = 200) -> HttpResponse:
         words = refill_words(self.request, self.shop)
+        found = worked(form, self.bottle, self.judged)
         context = {"form": form, "submit": self.submit} | self.context()
-        context |= forecast_part(form, self.bottle, self.judged, words)
+        context |= forecast_part(found, form, self.bottle, self.judged, words)
+        if "course" in self.request.POST:
+            context |= details_part(found, words)
         return render(self.request, self.template_name, context, status=status)
 
 
 @allow(EVERYONE, room="counter")
 def forecast_live(request: HttpRequest, code: str) -> HttpResponse:
     """The forecast's part alone, from what is typed so far; nothing is saved."""
+    form, bottle, judged = _typed(request, code)
+    words = refill_words(request, judged.shop)
+    part = forecast_part(worked(form, bottle, judged), form, bottle, judged, words)
+    return render(request, "bottles/_forecast.html", {"bottle": bottle} | part)
+
+
+@allow(EVERYONE, room="counter")
+def course_live(request: HttpRequest, code: str) -> HttpResponse:
+    """What is dear to work out, asked for when it's opened: the course, other starts, the fills left."""
+    form, bottle, judged = _typed(request, code)
+    part = details_part(worked(form, bottle, judged), refill_words(request, judged.shop))
+    return render(request, "bottles/_forecast_details.html", {"bottle": bottle} | part)
+
+
+def _typed(request: HttpRequest, code: str) -> tuple[FillForm, Bottle, Judged]:
+    """The form as typed so far, read for a forecast alone."""
     bottle = bottle_or_404(code)
     shop = Shop.objects.get()
     request.shop = shop  # type: ignore[attr-defined]
@@ -165,40 +182,7 @@ def forecast_live(request: HttpRequest, code: str) -> HttpResponse:
         request.POST, person=request.user, shop=shop, **fill_form_kwargs(request, bottle, judged, offered)  # type: ignore[arg-type]
     )
     form.look_only()
-    words = refill_words(request, shop)
-    return render(request, "bottles/_forecast.html", {"bottle": bottle} | forecast_part(form, bottle, judged, words))
-
-
-@dataclass(frozen=True, slots=True)
-class Judged:
-    """What a page needs judged: the bottle to fill and its supply bottle, at once and by one rulebook."""
-
-    shop: Shop
-    book: Rulebook
-    supply: Supply | None
-    found: dict[int, Judgement]
-
-    @classmethod
-    def of(cls, shop: Shop, bottle: Bottle, supply: Supply | None) -> Judged:
-        """Judge both, or the one where no supply bottle is connected."""
-        book = rulebook(shop)
-        return cls(shop, book, supply, book.judge_all([bottle, supply.bottle] if supply else [bottle]))
-
-    def __getitem__(self, bottle: Bottle) -> Judgement:
-        """What was judged of a bottle; another than those two is judged now."""
-        if bottle.pk not in self.found:
-            self.found.update(self.book.judge_all([bottle]))
-        return self.found[bottle.pk]
-
-
-def chosen_supply(
-    request: HttpRequest, bottle: Bottle, station: Station | None = None, but: Bottle | None = None
-) -> Supply | None:  # fmt: skip
-    """The supply bottle that the form or the address names; else the weakest."""
-    asked = request.POST.get("supply") or request.GET.get("supply") or ""
-    offered = supplies_offered(bottle, station, but)
-    found = offered.filter(pk=int(asked)).first() if asked.isdigit() and len(asked) < 18 else None
-    return found or offered.first()
+    return form, bottle, judged
 
 
 def fill_form_kwargs(
@@ -218,62 +202,3 @@ def fill_form_kwargs(
 def asks_pressure(judgement: Judgement) -> bool:
     """Whether it isn't known that the bottle kept its pressure: an empty or open one."""
     return "pressure kept" in judgement.not_judged or any(reason.code == "dry-and-purge" for reason in judgement.reasons)
-
-
-def asked_for(bottle: Bottle, supply: Supply, judged: Judged) -> Asked:
-    """What a forecast is asked for, with both bottles' limits."""
-    return Asked(bottle, supply, judged[bottle].limit.grams or 0, judged[supply.bottle].limit.grams, judged.shop)
-
-
-def forecast_part(form: ReadingsForm, bottle: Bottle, judged: Judged, words: RefillWords) -> dict[str, Any]:
-    """The variables of the forecast's part: the answer, or what it waits for."""
-    limit = judged[bottle].limit.grams
-    if not limit:
-        return {"forecast": None, "trouble": ["This bottle has no fill limit yet. Complete its record first."]}
-    if not form.is_bound:
-        lacking = [name for name in ("supply_temperature", "bottle_temperature") if not form.initial.get(name)]
-        waits = [NEEDED[name] for name in lacking or ["bottle_weight"]]
-        first = stop_figure(bottle, judged.supply, limit, words) if judged.supply else None
-        return {"forecast": None, "stop": first, "waits": waits}
-    wrong = [
-        f"{form.fields[name].label}: {error}"
-        for name, errors in form.errors.items()
-        if name in READ
-        for error in errors
-    ]
-    readings = form.readings()
-    supply = form.cleaned_data.get("supply")
-    target = form.cleaned_data.get("target")
-
-    def stop() -> dict[str, str] | None:
-        return stop_figure(bottle, supply, min(limit, target.stored) if target else limit, words) if supply else None
-
-    if readings is None or supply is None or wrong:
-        return {"forecast": None, "stop": stop(), "trouble": wrong, "waits": form.missing}
-    asked = asked_for(bottle, supply, judged)
-    try:
-        answer = work_out(asked, readings)
-    except (Refusal, PhysicsError) as refusal:
-        sentence = refusal.sentence
-        if isinstance(refusal, NoSolution):
-            sentence += " Fill by weight without a forecast, with care."
-        return {"forecast": None, "stop": stop(), "trouble": [sentence]}
-    return {"forecast": forecast_context(asked, answer, words), "stop": None, "also": also_said(form, supply, judged)}
-
-
-PUMPED = (
-    "Pumped: the span is that by pressure alone. The pump goes on to the limit, until the supply's liquid is out, or to "
-    "the limits of its plate ({plate}). Never run dry, never against a shut valve, oil-free and made for nitrous oxide."
-)
-
-
-def also_said(form: ReadingsForm, supply: Supply, judged: Judged) -> list[str]:
-    """What stands before the forecast: a supply bottle that may not be emptied, a pump with stops of its own."""
-    said = []
-    try:
-        refuse_source(supply.bottle, judged[supply.bottle])
-    except Refusal as refusal:
-        said.append(refusal.sentence)
-    if form.cleaned_data.get("method") == "pumped":
-        said.append(PUMPED.format(plate=supply.station.pump_note))
-    return said

@@ -10,6 +10,7 @@ from bottles.selectors.scales import scale_uncertainty
 from bottles.services.forecasting import BOOKS, Answer, Asked
 from bottles.services.refilling import stop_at
 from bottles.services.weighing import tare_at
+from bottles.views.forecast_width import HEAD, narrowing, width_rows
 from bottles.views.refill_words import RefillWords, style_of
 from shop.base import clock
 from shop.base.errors import Refusal
@@ -35,13 +36,6 @@ REGIONS = {
     "liquid-full": "above the vapour pressure",
     "supercritical": "above the critical point",
     "contradictory": "the readings contradict each other",
-}
-WIDTHS = {
-    "condensation": "how much vapour condenses",
-    "source temperature": "the supply bottle's temperature",
-    "source weight": "the supply bottle's weight",
-    "receiver temperature": "the temperature of the bottle to fill",
-    "receiver weight": "the weight of the bottle to fill",
 }
 HIDDEN = {"condensation_prior", "source_unknown", "can_pass_limit"}  # said elsewhere on the page
 HOTTEST_C = 51.9
@@ -75,7 +69,7 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
         "reading": _reading(answer, words) if answer.contents else [],
         "reading_warnings": [] if answer.danger else reading,
         "warnings": [*warnings, *(sentence for _, sentence in answer.notes)],
-        "width": WIDTHS.get(found.width[0][0], "") if found.width and found.width[0][1] > 0 else "",
+        "width": width_rows(answer, words), "width_head": HEAD, "narrowing": narrowing(answer, words),
         "band": _band(answer, words),
         "prior": any(code == "condensation_prior" for code, _ in found.warnings),
     }  # fmt: skip

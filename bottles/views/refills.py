@@ -19,7 +19,9 @@ from bottles.selectors.refill_lists import closed_refills, open_refills, refills
 from bottles.selectors.refills import draws_of, in_force
 from bottles.services import refill_steps as steps
 from bottles.services.forecasting import Asked, work_out
-from bottles.views.filling import CAUTIONS, Judged, asked_for, chosen_supply, forecast_part
+from bottles.views.filling import CAUTIONS
+from bottles.views.forecast_details_words import details_part
+from bottles.views.forecast_part import Judged, Worked, asked_for, chosen_supply, forecast_part, worked
 from bottles.views.refill_rows import page_context, refill_rows, section_rows
 from bottles.views.refill_words import refill_words
 from bottles.views.sections import Seen
@@ -166,18 +168,25 @@ class AnotherSupply(OfRefill):
         return readings_offered(self.refill.station)
 
     def post(self, request: HttpRequest, *args: Any, **kwargs: Any) -> HttpResponse:
-        if "forecast" in request.POST:
-            form = self.form(request.POST)
-            form.look_only()
-            if request.headers.get("HX-Request"):  # asked while typing: the forecast's part alone
-                part = self.part(form) | {"bottle": self.refill.bottle}
-                return render(request, "bottles/_forecast.html", part)
+        if not {"forecast", "course"} & request.POST.keys():
+            return super().post(request, *args, **kwargs)
+        form = self.form(request.POST)
+        form.look_only()
+        if not request.headers.get("HX-Request"):
             return self.show(form)
-        return super().post(request, *args, **kwargs)
+        found, bottle = self.worked(form), {"bottle": self.refill.bottle}  # asked while typing: one part alone
+        if "course" in request.POST:
+            part = details_part(found, refill_words(request, self.shop))
+            return render(request, "bottles/_forecast_details.html", bottle | part)
+        return render(request, "bottles/_forecast.html", bottle | self.part(found, form))
 
-    def part(self, form: AnotherSupplyForm) -> dict[str, Any]:
+    def worked(self, form: AnotherSupplyForm) -> Worked:
+        """The forecast to what the refill was opened with."""
+        return worked(form, self.refill.bottle, self.judged, limit_g=self.refill.target_g)
+
+    def part(self, found: Worked, form: AnotherSupplyForm) -> dict[str, Any]:
         """The variables of the forecast's part."""
-        return forecast_part(form, self.refill.bottle, self.judged, refill_words(self.request, self.shop))
+        return forecast_part(found, form, self.refill.bottle, self.judged, refill_words(self.request, self.shop))
 
     def asked(self, form: AnotherSupplyForm) -> Asked:
         """What the forecast is asked for: the limit that the refill was opened with."""
@@ -200,8 +209,10 @@ class AnotherSupply(OfRefill):
         return super().context() | {"heading": f"Fill {self.refill.bottle.code} on from another supply bottle"}
 
     def show(self, form: Any, *, status: int = 200) -> HttpResponse:
-        part = self.part(form) if form.is_bound else {"forecast": None}
-        context = {"form": form, "submit": self.submit} | self.context() | part
+        found = self.worked(form)
+        context = {"form": form, "submit": self.submit} | self.context() | self.part(found, form)
+        if "course" in self.request.POST:
+            context |= details_part(found, refill_words(self.request, self.shop))
         return render(self.request, self.template_name, context, status=status)
 
 

@@ -17,4 +17,22 @@
     if (number < shown) event.detail.shouldSwap = false;
     else shown = number;
   });
+
+  // A fold that is dear to fill is asked for when it's opened, and again once the readings rest.
+  const RESTS = 700;
+  let resting = 0;
+  const want = (fold) => fold.querySelector("[hx-post]")?.dispatchEvent(new CustomEvent("wanted"));
+  const changed = () => {
+    clearTimeout(resting);
+    resting = setTimeout(() => document.querySelectorAll("[data-lazy][open]").forEach(want), RESTS);
+  };
+
+  document.addEventListener(
+    "toggle",
+    (event) => {
+      if (event.target.matches("[data-lazy][open]")) want(event.target);
+    },
+    true,
+  );
+  for (const kind of ["input", "change"]) document.addEventListener(kind, changed);
 })();

@@ -1,0 +1,113 @@
+"""What makes the width of a forecast, and which one measurement would narrow it most, in words."""
+
+from __future__ import annotations
+
+from math import ceil, sqrt
+
+from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, WEIGHED
+from bottles.services.forecasting import TAKEN, Answer
+from bottles.views.refill_words import RefillWords
+
+HEAD = ["From", "Alone", "How well it's known"]
+CONDENSATION, SUPPLY_WEIGHT = "condensation", "source weight"
+PARTS = {
+    CONDENSATION: "how much vapour condenses",
+    "source temperature": "the supply bottle's temperature",
+    SUPPLY_WEIGHT: "the supply bottle's weight",
+    "receiver temperature": "the temperature of the bottle to fill",
+    "receiver weight": "the weight of the bottle to fill",
+    "receiver start": "how the bottle to fill starts",
+}
+BEGUN = {
+    VENTED: "taken as vented to the room, not more than an atmosphere left (common practice)",
+    OWN_VAPOUR: "taken as full of its own vapour, ±25 % (common practice)",
+    AIR: "taken as full of air",
+    WEIGHED: "as it weighs",
+}
+WORTH_G = 10  # what changes the span by less is no reason to measure again
+
+
+def width_rows(answer: Answer, words: RefillWords) -> list[list[str]]:
+    """A row for each part of the width, the widest first: what, how much by itself, from which ±."""
+    rows = []
+    for name, kilograms in answer.transferred.width:
+        grams = round(kilograms * 1000)
+        alone = f"±{words.small(grams)}" if grams else f"less than ±{words.small(1)}"
+        rows.append([PARTS[name], alone, _known(name, answer, words)])
+    return rows
+
+
+def narrowing(answer: Answer, words: RefillWords) -> str:
+    """The sentence that names what would narrow the span most; empty where there is no span."""
+    span = answer.high_g - answer.low_g
+    worth = [(name, grams) for name, grams in _worth(answer) if grams >= WORTH_G]
+    if span < WORTH_G or not worth:
+        return ""
+    name, grams = worth[0]
+    if name != CONDENSATION:
+        return f"{_measure(name, answer)}: it would narrow the span by about {words.small(grams)}."
+    said = "Only more refills of this shop, each weighed to its end, narrow it much: how much vapour condenses makes most of it."
+    if len(worth) > 1:
+        said += f" Of what can be measured now: {_lower(_measure(worth[1][0], answer))}, by about {words.small(worth[1][1])}."
+    return said
+
+
+def degrees(kelvin: float, words: RefillWords) -> str:
+    """A difference of temperature, rounded up to the degree."""
+    if words.units.temperature == "°F":
+        return f"{ceil(kelvin * 1.8 - 1e-9)} °F"
+    return f"{ceil(kelvin - 1e-9)} °C"
+
+
+def _worth(answer: Answer) -> list[tuple[str, int]]:
+    """By how much the span would shrink if one part were known exactly, the most first; parts join as a root of squares."""
+    parts = answer.transferred.width
+    whole = sum(kilograms**2 for _, kilograms in parts)
+    span = answer.high_g - answer.low_g
+    share = 2000 * sqrt(whole)
+    found = [
+        (name, round(span * (1.0 - sqrt(max(whole - kilograms**2, 0.0) / whole))) if share else 0) for name, kilograms in parts
+    ]
+    return sorted(found, key=lambda part: part[1], reverse=True)
+
+
+def _known(name: str, answer: Answer, words: RefillWords) -> str:
+    pair, readings = answer.pair, answer.readings
+    if name == CONDENSATION:
+        figure = answer.transferred.condensation
+        return f"figure {figure.figure:.2f} ±{2 * figure.deviation:.2f}, {figure.origin}"
+    if name == SUPPLY_WEIGHT:
+        if pair.source_range_kg is not None:
+            return "between what its readings allow"
+        assert answer.source is not None
+        return f"±{words.small(answer.source.error_g)}, {answer.source.origin}"
+    if name == "receiver weight":
+        return f"±{words.small(round(pair.tolerances.scale_kg * 1000))}, weighed"
+    if name == "receiver start":
+        return BEGUN[pair.start.kind]
+    how = readings.taken if name == "source temperature" else readings.bottle_taken
+    taken = next(said for code, said, _ in TAKEN if code == how)
+    return f"±{degrees(pair.tolerances.thermometer_k, words)}, {taken}"
+
+
+def _measure(name: str, answer: Answer) -> str:
+    """What to do about one part."""
+    readings = answer.readings
+    if name == SUPPLY_WEIGHT:
+        weighed = answer.source is not None and answer.source.origin == "weighed now"
+        return "Weigh the supply bottle on a finer scale" if weighed else "Weigh the supply bottle"
+    if name == "receiver weight":
+        return "Weigh the bottle to fill on a finer scale"
+    if name == "receiver start":
+        return "Weigh the bottle to fill and say so, in place of how it starts"
+    which, how = {
+        "source temperature": ("supply bottle's temperature", readings.taken),
+        "receiver temperature": ("temperature of the bottle to fill", readings.bottle_taken),
+    }[name]
+    if how == "air":
+        return f"Take the {which} on its wall, not in the air"
+    return f"Take the {which} with a finer thermometer"
+
+
+def _lower(sentence: str) -> str:
+    return sentence[0].lower() + sentence[1:]
