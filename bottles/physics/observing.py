@@ -1,0 +1,136 @@
+"""What one closed refill tells of the condensation figure: recomputed from its readings and weighings."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from math import hypot
+
+from bottles.physics.receiver_start import OWN_VAPOUR, VENTED, Start, start_vessel
+from bottles.physics.transfer import Transfer
+from bottles.physics.vessel import HOTTEST, Vessel
+
+ALIKE = "limits alike"
+NO_LIQUID = "no liquid"
+NO_FLOW = "no flow"
+
+_EDGE = 2.0  # a ± is the edge of 19 in 20: so many deviations
+
+
+@dataclass(frozen=True, slots=True)
+class Refilled:
+    """A closed refill as the physics takes it; each ± is the edge of 19 in 20."""
+
+    source: Vessel
+    receiver_volume_m3: float
+    receiver_wall_j_k: float
+    receiver_temperature_k: float
+    start: Start
+    moved_kg: float
+    moved_error_kg: float
+    line_volume_m3: float = 0.0
+    source_error_kg: float = 0.0
+    start_error_kg: float = 0.0
+    source_error_k: float = 1.0
+    receiver_error_k: float = 1.0
+
+
+@dataclass(frozen=True, slots=True)
+class Told:
+    """A refill between its two limits; why it tells nothing, else its own figure and deviation."""
+
+    slow_kg: float
+    quick_kg: float
+    figure: float
+    deviation: float
+    silent: str = ""
+
+
+def observe(refilled: Refilled) -> Told:
+    """Tell where between its two limits a refill ended, and how surely.
+
+    Parameters
+    ----------
+    refilled : Refilled, both bottles as they were read, what came over by the scale [-]
+
+    Returns
+    -------
+    Told, the limits without the fill limit [kg], the condensation figure of this refill and the
+    standard deviation that its readings give it, or why it tells nothing [-]
+
+    Assumptions
+    -----------
+    What each reading is worth is taken from the mixed limit's slope at what came over, as the
+    forecast's band does; readings are independent of each other. Where both limits differ by
+    less than the ± of what came over nothing can be told of what lies between them.
+
+    Valid for
+    ---------
+    Bottles between -40 °C and 52 °C.
+
+    Raises
+    ------
+    OutOfRange
+        A bottle out of range.
+    NoSolution
+        Where the supply's path can't be followed.
+
+    References
+    ----------
+    This project's own model; JCGM 100:2008 (GUM), 5.1.2, for joining uncertainties.
+    """
+    receiver = start_vessel(
+        volume_m3=refilled.receiver_volume_m3, wall_j_k=refilled.receiver_wall_j_k,
+        temperature_k=refilled.receiver_temperature_k, start=refilled.start,
+    )  # fmt: skip
+    transfer = Transfer(refilled.source, receiver, refilled.line_volume_m3)
+    quick = transfer.mixed_free_kg()
+    if quick <= 0.0:
+        return Told(0.0, 0.0, 0.0, 0.0, NO_FLOW)
+    if not transfer.path.after(0.0).liquid:
+        return Told(0.0, quick, 0.0, 0.0, NO_LIQUID)
+    slow = transfer.slow_free_kg()
+    gap = quick - slow
+    if gap <= refilled.moved_error_kg:
+        return Told(slow, quick, 0.0, 0.0, ALIKE)
+    edge = hypot(refilled.moved_error_kg, *_parts(transfer, refilled))
+    return Told(slow, quick, (refilled.moved_kg - slow) / gap, edge / _EDGE / gap)
+
+
+def _parts(transfer: Transfer, refilled: Refilled) -> list[float]:
+    """What each reading's ± is worth in mass."""
+    source, receiver = transfer.source, transfer.receiver
+    quick = transfer.mixed_free_kg()
+    moved = min(quick, max(refilled.moved_kg, 0.1 * quick))
+    there, step = transfer.surplus(moved), 1e-3 * moved
+    slope = (transfer.surplus(moved - step) - there) / step
+    if slope <= 0.0:
+        return []
+    warmer = refilled.source_error_k
+    if source.temperature_k + warmer > HOTTEST:
+        warmer = -warmer
+    other = refilled.receiver_error_k
+    if receiver.temperature_k + other > HOTTEST:
+        other = -other
+    changed = (
+        (replace(source, temperature_k=source.temperature_k + warmer), receiver),
+        (replace(source, net_kg=source.net_kg + refilled.source_error_kg), receiver),
+        (source, replace(receiver, temperature_k=receiver.temperature_k + other)),
+        (source, replace(receiver, net_kg=receiver.net_kg + _start_error(refilled, receiver))),
+    )
+    parts = []
+    for new_source, new_receiver in changed:
+        if new_source == source and new_receiver == receiver:
+            continue
+        path = transfer.path if new_source is source else None
+        new = Transfer(new_source, new_receiver, refilled.line_volume_m3, path=path, like=transfer)
+        parts.append(min(abs(new.surplus(moved) - there) / slope, moved))
+    return parts
+
+
+def _start_error(refilled: Refilled, receiver: Vessel) -> float:
+    """How far the receiver's start may be out, as the forecast takes it [kg]."""
+    if refilled.start.kind == VENTED:
+        return receiver.net_kg  # an atmosphere more (common practice)
+    if refilled.start.kind == OWN_VAPOUR and refilled.start.net_kg is None:
+        return 0.25 * receiver.net_kg  # (common practice)
+    return refilled.start_error_kg
