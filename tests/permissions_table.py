@@ -169,6 +169,7 @@ BOOKS = [
     Page("bottles:movement", MANAGERS, lambda world: {"pk": world.movement.pk}),
     Page("bottles:reverse_movement", MANAGERS, lambda world: {"pk": world.movement.pk}),
     Page("bottles:stock_take", EVERYONE),
+    Page("bottles:leaks", EVERYONE, query="leak=10 g"),
 ]
 
 TABLE: list[Page] = [*PEOPLE, *CARS, *ROOMS, *REGISTER, *BOOKS, *REFILLS]

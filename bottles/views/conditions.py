@@ -25,7 +25,7 @@ class NoteCondition(BottleActView):
     submit = "Note it"
 
     def initial(self) -> dict[str, Any]:
-        return {"seen_on": clock.today(self.shop)}
+        return {"seen_on": clock.today(self.shop), "code": self.request.GET.get("code", "")}
 
     def context(self) -> dict[str, Any]:
         return super().context() | {"heading": f"Note damage on {self.bottle.code}"}

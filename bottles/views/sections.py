@@ -22,6 +22,7 @@ from shop.base.permissions import EVERYONE, Role
 SECTIONS: list[tuple[str, str]] = [
     ("bottles/_judgement.html", "bottles.views.judgement.section"),
     ("bottles/_contents.html", "bottles.views.contents.section"),
+    ("bottles/_leak.html", "bottles.views.leaks.section"),
     ("bottles/_refills.html", "bottles.views.refills.section"),
     ("bottles/_register.html", "bottles.views.register_section.section"),
 ]

@@ -11,6 +11,7 @@ from django.urls import reverse
 from bottles.rules.fitness import Judgement
 from bottles.selectors import counter as selected
 from bottles.selectors.judging import rulebook
+from bottles.selectors.leaks import leaking
 from bottles.selectors.refill_lists import open_refills
 from bottles.views.judgement import FILLED_SHORT, first_reason, verdict
 from bottles.views.reason_rows import in_own_units
@@ -42,6 +43,7 @@ def counter(request: HttpRequest) -> HttpResponse:
         "supplies": [_supply(supply, words) for supply in supplies],
         "has_stations": bool(supplies) or selected.has_stations(),
         "going_on": going_on(request),
+        "leaking": len(leaking()),
     }
     return render(request, "rooms/counter.html", context)
 

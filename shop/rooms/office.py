@@ -11,6 +11,7 @@ from django.urls import NoReverseMatch, reverse
 
 from bottles.models import Refill, Scale, Station, Supply
 from bottles.selectors.books import balance_between
+from bottles.selectors.leaks import leaking
 from bottles.views.wording import words_for
 from shop.base import clock
 from shop.base.models import Place, Shop
@@ -25,6 +26,7 @@ BOOKS: tuple[tuple[str, tuple[tuple[str, str, str], ...]], ...] = (
         (
             ("bottles:balance", "Balance", "what came, went and isn't accounted for, between two days"),
             ("bottles:bottles", "Bottles", "the register of all bottles"),
+            ("bottles:leaks", "Leak watch", "stored bottles that lose weight, and how soon a leak would show"),
             ("bottles:scales", "Scales", "their resolution, error and checks"),
             ("bottles:stations", "Filling stations", "what hangs on each"),
             ("bottles:stock_take", "Stock-take", "every bottle that is in, and when it was weighed"),
@@ -70,6 +72,7 @@ def office(request: HttpRequest) -> HttpResponse:
         "nitrous": nitrous_lately(request),
         "first_steps": first_steps(),
         "going_on": going_on(request),
+        "leaking": len(leaking()),
     }
     return render(request, "rooms/office.html", context)
 
