@@ -103,6 +103,11 @@ def takes_liquid(bottle: Bottle, *, inverted: bool) -> bool | None:
     return (bottle.dip_tube == "dip") is not inverted
 
 
+def below_tube_m3(bottle: Bottle, *, inverted: bool) -> float:
+    """Return the liquid that a supply bottle's dip tube doesn't reach as it stands [m3]; nothing where it isn't known."""
+    return (bottle.below_tube_ml or 0) / 1e6 if bottle.dip_tube == "dip" and not inverted else 0.0
+
+
 def air_pressure(shop: Shop) -> float:
     """Return the pressure of the air in the shop [Pa]."""
     return ambient_pressure(float(shop.height_m))

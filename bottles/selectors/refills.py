@@ -89,13 +89,15 @@ def courses_of(refills: Sequence[Refill], draws: Sequence[Draw] | None = None) -
     of_refill: dict[int, list[Draw]] = defaultdict(list)
     for draw in _draws(refills) if draws is None else draws:
         of_refill[draw.refill_id].append(draw)
-    weighings = _weighings_since(refills)
+    of_bottle: dict[int, list[Weighing]] = defaultdict(list)
+    for row in _weighings_since(refills):
+        of_bottle[row.bottle_id].append(row)
     supply_reads = _supply_reads(of_refill)
     opened_later = _opened_later(refills)
     return [
         _course(
             refill, tuple(of_refill[refill.pk]), tuple(supply_reads.get(refill.pk, ())),
-            [row for row in weighings if _counts(row, refill) and row.act_id not in opened_later[refill.pk]],
+            [row for row in of_bottle[refill.bottle_id] if _counts(row, refill) and row.act_id not in opened_later[refill.pk]],
         )
         for refill in refills
     ]  # fmt: skip
@@ -136,11 +138,14 @@ def _opened_later(refills: Sequence[Refill]) -> dict[int, set[int]]:
     closed = [refill for refill in refills if refill.closed_at is not None]  # while one is open there is no later one
     if not closed:
         return found
-    later = Refill.objects.filter(bottle__in={one.bottle_id for one in closed}, id__gt=min(one.pk for one in closed))
+    of_bottle: dict[int, list[int]] = defaultdict(list)
+    for refill in closed:
+        of_bottle[refill.bottle_id].append(refill.pk)
+    later = Refill.objects.filter(bottle__in=of_bottle.keys(), id__gt=min(one.pk for one in closed))
     for key, bottle, act in later.values_list("id", "bottle_id", "act_id"):
-        for refill in closed:
-            if refill.bottle_id == bottle and refill.pk < key:
-                found[refill.pk].add(act)
+        for earlier in of_bottle[bottle]:
+            if earlier < key:
+                found[earlier].add(act)
     return found
 
 

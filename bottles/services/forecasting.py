@@ -10,7 +10,7 @@ from dataclasses import dataclass, replace
 from itertools import product
 from typing import Any
 
-from bottles.models import Bottle, Forecast, Station, Supply
+from bottles.models import Bottle, Fit, Forecast, Station, Supply
 from bottles.physics.condensation import PRIOR, Condensation
 from bottles.physics.contents import Contents, contents_from_reading
 from bottles.physics.forecast import Forecast as Transferred
@@ -18,7 +18,16 @@ from bottles.physics.forecast import Tolerances, forecast
 from bottles.physics.receiver_start import OWN_VAPOUR, VENTED, WEIGHED, Start, start_vessel
 from bottles.physics.transfer import PHYSICS_VERSION
 from bottles.physics.vessel import Vessel
-from bottles.selectors.filling_facts import Known, Walls, air_pressure, known_contents, takes_liquid, walls_by
+from bottles.selectors.filling_facts import (
+    Known,
+    Walls,
+    air_pressure,
+    below_tube_m3,
+    known_contents,
+    takes_liquid,
+    walls_by,
+)
+from bottles.selectors.learning import latest_figures
 from bottles.services.stations import line_volume_m3
 from shop.base.errors import NotReady, Refusal
 from shop.base.models import Act, Shop
@@ -117,6 +126,7 @@ class Answer:
     danger: bool
     blocked: bool
     notes: tuple[tuple[str, str], ...]
+    fit: Fit | None = None  # whence the condensation figure; None: the prior
 
     def result(self) -> dict[str, Any]:
         """The answer as it's kept."""
@@ -166,7 +176,11 @@ def work_out(asked: Asked, readings: Readings) -> Answer:
         raise Refusal("A target must be above nothing. Leave it empty for the fill limit.", code="target", field="target")
     start = _start(asked, readings, own, notes)
     spread = _spread(contents, held, _contents(asked, readings, None, []) if held and held.origin == BOOKS else None)
-    pairs = _each_wall(asked, readings, (source, own), start, held, spread, target_g, notes)
+    figure = latest_figures(asked.shop).of(bottle)
+    pairs = [
+        replace(pair, condensation=figure.condensation)
+        for pair in _each_wall(asked, readings, (source, own), start, held, spread, target_g, notes)
+    ]
     answers = [pair.worked_out() for pair in pairs]
     main = answers[0]
     likely = [one.likely_kg for one in answers if one.likely_kg is not None]
@@ -182,7 +196,7 @@ def work_out(asked: Asked, readings: Readings) -> Answer:
         high_g=round(max(one.high_kg for one in answers) * 1000 + 0.5),
         line_g=station.line_loss_g if station.line_loss_g is not None else round(main.line_loss_kg * 1000),
         source_left_g=max(0, round(min(left) * 1000)) if left else None,
-        danger=danger, blocked=danger and not resolved, notes=tuple(notes),
+        danger=danger, blocked=danger and not resolved, notes=tuple(notes), fit=figure.fit,
     )  # fmt: skip
 
 
@@ -190,8 +204,8 @@ def keep_forecast(*, act: Act, asked: Asked, answer: Answer) -> Forecast:
     """Insert the forecast within an act's transaction."""
     row = Forecast(
         act=act, receiver=asked.bottle, source=asked.supply.bottle, station=asked.supply.station,
-        readings=answer.readings.plain(), physics_version=PHYSICS_VERSION, low_g=answer.low_g,
-        likely_g=answer.likely_g, high_g=answer.high_g, result=answer.result(),
+        readings=answer.readings.plain() | {"inverted": asked.supply.inverted}, physics_version=PHYSICS_VERSION, fit=answer.fit,
+        low_g=answer.low_g, likely_g=answer.likely_g, high_g=answer.high_g, result=answer.result(),
     )  # fmt: skip
     row.save()
     return row
@@ -238,7 +252,7 @@ def _contents(asked: Asked, readings: Readings, held: Held | None, notes: list[t
         "pressure_pa": float(readings.gauge.stored),
         "limit_kg": asked.source_limit_g / 1000 if asked.source_limit_g else None,
         "gauge_tolerance_pa": float(station.gauge_tolerance_pa),
-        "thermometer_tolerance_k": _tolerance_k(station, readings.taken),
+        "thermometer_tolerance_k": tolerance_k(station, readings.taken),
     }
     if held is None:
         return contents_from_reading(**common)
@@ -320,13 +334,14 @@ def _each_wall(
         notes.append(("tube_unknown", f"Whether {source.code} has a dip (siphon) tube isn't known: it's taken to give liquid."))
     if source.capacity_ml is None:
         raise NotReady(f"{source.code} has no water capacity written down. Complete its record first.", code="no source capacity")
-    degrees = max(_tolerance_k(station, readings.taken), _tolerance_k(station, readings.bottle_taken))
+    degrees = max(tolerance_k(station, readings.taken), tolerance_k(station, readings.bottle_taken))
     scale_kg = max((held.error_g if held else 0), 1) / 1000
     found = []
     for source_wall, own_wall in product(source_walls.heat_j_k, own_walls.heat_j_k):
         supply = Vessel(
             source.capacity_ml / 1e6, source_wall, spread[1] if spread else (held.grams / 1000 if held else 0.0),
             readings.supply_temperature.stored / 1000, liquid_pickup=liquid is not False,
+            below_tube_m3=below_tube_m3(source, inverted=asked.supply.inverted),
         )  # fmt: skip
         found.append(
             Pair(
@@ -349,6 +364,7 @@ def _wall_notes(bottle: Bottle, walls: Walls) -> list[tuple[str, str]]:
     return notes
 
 
-def _tolerance_k(station: Station, taken: str) -> float:
+def tolerance_k(station: Station, taken: str) -> float:
+    """Return the tolerance of a temperature at a station, by how it was taken [K]."""
     more = next((extra for code, _, extra in TAKEN if code == taken), 0)
     return (station.thermometer_tolerance_mk + more) / 1000
