@@ -16,6 +16,7 @@ from bottles.models import Draw, Refill, Supply, Weighing
 from bottles.selectors.judging import judge_bottle
 from bottles.selectors.refills import Course, course_of, draws_of, in_force
 from bottles.services.forecasting import Answer, Asked, DangerSign
+from bottles.services.learning import ask_to_learn
 from bottles.services.locking import lock
 from bottles.services.refill_books import post_flows
 from bottles.services.refill_refusals import Closed, NotDisconnected, Overfull, WetProvesNothing
@@ -167,6 +168,7 @@ def _close(course: Course, ended_by: str, *, version: int | None = None) -> None
             "closed_at": max(clock.now(), course.reads[-1].happened_at), "ended_by": ended_by, "wait_until": None, "wait_note": "",
         },
     )  # fmt: skip
+    ask_to_learn(refill)
 
 
 def _weigh(act: Act, refill: Refill, draws: Sequence[Draw], weight: Weight) -> tuple[Weighing, Course]:

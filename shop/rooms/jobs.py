@@ -16,7 +16,7 @@ from shop.base.permissions import EVERYONE, MANAGERS, allow
 from shop.people.acting import ActForm, ActView
 from shop.people.models import User, full_name
 
-KINDS = {"demo.fill": "Writing the demo's past", "ledger.check": "Checking the books"}
+KINDS = {"demo.fill": "Writing the demo's past", "ledger.check": "Checking the books", "learning.fit": "Learning from the refills"}
 RUNNING = ("queued", "running")
 LATEST = 40
 
