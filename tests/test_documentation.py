@@ -8,13 +8,17 @@ import pytest
 from django.conf import settings
 from django.core.management import get_commands, load_command_class
 
+from manage import FOR_SCRIPTS
+
 ROOT = Path(settings.BASE_DIR)
 README = (ROOT / "README.md").read_text(encoding="utf-8")
 DOCUMENTS = [ROOT / "README.md", ROOT / "DEVELOPERS.md"]
 
 
 def shell_lines() -> list[str]:
-    return [line for block in re.findall(r"```sh\n(.*?)```", README, re.DOTALL) for line in block.splitlines()]
+    """Lines to type, without those for scripts (tests/bottles/test_script_processes.py runs them)."""
+    of_people = README.partition("## For scripts")[0]
+    return [line for block in re.findall(r"```sh\n(.*?)```", of_people, re.DOTALL) for line in block.splitlines()]
 
 
 def test_one_line_starts_the_shop_and_one_tests_it():
@@ -54,9 +58,10 @@ def test_every_command_that_a_document_names_exists(document):
     assert named - set(get_commands()) == set()
 
 
-def test_every_flag_of_open_that_the_readme_names_exists():
-    parser = load_command_class("shop.base", "open").create_parser("manage.py", "open")
-    known = {option for action in parser._actions for option in action.option_strings}
+def test_every_flag_that_the_readme_names_exists():
+    commands = [("shop.base", "open"), *(("bottles", name) for name in FOR_SCRIPTS)]
+    parsers = [load_command_class(app, name).create_parser("manage.py", name) for app, name in commands]
+    known = {option for parser in parsers for action in parser._actions for option in action.option_strings}
     named = {flag for line in README.splitlines() if "pip" not in line for flag in re.findall(r"(--[a-z-]+)", line)}
     assert named
     assert named - known == set()

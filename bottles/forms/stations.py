@@ -12,6 +12,7 @@ from shop.base.fields import LengthField, MassField, PressureField, QuantityFiel
 from shop.base.models import Place
 from shop.people.acting import ActForm
 from shop.physics import units
+from shop.physics.differences import parse_temperature_difference
 from shop.physics.unit_table import UNITS
 
 PULLS = [("down", "bears down: the scale then reads too much"), ("up", "lifts: the scale then reads too little")]
@@ -30,9 +31,7 @@ class TemperatureToleranceField(QuantityField):
     defaults = {"us": "°F", "metric": "°C"}
 
     def parse(self, text: str) -> units.Entry:
-        found = units.parse_temperature(text, default_unit=self.default_unit)
-        zero = units.parse_temperature(f"0 {found.unit}", default_unit=found.unit) if found.unit != "K" else None
-        return units.Entry(found.stored - (zero.stored if zero else 0), found.typed, found.unit)
+        return parse_temperature_difference(text, default_unit=self.default_unit)
 
 
 class StationForm(ActForm):
