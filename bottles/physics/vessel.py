@@ -58,6 +58,15 @@ class Vessel:
                 "Check the weight, the tare and the capacity.",
             )
 
+    def changed(self, *, net_kg: float | None = None, temperature_k: float | None = None) -> Vessel:
+        """The same bottle with other contents, or at another temperature."""
+        return Vessel(
+            self.volume_m3, self.wall_j_k,
+            self.net_kg if net_kg is None else net_kg,
+            self.temperature_k if temperature_k is None else temperature_k,
+            self.air, self.liquid_pickup, self.below_tube_m3,
+        )  # fmt: skip
+
 
 def wall_heat(wall: str, mass_kg: float) -> float:
     """Heat capacity of a bottle's wall.

@@ -62,7 +62,7 @@ class Adiabatic:
         """Start at rest; stages are found as far as they are asked for."""
         self._vessel = vessel
         self._v, self._c = vessel.volume_m3, vessel.wall_j_k
-        self._start = (
+        self.start_j = (
             pressure_and_energy(self._v, vessel.net_kg, vessel.temperature_k)[1] + self._c * vessel.temperature_k
         )
         self._stages: list[_TwoPhase | _OnePhase] = []
@@ -79,17 +79,14 @@ class Adiabatic:
             stage = self._stages[-1]
             if stage.reaches(left):
                 break
-            mass, temperature = stage.end
-            if isinstance(stage, _TwoPhase) and self.dry_at_kg is None and not stage.rises:
-                self.dry_at_kg = self._vessel.net_kg - mass
-            self._open(mass, temperature, stage)
+            self._open_next(stage)
         else:
             raise NoSolution("supply_path")
         for stage in self._stages:
             if stage.reaches(left):
                 break
         temperature, pressure, energy, outlet, liquid = stage.state(left)
-        given = self._start - energy - self._c * temperature
+        given = self.start_j - energy - self._c * temperature
         answer = Given(temperature, pressure, given, outlet, liquid)
         self._last = (given_kg, answer)
         return answer
@@ -97,16 +94,44 @@ class Adiabatic:
     def dry_out(self) -> float:
         """Mass given when no liquid can be drawn any more; nothing where none can at the start [kg]."""
         if self.dry_at_kg is None:
-            stage = self._stages[0]
             if not self.after(0.0).liquid:
                 self.dry_at_kg = 0.0
-            while self.dry_at_kg is None:
-                end = stage.end[0]
-                self.after(self._vessel.net_kg - end * (1.0 - 1e-6))
-                if self.dry_at_kg is None and stage is self._stages[-1]:
-                    self.dry_at_kg = self._vessel.net_kg - end
-                stage = self._stages[-1]
-        return self.dry_at_kg
+            for index in range(12):
+                if self.dry_at_kg is not None:
+                    break
+                stage = self._stages[index]
+                mass = stage.end[0]
+                if mass <= 0.0 or (isinstance(stage, _TwoPhase) and not stage.liquid and not stage.rises):
+                    # It never comes to an end, or mist that lies below all that is drawn.
+                    self.dry_at_kg = self._vessel.net_kg - mass
+                elif index + 1 == len(self._stages):
+                    self._open_next(stage)
+        return self.dry_at_kg or 0.0
+
+    def given_at(self, temperature_k: float) -> float | None:
+        """Mass given when two phases have cooled to a temperature; None where there's no such moment [kg]."""
+        s, index = to_s(temperature_k), 0
+        while index < 12:
+            stage = self._stages[index]
+            if isinstance(stage, _TwoPhase):
+                left = stage.left_at(s)
+                if left is not None:
+                    return self._vessel.net_kg - left
+            elif stage.thin:
+                return None
+            index += 1
+            if index == len(self._stages):
+                if stage.end[0] <= 0.0:
+                    return None
+                self._open_next(stage)
+        return None
+
+    def _open_next(self, stage: _TwoPhase | _OnePhase) -> None:
+        """Begin what follows the last stage."""
+        mass, temperature = stage.end
+        if isinstance(stage, _TwoPhase) and stage.liquid and self.dry_at_kg is None:
+            self.dry_at_kg = self._vessel.net_kg - mass
+        self._open(mass, temperature, stage)
 
     def _open(self, mass: float, temperature: float, before: _TwoPhase | _OnePhase | None) -> None:
         """Begin the stage that follows from a state and from how it was reached."""
@@ -197,6 +222,15 @@ class _TwoPhase:
         """Mass at which the stage is over, at a temperature's saturated states."""
         return mass_without_reach(side, self._v, self._below if self.liquid else 0.0)
 
+    def left_at(self, s: float) -> float | None:
+        """Mass left at a temperature, where this stage goes through it."""
+        if s < to_s(self._top[1]):
+            return None
+        left = self._drain.mass_and_slope(s)[0]
+        if self._end is None:
+            return left if left >= self._least(self._read(s)) else None
+        return left if left >= self._end[0] else None
+
     def reaches(self, left: float) -> bool:
         """Say whether this stage goes on with a mass left."""
         if self._end is None:
@@ -257,6 +291,7 @@ class _OnePhase:
         slope = _one_phase_slope(volume, wall, mass, temperature)
         self._nodes = [(mass, temperature, slope)]
         self._end: tuple[float, float] | None = None
+        self.thin = mass < RHO_CRITICAL * volume  # vapour, or a fluid as thin
 
     def reaches(self, left: float) -> bool:
         """Say whether it's still one phase with a mass left."""

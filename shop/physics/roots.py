@@ -21,6 +21,7 @@ def find_root(
     tolerance: float,
     at_low: float | None = None,
     at_high: float | None = None,
+    first: float | None = None,
 ) -> float:
     """Find where a continuous function changes sign, by Chandrupatla's method.
 
@@ -30,6 +31,7 @@ def find_root(
     low, high : float, the bracket [-]
     tolerance : float, half of the width at which the search ends [-]
     at_low, at_high : float or None, the function there where it's known already [-]
+    first : float or None, a likely place to look at first; the middle without [-]
 
     Returns
     -------
@@ -61,6 +63,8 @@ def find_root(
     if not (f1 < 0.0) != (f2 < 0.0) or f1 != f1 or f2 != f2:
         raise NoSolution("no_sign_change")
     portion = 0.5
+    if first is not None and min(x1, x2) < first < max(x1, x2):
+        portion = (first - x1) / (x2 - x1)
     for _ in range(MAX_STEPS):
         x = x1 + portion * (x2 - x1)
         f = function(x)
