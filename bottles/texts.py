@@ -42,6 +42,7 @@ FIELDS: dict[str, str] = {
     "capacity_typed": "water capacity",
     "capacity_basis": "how the capacity is known",
     "charge_typed": "size",
+    "below_tube_typed": "liquid below the dip tube's end",
     "dip_tube": "dip (siphon) tube",
     "disc": "safety disc",
     "race_grade": "race grade",
@@ -51,7 +52,7 @@ FIELDS: dict[str, str] = {
     "own_limit_g": "the shop's own limit in grams",
     "last_held": "what it last held",
 }
-DOUBLED = {"capacity_ml", "charge_g"}  # told by what was typed
+DOUBLED = {"capacity_ml", "charge_g", "below_tube_ml"}  # told by what was typed
 STAMPS = {"made": "made", "test": "test", "visual": "visual inspection", "disc": "safety disc", "end": "end of service life"}
 
 

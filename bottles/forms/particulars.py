@@ -45,6 +45,10 @@ class ParticularsForm(RegisterForm):
     )
     alloy = text("Alloy", 40, help_text="If it's stamped or known, such as 6061 or 6351.")
     dip_tube = forms.ChoiceField(label="Dip (siphon) tube", choices=Bottle.DIP_TUBES, initial="unknown", required=False)
+    below_tube = VolumeField(
+        label="Liquid below the dip tube's end (left behind)", required=False,
+        help_text="60 mL, if it was measured or the maker says so. It never comes out with the bottle upright.",
+    )
     outlet = text("Outlet", 60, help_text="Thread or standard of the valve's outlet.")
     disc = text("Safety disc", 60, help_text="Its pressure as marked, such as 3000 psi.")
     permit = text("Permit", 60, help_text="Number of the special permit it's made or filled under.")
@@ -93,6 +97,7 @@ class ParticularsForm(RegisterForm):
             **{name: data[name] for name in ("serial", "mark", "maker", "alloy", "outlet", "disc", "use", "permit", "note")},
             charge_g=self.stored("size"), charge_typed=self.typed("size"),
             wall=data["wall"] or "unknown", dip_tube=data["dip_tube"] or "unknown",
+            below_tube_ml=self.stored("below_tube"), below_tube_typed=self.typed("below_tube"),
             permit_charge_g=self.stored("permit_charge"), permit_until=data["permit_until"],
             permit_lists_nitrous=YES_NO.get(data["permit_lists"]), own_limit_g=self.stored("own_limit"),
             last_held=data["last_held"], race_grade=YES_NO.get(data["race_grade"]),
@@ -125,6 +130,7 @@ def particulars_typed(bottle: Bottle, *, unit: str) -> dict[str, Any]:
         "mark_illegible": not bottle.mark,
         "capacity": bottle.capacity_typed if measured else "",
         "capacity_basis": bottle.capacity_basis if measured else "stamped",
+        "below_tube": bottle.below_tube_typed,
         "size": mass_shown_back(bottle.charge_g, bottle.charge_typed, meant=unit),
         "permit_charge": in_own_unit(bottle.permit_charge_g, "g") if bottle.permit_charge_g else "",
         "own_limit": in_own_unit(bottle.own_limit_g, "g") if bottle.own_limit_g else "",

@@ -16,8 +16,8 @@ from bottles.services.registering import FirstFacts
 from bottles.services.stamps import SeenStamp
 
 MORE = (
-    "capacity_basis", "maker", "wall", "alloy", "dip_tube", "outlet", "disc", "disc_stamp", "made_stamp", "visual_stamp",
-    "end_stamp", "last_held", "race_grade", "own_limit", "permit", "permit_lists", "permit_charge", "permit_until",
+    "capacity_basis", "maker", "wall", "alloy", "dip_tube", "below_tube", "outlet", "disc", "disc_stamp", "made_stamp",
+    "visual_stamp", "end_stamp", "last_held", "race_grade", "own_limit", "permit", "permit_lists", "permit_charge", "permit_until",
 )  # fmt: skip
 STAMPS = ("test", "made", "visual", "disc", "end")
 

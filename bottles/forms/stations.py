@@ -10,6 +10,7 @@ from bottles.models import Bottle, Scale, Station
 from bottles.services.stations import StationValues
 from shop.base.fields import LengthField, MassField, PressureField, QuantityField
 from shop.base.models import Place
+from shop.base.shown_back import pressure_shown_back
 from shop.people.acting import ActForm
 from shop.physics import units
 from shop.physics.differences import parse_temperature_difference
@@ -75,6 +76,13 @@ class StationForm(ActForm):
         label="The pump's plate", max_length=200, required=False,
         help_text="Its limits. Made for nitrous oxide, oil-free; never run dry, never against a shut valve.",
     )
+    pump_most = PressureField(
+        label="Highest delivery pressure on its plate", required=False,
+        help_text="As a gauge shows it, unless the plate says absolute: 100 bar, 1500 psi, 101 bara.",
+    )
+    pump_least = PressureField(
+        label="Lowest inlet pressure on its plate", required=False, help_text="Below it the pump runs dry: 10 bar, 150 psi."
+    )
     active = forms.BooleanField(label="In use", required=False, initial=True)
 
     def values(self) -> StationValues:
@@ -90,6 +98,8 @@ class StationForm(ActForm):
             line_loss_g=self.stored("line_loss"), line_loss_typed=self.typed("line_loss"),
             gauge_tolerance_pa=data["gauge_tolerance"].stored, thermometer_tolerance_mk=data["thermometer_tolerance"].stored,
             pumped=data["pumped"], pump_note=data["pump_note"].strip(), active=data["active"],
+            pump_most_pa=self.stored("pump_most"), pump_most_typed=self.typed("pump_most"),
+            pump_least_pa=self.stored("pump_least"), pump_least_typed=self.typed("pump_least"),
         )  # fmt: skip
 
 
@@ -119,12 +129,15 @@ class DisconnectForm(ActForm):
     )
 
 
-def station_as_typed(station: Station, system: str) -> dict[str, Any]:
+def station_as_typed(station: Station, system: str, *, ambient_pa: float) -> dict[str, Any]:
     """A station as its form shows it, each figure so that typing it again gives the same."""
     us = system == "us"
 
     def mass(grams: int | None) -> str:
         return "" if grams is None else units.in_own_unit(grams, "oz" if us else "g")
+
+    def gauge(pascal: int | None, typed: str) -> str:
+        return "" if pascal is None else pressure_shown_back(pascal, typed, unit="psi" if us else "bar", ambient_pa=ambient_pa)
 
     return {
         "version": station.version, "code": station.code, "name": station.name, "place": station.place_id,
@@ -137,6 +150,8 @@ def station_as_typed(station: Station, system: str) -> dict[str, Any]:
         "gauge_tolerance": units.in_own_unit(station.gauge_tolerance_pa, "psi" if us else "bar", ambient_pa=0.0),
         "thermometer_tolerance": tolerance_words(station.thermometer_tolerance_mk, system),
         "pumped": station.pumped, "pump_note": station.pump_note, "active": station.active,
+        "pump_most": gauge(station.pump_most_pa, station.pump_most_typed),
+        "pump_least": gauge(station.pump_least_pa, station.pump_least_typed),
     }  # fmt: skip
 
 

@@ -55,6 +55,8 @@ class Particulars:
     wall: str = "unknown"
     alloy: str = ""
     dip_tube: str = "unknown"
+    below_tube_ml: int | None = None
+    below_tube_typed: str = ""
     outlet: str = ""
     disc: str = ""
     use: str = "car"
@@ -105,6 +107,7 @@ def register_bottle(
             "A code is letters, digits and dashes, 20 at most, as a label carries them.", code="not a code", field="code"
         )
     particulars = _with_capacity(particulars.tidy())
+    _refuse_below_tube(particulars)
     since = first.since or clock.now()
     # What an act is about stands in it from the start, so a code still to be found is found before.
     subject = code or next_code(particulars.use)
@@ -141,6 +144,7 @@ def change_bottle(
     Raises Stale where someone else saved since the form was drawn; Retired; else as registering.
     """
     particulars = _with_capacity(particulars.tidy())
+    _refuse_below_tube(particulars)
     values: dict[str, Any] = asdict(particulars)
     with acts.begin(
         key=key, person=person, code="bottle.changed", subject=f"bottle:{bottle.code}", changes=acts.changed(bottle, values)
@@ -167,6 +171,23 @@ def _with_capacity(particulars: Particulars) -> Particulars:
     if inferred is None:
         return particulars
     return replace(particulars, capacity_ml=inferred.capacity_ml, capacity_basis="inferred")
+
+
+def _refuse_below_tube(particulars: Particulars) -> None:
+    """Refuse liquid below a tube that isn't there, or more of it than a tube to the low end can leave."""
+    left = particulars.below_tube_ml
+    if left is None:
+        return
+    if particulars.dip_tube != "dip":
+        raise Refusal(
+            "Only a dip tube leaves liquid below its end. Choose that the bottle has one, or leave this empty.",
+            code="no dip tube", field="below_tube",
+        )
+    if particulars.capacity_ml is not None and 2 * left >= particulars.capacity_ml:
+        raise Refusal(
+            "A dip tube reaches into the lower half of its bottle. Check the figure and its unit.",
+            code="below tube too much", field="below_tube",
+        )
 
 
 def _create(act: Act, code: str, particulars: Particulars) -> Bottle:

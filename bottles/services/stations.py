@@ -44,6 +44,10 @@ class StationValues:
     thermometer_tolerance_mk: int = 1000
     pumped: bool = False
     pump_note: str = ""
+    pump_most_pa: int | None = None
+    pump_most_typed: str = ""
+    pump_least_pa: int | None = None
+    pump_least_typed: str = ""
     active: bool = True
 
     def columns(self) -> dict[str, Any]:
@@ -178,6 +182,14 @@ def _refuse_odd(values: StationValues) -> None:
         odd = "thermometer_tolerance", "A thermometer's tolerance lies between 0.05 and 10 °C. Check the figure and its unit."
     elif values.pumped and not values.pump_note.strip():
         odd = "pump_note", "Write the pump's limits as they stand on its plate: pressure, temperature, made for nitrous oxide."
+    elif not values.pumped and (values.pump_most_pa is not None or values.pump_least_pa is not None):
+        odd = "pumped", "These are figures of a pump. Tick that it has one, or leave them empty."
+    elif values.pump_most_pa is not None and not 1_000_000 <= values.pump_most_pa <= 100_000_000:
+        odd = "pump_most", "A pump for nitrous oxide delivers at 10 to 1,000 bar. Check the figure on its plate and its unit."
+    elif values.pump_least_pa is not None and values.pump_least_pa > 7_000_000:
+        odd = "pump_least", "No supply bottle keeps up so high an inlet pressure: at most 70 bar. Check the figure and its unit."
+    elif None not in (most := values.pump_most_pa, least := values.pump_least_pa) and least >= most:
+        odd = "pump_least", "A pump delivers above its inlet's pressure. The two figures look exchanged: read the plate again."
     elif values.scale is not None and values.scale == values.supply_scale:
         odd = "supply_scale", "One scale can't carry both bottles at once. Choose another for the supply, or none."
     if odd:

@@ -17,6 +17,7 @@ from bottles.views.sections import Seen
 from bottles.views.wording import Words, words_for
 from shop.base import clock
 from shop.base.permissions import BENCH, DESK, MANAGERS
+from shop.physics.formatting import format_volume
 from shop.rules import month as months
 
 
@@ -72,6 +73,7 @@ def _facts(bottle: Bottle, standing: Standing, words: Words) -> list[tuple[str, 
         ("Size", f"{words.mass(bottle.charge_g)} (labelled)" if bottle.charge_g else ""),
         ("Wall", " ".join(filter(None, ("" if bottle.wall == "unknown" else bottle.wall, bottle.alloy)))),
         ("Dip (siphon) tube", "" if bottle.dip_tube == "unknown" else bottle.get_dip_tube_display()),
+        ("Left below the tube's end", _below_tube(bottle)),
         ("Outlet", bottle.outlet),
         ("Safety disc", bottle.disc),
         ("Permit", _permit(bottle, words)),
@@ -90,6 +92,12 @@ def _capacity(bottle: Bottle, words: Words) -> str:
         return ""
     basis = bottle.get_capacity_basis_display()
     return f"{words.capacity(bottle)}, {basis}"
+
+
+def _below_tube(bottle: Bottle) -> str:
+    if bottle.below_tube_ml is None:
+        return ""
+    return f"{format_volume(bottle.below_tube_ml, 'mL')}, entered as “{bottle.below_tube_typed}”"
 
 
 def _permit(bottle: Bottle, words: Words) -> str:

@@ -39,10 +39,11 @@ FIELD_OF_CODE = {
 }
 # Which field of the form holds a column of the table; what only follows from another isn't told twice.
 FIELD_OF_COLUMN = {
-    "capacity_typed": "capacity", "charge_typed": "size", "permit_charge_g": "permit_charge", "own_limit_g": "own_limit",
+    "capacity_typed": "capacity", "below_tube_typed": "below_tube", "charge_typed": "size",
+    "permit_charge_g": "permit_charge", "own_limit_g": "own_limit",
     "permit_lists_nitrous": "permit_lists",
 }  # fmt: skip
-FOLLOWS = {"capacity_ml", "charge_g"}
+FOLLOWS = {"capacity_ml", "charge_g", "below_tube_ml"}
 
 
 def asking(form: Any, refusal: Exception) -> None:

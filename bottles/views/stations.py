@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import uuid
 from typing import Any
+from urllib.parse import urlencode
 
 from django.db.models import QuerySet
 from django.http import Http404, HttpRequest, HttpResponse
@@ -22,6 +23,7 @@ from shop.base.permissions import EVERYONE, MANAGERS, allow
 from shop.people.acting import ActView
 from shop.people.models import User
 from shop.physics.formatting import format_length, format_volume
+from shop.physics.units import ambient_pressure
 
 
 @allow(EVERYONE, room="counter")
@@ -87,7 +89,8 @@ class StationChange(OfStation):
     form_class = StationForm
 
     def initial(self) -> dict[str, Any]:
-        return station_as_typed(self.station, self.request.user.units or self.shop.units)  # type: ignore[union-attr]
+        system = self.request.user.units or self.shop.units  # type: ignore[union-attr]
+        return station_as_typed(self.station, system, ambient_pa=ambient_pressure(float(self.shop.height_m)))
 
     def context(self) -> dict[str, Any]:
         return super().context() | {"heading": f"Change {self.station.name}"}
@@ -173,7 +176,9 @@ def _row(station: Station, words: RefillWords) -> dict[str, Any]:
     if station.hose_pull_g:
         pull = f"{words.mass(abs(station.hose_pull_g))}, {'bears down' if station.hose_pull_g > 0 else 'lifts'}"
     loss = f"{words.mass(station.line_loss_g)} (entered)" if station.line_loss_g is not None else "computed at each refill"
+    hung = [supply.bottle.code for supply in station.supplies.all()]
     return {
+        "joined_url": f"{reverse('bottles:joined', args=[hung[0]])}?{urlencode({'other': hung[1]})}" if len(hung) > 1 else "",
         "pk": station.pk, "name": station.name, "code": station.code, "active": station.active,
         "facts": [
             ("Place", str(station.place or "not written down")),
@@ -181,9 +186,19 @@ def _row(station: Station, words: RefillWords) -> dict[str, Any]:
             ("Supply on a scale", str(station.supply_scale or "no")),
             ("Hose", hose), ("Hose's pull", pull), ("Line loss", loss),
             ("Pump", station.pump_note if station.pumped else "none"),
+            *_pump(station, words),
         ],
         "supplies": [_supply(supply, words) for supply in station.supplies.all()],
     }  # fmt: skip
+
+
+def _pump(station: Station, words: RefillWords) -> list[tuple[str, str]]:
+    """The pump's limits as a gauge shows them, and as they were typed off its plate."""
+    plate = [
+        ("Pump delivers at most", station.pump_most_pa, station.pump_most_typed),
+        ("Pump's inlet at least", station.pump_least_pa, station.pump_least_typed),
+    ]
+    return [(name, f"{words.pressure(pa)} gauge, entered as “{typed}”") for name, pa, typed in plate if pa is not None]
 
 
 def _supply(supply: Supply, words: RefillWords) -> dict[str, Any]:

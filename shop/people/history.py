@@ -36,6 +36,7 @@ FIELDS = {
     "is_technician": "technician", "is_manager": "manager", "email": "e-mail", "phone": "phone", "note": "note",
     "car_class": "class", "customer_id": "owner", "public_address": "public address", "time_zone": "time zone",
     "height_m": "height above sea", "local_notice": "local notice", "limit_g": "limit",
+    "coldest_typed": "how cold it gets", "takes_at_once": "bottles at once",
 }  # fmt: skip
 
 
@@ -60,6 +61,8 @@ def _changes(changes: dict[str, Any]) -> str:
     """Say what changed, by the values that the act holds (names and addresses it doesn't hold)."""
     parts = []
     for field, change in changes.items():
+        if field == "coldest_mk":  # told by what was typed
+            continue
         word = FIELDS.get(field, field.replace("_", " "))
         if field == "customer":  # an act holds no names
             parts.append("owner")

@@ -9,7 +9,7 @@ from zoneinfo import available_timezones
 
 from django import forms
 
-from shop.base.fields import LengthField, MassField
+from shop.base.fields import LengthField, MassField, TemperatureField
 from shop.base.models import Place, Shop
 from shop.people.acting import ActForm
 from shop.physics import units
@@ -133,6 +133,15 @@ class PlaceForm(ActForm):
         required=False,
         help_text="As your local code or fire authority allows. Empty: none set.",
     )
+    coldest = TemperatureField(
+        label="How cold it gets", required=False, help_text="Of a freezer or bath: -18 °C, 0 °F; iced water 0 °C."
+    )
+    takes_at_once = forms.IntegerField(
+        label="Bottles at once", required=False, min_value=1, max_value=200,
+        help_text="Of a freezer or bath: how many it chills together.",
+        widget=forms.TextInput(attrs={"inputmode": "numeric", "autocomplete": "off"}),
+        error_messages=dict.fromkeys(("invalid", "min_value", "max_value"), "Give a whole number, 1 to 200, or nothing."),
+    )
 
 
 class NewPlaceForm(PlaceForm):
@@ -144,7 +153,7 @@ class NewPlaceForm(PlaceForm):
         widget=forms.TextInput(attrs={"autocomplete": "off", "data-short": True}),
         error_messages={"required": "Give the place a short code."},
     )
-    field_order = ("code", "name", "kind", "outdoors", "limit")
+    field_order = ("code", "name", "kind", "outdoors", "limit", "coldest", "takes_at_once")
 
 
 class ChangePlaceForm(PlaceForm):

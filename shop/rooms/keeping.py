@@ -14,10 +14,11 @@ from shop.base import clock
 from shop.base.models import Place, Policy, Shop
 from shop.base.paging import page_of
 from shop.base.permissions import MANAGERS, allow
+from shop.base.shown_back import temperature_shown_back
 from shop.people.acting import ActView
 from shop.people.history import history_of
 from shop.people.models import User
-from shop.physics.formatting import format_mass, unit_system
+from shop.physics.formatting import format_mass, format_temperature, unit_system
 from shop.physics.units import in_own_unit
 from shop.rooms import services
 from shop.rooms.bay import system_of
@@ -160,6 +161,7 @@ def places(request: HttpRequest) -> HttpResponse:
             "outdoors": "outdoors" if one.outdoors else "indoors",
             "limit": format_mass(one.limit_g, unit_system(system).mass) if one.limit_g is not None else "none set",
             "active": one.active,
+            "chills": _chills(one, system),
         }
         for one in page
     ]
@@ -223,6 +225,8 @@ class PlaceChange(ActView):
             "outdoors": one.outdoors,
             "limit": limit,
             "active": one.active,
+            "coldest": _coldest_shown_back(one, system_of(self.request)),
+            "takes_at_once": one.takes_at_once,
         }
 
     def act(self, form: Any, person: User, key: uuid.UUID) -> str:
@@ -235,7 +239,25 @@ class PlaceChange(ActView):
 
 def _place_values(form: Any) -> dict[str, Any]:
     typed = form.cleaned_data
-    return {name: typed[name] for name in ("name", "kind", "outdoors")} | {"limit_g": form.stored("limit")}
+    return {name: typed[name] for name in ("name", "kind", "outdoors", "takes_at_once")} | {
+        "limit_g": form.stored("limit"), "coldest_mk": form.stored("coldest"), "coldest_typed": form.typed("coldest"),
+    }  # fmt: skip
+
+
+def _coldest_shown_back(place: Place, system: str) -> str:
+    if place.coldest_mk is None:
+        return ""
+    return temperature_shown_back(place.coldest_mk, place.coldest_typed, unit=unit_system(system).temperature)
+
+
+def _chills(place: Place, system: str) -> str:
+    """How cold it gets, as entered, and how many bottles it takes."""
+    told = []
+    if place.coldest_mk is not None:
+        told.append(f"to {format_temperature(place.coldest_mk, unit_system(system).temperature)}")
+    if place.takes_at_once is not None:
+        told.append(f"{place.takes_at_once} at once")
+    return f"{', '.join(told)} (entered)" if told else ""
 
 
 def _own(per_mille: int | None) -> str:

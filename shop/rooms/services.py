@@ -37,8 +37,14 @@ def decide_policy(
         return Policy.objects.create(act=act, effective_from=effective_from, values=values)
 
 
+COLDEST_MK, WARMEST_MK = 233_150, 313_150  # −40 and 40 °C
+DRY_ICE_MK = 213_150  # −60 °C: colder than any freezer for bottles
+CHILLS = ("freezer", "bath")
+
+
 def add_place(*, person: User, key: uuid.UUID, values: dict[str, Any]) -> Place:
-    """Add a place where a bottle can stand; raises Refusal where its code is taken."""
+    """Add a place where a bottle can stand; raises Refusal where its code is taken or its cold can't be."""
+    _refuse_cold(values)
     new = Place(**values)
     new.clean_fields()
     with acts.begin(key=key, person=person, code="place.added", subject=f"place:{new.code}"):
@@ -48,11 +54,30 @@ def add_place(*, person: User, key: uuid.UUID, values: dict[str, Any]) -> Place:
 
 
 def change_place(*, person: User, key: uuid.UUID, place: Place, version: int, values: dict[str, Any]) -> None:
-    """Change a place; its code stays, since acts and labels name it."""
+    """Change a place; its code stays, since acts and labels name it. Raises Refusal where its cold can't be."""
+    _refuse_cold(values)
     with acts.begin(
         key=key, person=person, code="place.changed", subject=f"place:{place.code}", changes=acts.changed(place, values)
     ):
         acts.update_master(place, version=version, values=values)
+
+
+def _refuse_cold(values: dict[str, Any]) -> None:
+    """Refuse cold of a place that doesn't chill, and cold that no bottle is made for."""
+    coldest, at_once = values.get("coldest_mk"), values.get("takes_at_once")
+    odd = None
+    if values.get("kind") not in CHILLS and (coldest is not None or at_once is not None):
+        field = "coldest" if coldest is not None else "takes_at_once"
+        odd = field, "Only a freezer or a bath chills bottles. Choose that kind, or leave this empty."
+    elif coldest is not None and coldest < DRY_ICE_MK:
+        odd = "coldest", (
+            "That is the cold of dry ice. Valves, seals and safety discs aren't made for it, and a bottle filled so cold may be "
+            "full of liquid before it's warm: chill in a freezer or in iced water."
+        )
+    elif coldest is not None and not COLDEST_MK <= coldest <= WARMEST_MK:
+        odd = "coldest", "A freezer or bath for bottles is between -40 and 40 °C. Check the figure and its unit."
+    if odd:
+        raise Refusal(odd[1], code="out of range", field=odd[0])
 
 
 def _refuse_taken(code: str) -> None:

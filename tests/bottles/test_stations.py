@@ -11,6 +11,7 @@ from django.urls import reverse
 from bottles.models import Refill, Station, Supply
 from bottles.services import stations
 from shop.base.errors import Refusal, Stale
+from shop.physics.units import ambient_pressure
 from tests import factories
 from tests.bottles.of_refill import Works, key
 
@@ -164,3 +165,52 @@ def test_the_desk_connects_what_the_list_offers(works: Works, front_desk: Any, c
     assert b"S-20" in client.get(reverse("bottles:stations")).content
     assert client.post(reverse("bottles:disconnect", args=[supply.pk]), {"form_key": str(key())}).status_code == 302
     assert client.post(reverse("bottles:disconnect", args=[supply.pk]), {"form_key": str(key())}).status_code == 409
+
+
+PLATE = {"pumped": "on", "pump_note": "oil-free, made for nitrous oxide", "pump_most": "1500 psi", "pump_least": "150 psi"}
+
+
+def test_a_pumps_plate_is_read_as_gauge_at_the_shops_height_and_kept_as_typed(shop: Any, manager: Any, client_of: Any) -> None:
+    client = client_of(manager)
+    answer = client.post(reverse("bottles:station_add"), {**FORM, **PLATE, "pump_most": "101 bara", "form_key": str(key())})
+    assert answer.status_code == 302
+    station = Station.objects.get()
+    # 150 psi × 6894.757 Pa = 1 034 214 Pa over the air at 180 m (NIST SP 811, appendix B.8); bara is absolute already.
+    ambient = round(ambient_pressure(float(shop.height_m)))
+    assert station.pump_least_pa == pytest.approx(1_034_214 + ambient, abs=1)
+    assert (station.pump_most_pa, station.pump_most_typed, station.pump_least_typed) == (10_100_000, "101 bara", "150 psi")
+    page = client.get(reverse("bottles:stations")).content.decode()
+    assert "entered as “101 bara”" in page
+    assert "150 psi gauge, entered as “150 psi”" in page
+
+
+def test_what_the_form_shows_of_a_pump_saves_the_same_again(shop: Any, manager: Any, client_of: Any) -> None:
+    client = client_of(manager)
+    client.post(reverse("bottles:station_add"), {**FORM, **PLATE, "pump_least": "10.5", "form_key": str(key())})
+    before = Station.objects.values().get()
+    for units in ("us", "metric"):
+        type(manager).objects.filter(pk=manager.pk).update(units=units)
+        shown = client.get(reverse("bottles:station", args=[before["id"]])).context["form"]
+        held = {name: shown[name].value() for name in shown.fields if shown[name].value() not in (None, False, "")}
+        held["version"] = Station.objects.get().version
+        assert client.post(reverse("bottles:station", args=[before["id"]]), held | {"form_key": str(key())}).status_code == 302
+        after = Station.objects.values().get()
+        assert (after["pump_most_pa"], after["pump_least_pa"]) == (before["pump_most_pa"], before["pump_least_pa"])
+
+
+@pytest.mark.parametrize(
+    ("changes", "field"),
+    [
+        ({"pumped": ""}, "pumped"), ({"pump_most": "20 psi"}, "pump_most"), ({"pump_most": "30000 psi"}, "pump_most"),
+        ({"pump_least": "1100 psi"}, "pump_least"), ({"pump_most": "200 psi", "pump_least": "300 psi"}, "pump_least"),
+        ({"pump_least": "cold"}, "pump_least"),
+    ],
+)  # fmt: skip
+def test_a_plate_that_no_pump_has_is_refused(
+    shop: Any, manager: Any, client_of: Any, changes: dict[str, str], field: str
+) -> None:
+    typed = {**FORM, **PLATE, **changes, "form_key": str(key())}
+    answer = client_of(manager).post(reverse("bottles:station_add"), typed)
+    assert answer.status_code in (409, 422)
+    assert field in answer.context["form"].errors
+    assert not Station.objects.exists()

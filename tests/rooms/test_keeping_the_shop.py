@@ -130,3 +130,36 @@ def test_a_limit_shown_in_ones_own_unit_is_saved_again_to_the_gram(
     post(f"/places/{place.pk}", version=1, name=place.name, kind="shelf", limit=shown, active="on")
     place.refresh_from_db()
     assert place.limit_g == 20_001
+
+
+FREEZER = {"code": "FRZ", "name": "chest freezer", "kind": "freezer", "coldest": "0 °F", "takes_at_once": "4"}
+
+
+def test_how_cold_a_freezer_gets_is_kept_as_typed_and_shown(post: Callable[..., Any], manager: User, client_of: Any) -> None:
+    # 0 °F = 255.372 K (NIST SP 811, appendix B.8)
+    assert post("/places/new", **FREEZER).status_code == 302
+    place = Place.objects.get(code="FRZ")
+    assert (place.coldest_mk, place.coldest_typed, place.takes_at_once) == (255_372, "0 °F", 4)
+    assert "to 0 °F, 4 at once (entered)" in client_of(manager).get("/places").content.decode().replace("\xa0", " ")
+    shown = client_of(manager).get(f"/places/{place.pk}").context["form"]
+    assert (shown["coldest"].value(), shown["takes_at_once"].value()) == ("0 °F", 4)
+
+
+@pytest.mark.parametrize(
+    ("changes", "field"),
+    [
+        ({"kind": "shelf"}, "coldest"), ({"kind": "shelf", "coldest": ""}, "takes_at_once"), ({"coldest": "-50 °C"}, "coldest"),
+        ({"coldest": "-78 °C"}, "coldest"), ({"coldest": "41 °C"}, "coldest"), ({"coldest": "very"}, "coldest"),
+        ({"takes_at_once": "0"}, "takes_at_once"), ({"takes_at_once": "many"}, "takes_at_once"),
+        ({"takes_at_once": "1000"}, "takes_at_once"),
+    ],
+)  # fmt: skip
+def test_cold_that_no_bottle_is_made_for_is_refused(post: Callable[..., Any], changes: dict[str, str], field: str) -> None:
+    answer = post("/places/new", **FREEZER | changes)
+    assert answer.status_code in (409, 422)
+    assert field in answer.context["form"].errors
+    assert not Place.objects.filter(code="FRZ").exists()
+
+
+def test_dry_ice_has_a_sentence_of_its_own(post: Callable[..., Any]) -> None:
+    assert "dry ice" in post("/places/new", **FREEZER | {"coldest": "-78 °C"}).content.decode()
