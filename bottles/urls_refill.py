@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from django.urls import path
 
-from bottles.views import filling, refills, stations
+from bottles.views import filling, joined, refills, stations
 
 urlpatterns = [
     path("stations", stations.stations, name="stations"),
@@ -15,6 +15,7 @@ urlpatterns = [
     path("b/<str:code>/fill", filling.Fill.as_view(), name="fill"),
     path("b/<str:code>/fill/forecast", filling.forecast_live, name="forecast_live"),
     path("b/<str:code>/fill/course", filling.course_live, name="course_live"),
+    path("b/<str:code>/joined", joined.joined, name="joined"),
     path("refills", refills.refills, name="refills"),
     path("refills/<int:pk>", refills.RefillPage.as_view(), name="refill"),
     path("refills/<int:pk>/wait", refills.Wait.as_view(), name="refill_wait"),

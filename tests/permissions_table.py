@@ -146,11 +146,13 @@ REFILLS = [
     Page("bottles:fill", EVERYONE, _of_bottle),
     Page("bottles:forecast_live", EVERYONE, _of_bottle, html=False),
     Page("bottles:course_live", EVERYONE, _of_bottle, html=False),
+    Page("bottles:joined", EVERYONE, _of_bottle),
     Page("bottles:refills", EVERYONE),
     Page("bottles:refill", EVERYONE, lambda world: {"pk": world.refill.pk}),
     Page("bottles:refill_wait", EVERYONE, lambda world: {"pk": world.refill.pk}),
     Page("bottles:refill_supply", EVERYONE, lambda world: {"pk": world.refill.pk}),
     Page("bottles:refill_close", EVERYONE, lambda world: {"pk": world.refill.pk}),
+    Page("bottles:learning", EVERYONE),
     Page("bottles:receipt", EVERYONE, lambda world: {"pk": world.refill.pk}),
 ]
 

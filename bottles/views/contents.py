@@ -58,7 +58,7 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
 def _acts(bottle: Bottle, standing: Standing, manager: bool) -> Iterator[dict[str, str]]:
     """What else can be done with the contents."""
     supply = bottle.use == "supply" or bool(standing.ownership and standing.ownership.kind == "supplier")
-    pages = [("bottles:use", "Used by a car"), ("bottles:vent", "Vented")]
+    pages = [("bottles:use", "Used by a car"), ("bottles:vent", "Vented"), ("bottles:joined", "Joined with another")]
     if supply:
         pages += [("bottles:deliver", "Delivery"), ("bottles:give_back", "Return to the supplier")]
     for page, word in pages:
