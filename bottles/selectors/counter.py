@@ -6,11 +6,16 @@ Each in a fixed number of queries.
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
+from datetime import datetime, timedelta
 
-from django.db.models import F, QuerySet
+from django.db.models import F, OuterRef, QuerySet, Subquery
 
-from bottles.models import Custody, Standing, Station, Supply
+from bottles.models import Custody, Forecast, Standing, Station, Supply
+from bottles.rules.fills_left import Counted, fills_left
+from shop.base import clock
 
+FORECAST_HOLDS = timedelta(days=7)  # an older one was made at other temperatures
 SHOWN = 100  # bottles on the counter's own list; more are on the bottles page
 
 
@@ -48,14 +53,49 @@ def came_in_unweighed(standing: Standing) -> bool:
 def supplies() -> Sequence[Supply]:
     """Return the supply bottles on the stations in use, each with its books and what was last weighed of it."""
     weighing = "bottle__standing__weighing"
+    latest = Forecast.objects.filter(source=OuterRef("bottle")).order_by("-id").values("id")
     return list(
         Supply.objects.filter(station__active=True)
         .annotate(
             code=F("bottle__code"), station_name=F("station__name"), books_g=F("bottle__account__balance_g"),
-            net_g=F(f"{weighing}__net_g"), error_g=F(f"{weighing}__error_g"),
+            net_g=F(f"{weighing}__net_g"), error_g=F(f"{weighing}__error_g"), latest_forecast=Subquery(latest[:1]),
         )
         .order_by("station__name", "bottle__code")
     )  # fmt: skip
+
+
+@dataclass(frozen=True, slots=True)
+class FillsLeft:
+    """Full fills that a supply bottle still gives, by a forecast that was kept."""
+
+    count: int
+    target_g: int
+    bottle_mk: int
+    forecast_at: datetime
+
+
+def fills_left_of(found: Sequence[Supply]) -> dict[int, FillsLeft]:
+    """Return what the latest forecast from each supply bottle says of it now, by key of the supply.
+
+    Nothing is computed anew; where no late forecast knew what the bottle held, there is no figure.
+    One query, none where nothing was forecast.
+    """
+    of = {supply.latest_forecast: supply for supply in found if supply.latest_forecast and supply.books_g is not None}  # type: ignore[attr-defined]
+    if not of:
+        return {}
+    rows = Forecast.objects.filter(pk__in=of, act__recorded_at__gte=clock.now() - FORECAST_HOLDS).values_list(
+        "id", "act__recorded_at", "readings__bottle_temperature__stored", "result__full_fills", "result__least_source_kg",
+        "result__room_kg", "result__line_g", "result__source_g", "result__source_error_g", "result__target_g",
+    )  # fmt: skip
+    told = {}
+    for key, at, bottle_mk, fills, least, room, line_g, held_g, error_g, target_g in rows:
+        if None in (fills, room, held_g, target_g):
+            continue
+        counted = Counted(fills, held_g, error_g or 0, round(room * 1000) + (line_g or 0), round((least or 0) * 1000))
+        count = fills_left(counted, of[key].books_g)  # type: ignore[attr-defined]
+        if count is not None:
+            told[of[key].pk] = FillsLeft(count, target_g, bottle_mk, at)
+    return told
 
 
 def has_stations() -> bool:

@@ -188,7 +188,7 @@ def _refuse_odd(values: StationValues) -> None:
         odd = "pump_most", "A pump for nitrous oxide delivers at 10 to 1,000 bar. Check the figure on its plate and its unit."
     elif values.pump_least_pa is not None and values.pump_least_pa > 7_000_000:
         odd = "pump_least", "No supply bottle keeps up so high an inlet pressure: at most 70 bar. Check the figure and its unit."
-    elif None not in (most := values.pump_most_pa, least := values.pump_least_pa) and least >= most:
+    elif values.pump_most_pa is not None and values.pump_least_pa is not None and values.pump_least_pa >= values.pump_most_pa:
         odd = "pump_least", "A pump delivers above its inlet's pressure. The two figures look exchanged: read the plate again."
     elif values.scale is not None and values.scale == values.supply_scale:
         odd = "supply_scale", "One scale can't carry both bottles at once. Choose another for the supply, or none."

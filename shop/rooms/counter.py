@@ -16,7 +16,7 @@ from bottles.selectors.refill_lists import open_refills
 from bottles.views.judgement import FILLED_SHORT, first_reason, verdict
 from bottles.views.reason_rows import in_own_units
 from bottles.views.refill_rows import refill_rows
-from bottles.views.refill_words import refill_words
+from bottles.views.refill_words import RefillWords, refill_words
 from bottles.views.wording import Words
 from shop.base import clock
 from shop.base.models import Shop
@@ -34,13 +34,14 @@ def counter(request: HttpRequest) -> HttpResponse:
     waiting, standing_here = selected.waiting(), selected.at_the_counter()
     standings = {one.pk: one for one in (*waiting, *standing_here)}
     supplies = selected.supplies()
+    fills = selected.fills_left_of(supplies)
     judged = rulebook(shop).judge_all([one.bottle for one in standings.values()], standings)
     filling = {refill.bottle_id for refill in refills}
     context = {
         "refills": refill_rows(refills, words, shop),
         "waiting": [_bottle(one, judged[one.pk], words, shop) for one in waiting if one.pk not in filling],
         "here": [_bottle(one, judged[one.pk], words, shop) for one in standing_here if one.pk not in filling],
-        "supplies": [_supply(supply, words) for supply in supplies],
+        "supplies": [_supply(supply, fills.get(supply.pk), words, shop) for supply in supplies],
         "has_stations": bool(supplies) or selected.has_stations(),
         "going_on": going_on(request),
         "leaking": len(leaking()),
@@ -74,7 +75,7 @@ def _bottle(one: Any, judgement: Judgement, words: Words, shop: Shop) -> dict[st
     }  # fmt: skip
 
 
-def _supply(supply: Any, words: Words) -> dict[str, Any]:
+def _supply(supply: Any, fills: selected.FillsLeft | None, words: RefillWords, shop: Shop) -> dict[str, Any]:
     weighed = supply.net_g is not None
     return {
         "url": reverse("bottles:bottle", args=[supply.code]),
@@ -82,4 +83,14 @@ def _supply(supply: Any, words: Words) -> dict[str, Any]:
         "station": supply.station_name,
         "books": words.mass(supply.books_g) if supply.books_g is not None and weighed else "unknown: never weighed",
         "weighed": words.mass(supply.net_g, plus_minus_g=supply.error_g) if weighed else "",
+        "fills": _fills(fills, words, shop) if fills else "",
     }
+
+
+def _fills(fills: selected.FillsLeft, words: RefillWords, shop: Shop) -> str:
+    """What a kept forecast says, less what left since."""
+    at = fills.forecast_at.astimezone(clock.zone(shop))
+    when = f"{at:%H:%M}" if at.date() == clock.today(shop) else f"{at:%a %d %b}"
+    count = f"about {fills.count}" if fills.count else "no"
+    into = f"{words.mass(fills.target_g)} into a bottle at {words.temperature(fills.bottle_mk)}"
+    return f"{count} full fill{'' if fills.count == 1 else 's'} of {into} left, by the forecast of {when}"
