@@ -33,8 +33,9 @@ from shop.base.models import Job, Shop
 from shop.physics.errors import PhysicsError
 
 KIND = "learning.fit"
-SHOWS_MILLI = 10  # thousandths by which a figure or its ± must have changed to be laid down anew
-SHOWS_SHARE = 10  # or a tenth more or fewer refills
+# What must have changed for a row to be laid down anew: the figure or its deviation by a fifth of that
+# deviation, or the number of refills behind it by a quarter (this project's own choice).
+SHOWS_FIFTH, SHOWS_QUARTER = 5, 4
 SAY_EVERY = 50  # refills between two words to whoever watches
 
 
@@ -107,10 +108,11 @@ def _shows(row: Fit | None, new: Fitted) -> bool:
         return bool(new.informative or new.bounds)
     before, after = row.informative + row.bounds, new.informative + new.bounds
     return (
-        abs(round(new.figure * 1000) - row.figure_milli) >= SHOWS_MILLI
-        or abs(round(new.deviation * 1000) - row.deviation_milli) >= SHOWS_MILLI
+        abs(new.figure * 1000 - row.figure_milli) * SHOWS_FIFTH >= row.deviation_milli
+        or abs(new.deviation * 1000 - row.deviation_milli) * SHOWS_FIFTH >= row.deviation_milli
         or new.tells is not (row.informative >= ENOUGH)
-        or abs(after - before) * SHOWS_SHARE > before
+        or bool(new.informative) is not bool(row.informative)
+        or abs(after - before) * SHOWS_QUARTER > before
     )
 
 
