@@ -15,6 +15,7 @@ from bottles.physics.condensation import PRIOR, Condensation
 from bottles.physics.contents import Contents, contents_from_reading
 from bottles.physics.forecast import Forecast as Transferred
 from bottles.physics.forecast import Tolerances, forecast
+from bottles.physics.pumped import PumpedRefill
 from bottles.physics.receiver_start import OWN_VAPOUR, VENTED, WEIGHED, Start, start_vessel
 from bottles.physics.transfer import PHYSICS_VERSION
 from bottles.physics.vessel import Vessel
@@ -106,6 +107,14 @@ class Pair:
         """The forecast of these two."""
         return forecast(**{name: getattr(self, name) for name in self.__dataclass_fields__})
 
+    @property
+    def receiver(self) -> Vessel:
+        """The bottle to fill, with what its start leaves in it."""
+        return start_vessel(
+            volume_m3=self.receiver_volume_m3, wall_j_k=self.receiver_wall_j_k, temperature_k=self.receiver_temperature_k,
+            start=self.start,
+        )  # fmt: skip
+
 
 @dataclass(frozen=True, slots=True)
 class Answer:
@@ -127,6 +136,7 @@ class Answer:
     blocked: bool
     notes: tuple[tuple[str, str], ...]
     fit: Fit | None = None  # whence the condensation figure; None: the prior
+    pumped: PumpedRefill | None = None  # what a pump moves, where one does
 
     def result(self) -> dict[str, Any]:
         """The answer as it's kept."""
@@ -141,6 +151,7 @@ class Answer:
             "source_error_g": self.source.error_g if self.source else None,
             "source_origin": self.source.origin if self.source else None,
             "contents": contents,
+            "pumped": self.pumped.as_dict() if self.pumped else None,
             "notes": [code for code, _ in self.notes],
         }
 

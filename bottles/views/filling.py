@@ -18,7 +18,8 @@ from bottles.rules.fitness import Judgement
 from bottles.selectors.filling_offers import Offered, readings_offered
 from bottles.selectors.register import standing_of
 from bottles.selectors.scales import scale_checked
-from bottles.services.forecasting import Asked, work_out
+from bottles.services.forecast_details import forecast_by
+from bottles.services.forecasting import Asked
 from bottles.services.refilling import Opening, look_items, open_refill
 from bottles.services.scales import check_scale
 from bottles.views.forecast_details_words import details_part
@@ -87,8 +88,8 @@ class Fill(BottleActView):
         readings = form.readings()
         if readings is None:
             raise Refusal("Read both temperatures first.", code="reading missing")
-        answer = work_out(asked, readings)
         data = form.cleaned_data
+        answer = forecast_by(asked, readings, data["method"])
         pressure = data.get("pressure")
         found = open_refill(
             key=key, person=person,

@@ -12,7 +12,8 @@ from bottles.models import Bottle, Station, Supply
 from bottles.rules.fitness import Judgement
 from bottles.selectors.filling_offers import supplies_offered
 from bottles.selectors.judging import Rulebook, rulebook
-from bottles.services.forecasting import Answer, Asked, work_out
+from bottles.services.forecast_details import forecast_by
+from bottles.services.forecasting import Answer, Asked
 from bottles.services.refilling import refuse_source
 from bottles.views.forecast_words import forecast_context, stop_figure
 from bottles.views.refill_words import RefillWords
@@ -70,8 +71,10 @@ class Worked:
     waits: list[str] = field(default_factory=list)
 
 
-def worked(form: ReadingsForm, bottle: Bottle, judged: Judged, *, limit_g: int | None = None) -> Worked:
-    """Work the forecast out; `limit_g` where a refill was opened with one."""
+def worked(
+    form: ReadingsForm, bottle: Bottle, judged: Judged, *, limit_g: int | None = None, method: str = ""
+) -> Worked:  # fmt: skip
+    """Work the forecast out; `limit_g` and `method` where a refill was opened with them."""
     limit = limit_g or judged[bottle].limit.grams
     if not limit:
         return Worked(trouble=["This bottle has no fill limit yet. Complete its record first."])
@@ -92,7 +95,8 @@ def worked(form: ReadingsForm, bottle: Bottle, judged: Judged, *, limit_g: int |
         return Worked(supply, to, trouble=wrong, waits=form.missing)
     asked = replace(asked_for(bottle, supply, judged), limit_g=limit)
     try:
-        return Worked(supply, to, asked, work_out(asked, readings))
+        answer = forecast_by(asked, readings, method or form.cleaned_data.get("method") or "")
+        return Worked(supply, to, asked, answer)
     except (Refusal, PhysicsError) as refusal:
         sentence = refusal.sentence
         if isinstance(refusal, NoSolution):
@@ -110,8 +114,8 @@ def forecast_part(found: Worked, form: ReadingsForm, bottle: Bottle, judged: Jud
 
 
 PUMPED = (
-    "Pumped: the span is that by pressure alone. The pump goes on to the limit, until the supply's liquid is out, or to "
-    "the limits of its plate ({plate}). Never run dry, never against a shut valve, oil-free and made for nitrous oxide."
+    "Pumped: the pump goes on to the limit, until the supply's liquid is out, or to the limits of its plate{plate}. "
+    "Somebody stays beside it."
 )
 
 
@@ -123,5 +127,6 @@ def also_said(form: ReadingsForm, supply: Supply, judged: Judged) -> list[str]:
     except Refusal as refusal:
         said.append(refusal.sentence)
     if form.cleaned_data.get("method") == "pumped":
-        said.append(PUMPED.format(plate=supply.station.pump_note))
+        note = supply.station.pump_note
+        said.append(PUMPED.format(plate=f" ({note})" if note else ""))
     return said

@@ -4,19 +4,20 @@ from __future__ import annotations
 
 from math import ceil, sqrt
 
+from bottles.physics.forecast_band import CONDENSATION, MORE_REFILLS
 from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, WEIGHED
 from bottles.services.forecasting import TAKEN, Answer
 from bottles.views.refill_words import RefillWords
 
 HEAD = ["From", "Alone", "How well it's known"]
-CONDENSATION, SUPPLY_WEIGHT = "condensation", "source weight"
+SUPPLY_WEIGHT, START = "source weight", "receiver start"
 PARTS = {
     CONDENSATION: "how much vapour condenses",
     "source temperature": "the supply bottle's temperature",
     SUPPLY_WEIGHT: "the supply bottle's weight",
     "receiver temperature": "the temperature of the bottle to fill",
     "receiver weight": "the weight of the bottle to fill",
-    "receiver start": "how the bottle to fill starts",
+    START: "how the bottle to fill starts",
 }
 BEGUN = {
     VENTED: "taken as vented to the room, not more than an atmosphere left (common practice)",
@@ -31,25 +32,27 @@ def width_rows(answer: Answer, words: RefillWords) -> list[list[str]]:
     """A row for each part of the width, the widest first: what, how much by itself, from which ±."""
     rows = []
     for name, kilograms in answer.transferred.width:
-        grams = round(kilograms * 1000)
-        alone = f"±{words.small(grams)}" if grams else f"less than ±{words.small(1)}"
+        said = words.small(round(kilograms * 1000))
+        alone = "next to nothing" if said == words.small(0) else f"±{said}"
         rows.append([PARTS[name], alone, _known(name, answer, words)])
     return rows
 
 
 def narrowing(answer: Answer, words: RefillWords) -> str:
-    """The sentence that names what would narrow the span most; empty where there is no span."""
-    span = answer.high_g - answer.low_g
-    worth = [(name, grams) for name, grams in _worth(answer) if grams >= WORTH_G]
-    if span < WORTH_G or not worth:
+    """The sentence that names what would narrow the span most; empty where nothing would."""
+    best = answer.transferred.narrows
+    if best is None or answer.high_g - answer.low_g < WORTH_G:
         return ""
-    name, grams = worth[0]
-    if name != CONDENSATION:
-        return f"{_measure(name, answer)}: it would narrow the span by about {words.small(grams)}."
-    said = "Only more refills of this shop, each weighed to its end, narrow it much: how much vapour condenses makes most of it."
-    if len(worth) > 1:
-        said += f" Of what can be measured now: {_lower(_measure(worth[1][0], answer))}, by about {words.small(worth[1][1])}."
-    return said
+    worth = [(name, grams) for name, grams in _worth(answer) if grams >= WORTH_G]
+    if best == MORE_REFILLS:
+        said = "Only more refills of this shop, each weighed to its end, narrow it much: it hangs on how much vapour condenses."
+        measured = next(((name, grams) for name, grams in worth if name != CONDENSATION), None)
+        if measured:
+            said += f" Of what can be measured now: {_lower(_measure(measured[0], answer))}, by about {words.small(measured[1])}."
+        return said
+    part = START if best == "receiver weight" and START in dict(answer.transferred.width) else best
+    by = dict(worth).get(part)
+    return f"{_measure(part, answer)}: it would narrow the span{f' by about {words.small(by)}' if by else ' most'}."
 
 
 def degrees(kelvin: float, words: RefillWords) -> str:
@@ -83,7 +86,7 @@ def _known(name: str, answer: Answer, words: RefillWords) -> str:
         return f"±{words.small(answer.source.error_g)}, {answer.source.origin}"
     if name == "receiver weight":
         return f"±{words.small(round(pair.tolerances.scale_kg * 1000))}, weighed"
-    if name == "receiver start":
+    if name == START:
         return BEGUN[pair.start.kind]
     how = readings.taken if name == "source temperature" else readings.bottle_taken
     taken = next(said for code, said, _ in TAKEN if code == how)
@@ -98,7 +101,7 @@ def _measure(name: str, answer: Answer) -> str:
         return "Weigh the supply bottle on a finer scale" if weighed else "Weigh the supply bottle"
     if name == "receiver weight":
         return "Weigh the bottle to fill on a finer scale"
-    if name == "receiver start":
+    if name == START:
         return "Weigh the bottle to fill and say so, in place of how it starts"
     which, how = {
         "source temperature": ("supply bottle's temperature", readings.taken),

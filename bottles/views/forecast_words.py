@@ -7,10 +7,13 @@ from typing import Any
 from bottles.models import Bottle, Supply, Tare
 from bottles.physics.contents import Contents
 from bottles.selectors.scales import scale_uncertainty
+from bottles.services.forecast_details import would_help
 from bottles.services.forecasting import BOOKS, Answer, Asked
 from bottles.services.refilling import stop_at
 from bottles.services.weighing import tare_at
 from bottles.views.forecast_width import HEAD, narrowing, width_rows
+from bottles.views.helps_words import helps_context
+from bottles.views.pumped_words import pumped_context
 from bottles.views.refill_words import RefillWords, style_of
 from shop.base import clock
 from shop.base.errors import Refusal
@@ -45,11 +48,12 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
     """Everything that the forecast's part of the page shows."""
     found, supply = answer.transferred, asked.supply
     kind, reached = REACHES[found.reaches_limit]
+    helps = _helps(answer, words)
     if answer.target_g < asked.limit_g:
         reached = reached.replace("limit", "target")
     warnings = [sentence for code, sentence in found.warnings if code not in HIDDEN]
     reading = [sentence for code, sentence in (answer.contents.warnings if answer.contents else ())]
-    return {
+    said = {
         "stop": stop_figure(asked.bottle, supply, answer.target_g, words),
         "danger": reading if answer.danger else [],
         "blocked": answer.blocked,
@@ -62,7 +66,7 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
         "reached": reached,
         "already": found.reaches_limit == "already",
         "limits": _limits(answer, words),
-        "cold": _cold(answer, words),
+        "cold": "" if helps and helps["chills"] else _cold(answer, words), "helps": helps,
         "left": _left(answer, supply, words),
         "line": words.small(answer.line_g),
         "line_origin": "entered" if supply.station.line_loss_g is not None else "computed",
@@ -73,6 +77,17 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
         "band": _band(answer, words),
         "prior": any(code == "condensation_prior" for code, _ in found.warnings),
     }  # fmt: skip
+    return said | pumped_context(answer, supply.station, words) if answer.pumped else said
+
+
+def _helps(answer: Answer, words: RefillWords) -> dict[str, Any] | None:
+    """What would help, where the limit isn't reached in every case."""
+    if answer.pumped or answer.blocked or answer.transferred.reaches_limit in ("in every case", "already"):
+        return None
+    try:
+        return helps_context(would_help(answer.pair), words)
+    except PhysicsError:
+        return None
 
 
 def stop_figure(bottle: Bottle, supply: Supply, target_g: int, words: RefillWords) -> dict[str, str]:

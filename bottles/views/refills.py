@@ -18,7 +18,8 @@ from bottles.selectors.filling_offers import Offered, readings_offered
 from bottles.selectors.refill_lists import closed_refills, open_refills, refills_of
 from bottles.selectors.refills import draws_of, in_force
 from bottles.services import refill_steps as steps
-from bottles.services.forecasting import Asked, work_out
+from bottles.services.forecast_details import forecast_by
+from bottles.services.forecasting import Asked
 from bottles.views.filling import CAUTIONS
 from bottles.views.forecast_details_words import details_part
 from bottles.views.forecast_part import Judged, Worked, asked_for, chosen_supply, forecast_part, worked
@@ -182,7 +183,7 @@ class AnotherSupply(OfRefill):
 
     def worked(self, form: AnotherSupplyForm) -> Worked:
         """The forecast to what the refill was opened with."""
-        return worked(form, self.refill.bottle, self.judged, limit_g=self.refill.target_g)
+        return worked(form, self.refill.bottle, self.judged, limit_g=self.refill.target_g, method=self.refill.method)
 
     def part(self, found: Worked, form: AnotherSupplyForm) -> dict[str, Any]:
         """The variables of the forecast's part."""
@@ -198,7 +199,7 @@ class AnotherSupply(OfRefill):
         if readings is None:
             raise Refusal("Read both temperatures first.", code="reading missing")
         asked = self.asked(form)
-        answer = work_out(asked, readings)
+        answer = forecast_by(asked, readings, self.refill.method)
         steps.add_draw(
             key=key, person=person, refill=self.refill, version=form.cleaned_data["version"] or 0, asked=asked, answer=answer,
             weight=form.weight(),
@@ -241,9 +242,9 @@ def receipt(request: HttpRequest, pk: int) -> HttpResponse:
     shop = Shop.objects.get()
     words = refill_words(request, shop)
     context = {"refill": refill, "bottle": refill.bottle, "shop": shop, "back_url": reverse("bottles:refill", args=[pk])}
-    context |= page_context(refill, words, shop)
-    context["placed"] = [draw for draw in context["draws"] if draw["compared"]]
-    return render(request, "bottles/receipt.html", context)
+    said = page_context(refill, words, shop)
+    placed = {"placed": [draw for draw in said["draws"] if draw["compared"]]}
+    return render(request, "bottles/receipt.html", context | said | placed)
 
 
 def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
