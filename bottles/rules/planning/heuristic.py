@@ -16,7 +16,7 @@ from bottles.rules.planning.schedule import Position, Rehearsal
 
 Watch = Callable[[int, int], None]  # how many partial plans were looked at, of how many at most
 LOOKED_AT = 6_000  # partial plans
-TRANSFERS = 1_000  # transfers worked out anew
+TRANSFERS = 2_000  # transfers worked out anew
 _WATCHED_EVERY = 100
 _NEARLY_EMPTY = 1.5  # times what vapour alone holds
 
@@ -94,17 +94,24 @@ def _orders(rehearsal: Rehearsal) -> Iterator[list[int]]:
 
 
 def _greedy(search: Search, order: Sequence[int]) -> list[Choice]:
-    """Place bottles in an order, each in the way that is best for the plan so far."""
-    at, plan = search.rehearsal.beginning(), []
-    for number in order:
-        best = _best_of(search, at, (choice for choice in search.rehearsal.choices(at, number) if len(choice.sources) == 1))
-        enough = best is not None and best[1].sums[2] > at.sums[2] and best[1].sums[0] == at.sums[0]
+    """Place bottles in an order, each in the way that is best for the plan so far.
+
+    What can't be filled well enough comes last: it takes what is left then.
+    """
+    at, plan, rest = search.rehearsal.beginning(), [], []
+    for turn, number in [*((0, one) for one in order), *((1, one) for one in order)]:
+        if turn and number not in rest:
+            continue
+        way = _best_of(search, at, (choice for choice in search.rehearsal.choices(at, number) if len(choice.sources) == 1))
+        enough = way is not None and way[1].sums[2] > at.sums[2] and way[1].sums[0] == at.sums[0]
         several = _best_of(search, at, _in_turn(search.rehearsal, at, number, enough=enough))
-        found = [way for way in (best, several) if way is not None]
-        if found:
-            way = min(found, key=lambda each: each[0])
+        if way is None or (several is not None and several[0] < way[0]):
+            way = several
+        if way is not None and (turn or way[1].sums[2] > at.sums[2]):
             at = way[1]
             plan.append(way[2])
+        else:
+            rest.append(number)
     return plan
 
 
