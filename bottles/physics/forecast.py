@@ -2,37 +2,28 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass, replace
-from math import floor, sqrt
+from math import floor
 
-from bottles.physics.condensation import PRIOR, Condensation, band, between
-from bottles.physics.contents import NEAR_CRITICAL, SCALE_TOLERANCE, THERMOMETER_TOLERANCE
+from bottles.physics.condensation import PRIOR, Condensation
+from bottles.physics.contents import NEAR_CRITICAL
+from bottles.physics.forecast_band import Tolerances as Tolerances
+from bottles.physics.forecast_band import band_of, unsure_start
+from bottles.physics.forecast_help import least_source, warmest_receiver
 from bottles.physics.forecast_words import SENTENCES
-from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, Start, start_vessel
+from bottles.physics.receiver_start import AIR, VENTED, Start, start_vessel
 from bottles.physics.transfer import (
     PHYSICS_VERSION,
     Outcome,
     Transfer,
     held,
-    line_loss,
     mixed,
     wall_condensing,
 )
-from bottles.physics.vessel import COLDEST, HOTTEST, Vessel
+from bottles.physics.vessel import Vessel
 from shop.physics.errors import OutOfRange
-from shop.physics.fluid import T_SATURATION_MAX, engine
-from shop.physics.roots import find_root
-
-_EVEN = 100.0  # Pa, a thousandth of a bar: some hundredths of a gram, a hundredth of a kelvin
-
-
-@dataclass(frozen=True, slots=True)
-class Tolerances:
-    """How well a shop reads; each is taken as the edge of 19 readings in 20."""
-
-    thermometer_k: float = THERMOMETER_TOLERANCE
-    scale_kg: float = SCALE_TOLERANCE
+from shop.physics.fluid import T_SATURATION_MAX
+from shop.physics.saturation_table import saturated
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,6 +46,7 @@ class Forecast:
     width: tuple[tuple[str, float], ...]
     condensation: Condensation
     warnings: tuple[tuple[str, str], ...]
+    narrows: str | None = None
 
     def as_dict(self) -> dict[str, object]:
         """Everything, with units in the keys, ready for JSON."""
@@ -73,21 +65,12 @@ class Forecast:
             "least_source_kg": self.least_source_kg,
             "full_fills": self.full_fills,
             "width": [{"from": name, "kg": kilograms} for name, kilograms in self.width],
+            "narrows": self.narrows,
             "condensation": self.condensation.figure,
             "condensation_origin": self.condensation.origin,
             "warnings": [{"code": code, "sentence": words} for code, words in self.warnings],
             "physics_version": PHYSICS_VERSION,
         }
-
-
-@dataclass(frozen=True, slots=True)
-class _Band:
-    """Masses of one pair of bottles, capped by the room in the receiver."""
-
-    low: float
-    likely: float
-    high: float
-    width: tuple[tuple[str, float], ...]
 
 
 def forecast(
@@ -158,16 +141,16 @@ def forecast(
         )
 
     receiver = receiver_at(receiver_temperature_k)
-    unsure = _unsure_start(begins, receiver, tolerances)
+    unsure = unsure_start(begins, receiver, tolerances)
     if begins.kind != VENTED and begins.net_kg is None:
         # Chilled before filling, a bottle keeps what it holds; only venting follows it down.
         begins = replace(begins, net_kg=receiver.net_kg)
     room = max(limit_kg - receiver.net_kg, 0.0)
     codes = _standing_codes(source, receiver, begins, room, condensation)
     ends = source_range_kg or (source.net_kg, source.net_kg)
-    transfers = [Transfer(replace(source, net_kg=net), receiver, line_volume_m3) for net in dict.fromkeys(ends)]
-    bands = [_band(each, room, condensation, tolerances, unsure) for each in transfers]
-    least = _least_source(transfers[-1], limit_kg, line_volume_m3)
+    transfers = [Transfer(source.changed(net_kg=net), receiver, line_volume_m3) for net in dict.fromkeys(ends)]
+    bands = [band_of(each, room, condensation, tolerances, unsure) for each in transfers]
+    least = least_source(transfers[-1], limit_kg)
     if source_range_kg is not None:
         low = min(each.low for each in bands)
         high = max(each.high for each in bands)
@@ -179,6 +162,7 @@ def forecast(
         return Forecast(
             None, None, None, low, None, high, room, _reaches(room, low, None, high),
             transfers[-1].line_kg, None, None, least, None, width, condensation, _told(codes),
+            "source weight" if high > low else None,
         )  # fmt: skip
     transfer, answer = transfers[0], bands[0]
     limits = (
@@ -194,6 +178,8 @@ def forecast(
         codes.append("can_pass_limit")
     if not transfer.path.after(0.0).liquid:
         codes.append("no_source_liquid")
+    if _leaves_below_tube(source, limits):
+        codes.append("left_below_tube")
     line = transfer.line_kg
     fills = None
     if least is not None and room > 0.0:
@@ -205,8 +191,8 @@ def forecast(
     return Forecast(
         *limits, answer.low, answer.likely, answer.high, room,
         _reaches(room, answer.low, answer.likely, answer.high), line, left,
-        _warmest(transfer, receiver_at, limit_kg, line_volume_m3), least, fills, answer.width, condensation,
-        _told(codes),
+        warmest_receiver(transfer, receiver_at, limit_kg), least, fills, answer.width, condensation,
+        _told(codes), answer.narrows,
     )  # fmt: skip
 
 
@@ -236,6 +222,18 @@ def _standing_codes(
     return codes
 
 
+def _leaves_below_tube(source: Vessel, limits: tuple[Outcome, ...]) -> bool:
+    """Say whether any of the limits comes to the liquid that the dip tube doesn't reach."""
+    if not source.below_tube_m3 or not source.liquid_pickup:
+        return False
+    return any(
+        limit.liquid_out
+        and limit.source_final_k <= T_SATURATION_MAX
+        and limit.source_left_kg > saturated(limit.source_final_k)[2] * source.volume_m3 * (1.0 + 1e-6)
+        for limit in limits
+    )
+
+
 def _told(codes: list[str]) -> tuple[tuple[str, str], ...]:
     """Codes with their sentences."""
     return tuple((code, SENTENCES[code]) for code in codes)
@@ -251,144 +249,3 @@ def _reaches(room: float, low: float, likely: float | None, high: float) -> str:
             return "likely"
         return "at best"
     return "no" if room > 0.0 else "already"
-
-
-def _unsure_start(start: Start, receiver: Vessel, tolerances: Tolerances) -> tuple[str, float]:
-    """Reading or assumption behind the receiver's start, and its tolerance in mass."""
-    if start.kind == VENTED:
-        return "receiver start", receiver.net_kg  # an atmosphere more (common practice)
-    if start.kind == OWN_VAPOUR and start.net_kg is None:
-        return "receiver start", 0.25 * receiver.net_kg  # (common practice)
-    return "receiver weight", tolerances.scale_kg
-
-
-def _band(
-    transfer: Transfer,
-    room: float,
-    condensation: Condensation,
-    tolerances: Tolerances,
-    unsure: tuple[str, float],
-) -> _Band:
-    """Low, likely and high of one pair of bottles, and what makes the width."""
-    quick = transfer.mixed_free_kg()
-    if quick <= 0.0 or room <= 0.0:
-        return _Band(0.0, 0.0, 0.0, ())
-    parts = _reading_parts(transfer, min(quick, room), tolerances, unsure)
-    if transfer.path.after(0.0).liquid:
-        slow = transfer.slow_free_kg()
-        likely = between(slow, quick, condensation.figure)
-        below, above = band(slow, quick, condensation)
-    else:
-        # Without liquid nothing enters under the vapour: between quick and kept at temperature.
-        slow = held(transfer, transfer.receiver.net_kg + room).moved_kg
-        likely = quick
-        below, above = max(quick - slow, 0.0), max(slow - quick, 0.0)
-    readings = sum(part * part for _, part in parts)
-    low = likely - sqrt(below * below + readings)
-    high = likely + sqrt(above * above + readings)
-    width = sorted([("condensation", max(below, above)), *parts], key=lambda part: part[1], reverse=True)
-    low, likely, high = (min(max(mass, 0.0), room) for mass in (low, likely, high))
-    # Where every case is full there is no width to explain.
-    return _Band(low, likely, high, tuple(width) if high > low else ())
-
-
-def _reading_parts(
-    transfer: Transfer, moved: float, tolerances: Tolerances, unsure: tuple[str, float]
-) -> list[tuple[str, float]]:
-    """What each reading's tolerance is worth in mass, by the mixed limit's own slope."""
-    source, receiver = transfer.source, transfer.receiver
-    there = transfer.surplus(moved)
-    step = 1e-3 * moved
-    slope = (transfer.surplus(moved - step) - there) / step
-    if slope <= 0.0:
-        return []
-    degree, gram = tolerances.thermometer_k, tolerances.scale_kg
-    cooler = -1.0 if source.temperature_k + degree > HOTTEST else 1.0
-    other = -1.0 if receiver.temperature_k + degree > HOTTEST else 1.0
-    changed = (
-        ("source temperature",
-         replace(source, temperature_k=source.temperature_k + cooler * degree), receiver),
-        ("source weight", replace(source, net_kg=source.net_kg + gram), receiver),
-        ("receiver temperature", source,
-         replace(receiver, temperature_k=receiver.temperature_k + other * degree)),
-        (unsure[0], source, replace(receiver, net_kg=receiver.net_kg + unsure[1])),
-    )  # fmt: skip
-    parts = []
-    for name, new_source, new_receiver in changed:
-        path = transfer.path if new_source is source else None
-        new = Transfer(new_source, new_receiver, transfer.line_volume_m3, path=path)
-        parts.append((name, min(abs(new.surplus(moved) - there) / slope, moved)))
-    return parts
-
-
-def _warmest(
-    transfer: Transfer,
-    receiver_at: Callable[[float], Vessel],
-    limit_kg: float,
-    line_volume_m3: float,
-) -> float | None:
-    """Warmest start of the receiver that still gives a full fill in the mixed limit."""
-    near = [transfer]
-
-    def surplus(temperature_k: float) -> float:
-        try:
-            receiver = receiver_at(temperature_k)
-        except OutOfRange:
-            return -1e9
-        other = near[0] = Transfer(transfer.source, receiver, line_volume_m3, path=transfer.path, like=near[0])
-        room = limit_kg - receiver.net_kg
-        if room <= 0.0 or room > other.capacity_kg:
-            return -1e9
-        full = other.surplus(room)
-        if full >= 0.0 and other.surplus(0.0) <= 0.0:
-            return -1e9
-        return 0.0 if abs(full) < _EVEN else full
-
-    if limit_kg <= transfer.receiver.net_kg:
-        return None
-    cold = surplus(COLDEST)
-    if cold < 0.0:
-        return None
-    hot = surplus(HOTTEST)
-    if hot >= 0.0:
-        return HOTTEST
-    return find_root(surplus, COLDEST, HOTTEST, tolerance=2e-3, at_low=cold, at_high=hot)
-
-
-def _least_source(transfer: Transfer, limit_kg: float, line_volume_m3: float) -> float | None:
-    """Least in the supply that still gives a full fill in the mixed limit."""
-    source, receiver = transfer.source, transfer.receiver
-    room = limit_kg - receiver.net_kg
-    if room <= 0.0:
-        return None
-    full = 750.0
-    if source.temperature_k <= T_SATURATION_MAX:
-        full = max(full, engine().saturation(source.temperature_k)[1])
-    most = full * source.volume_m3
-    near = [transfer]
-
-    def surplus(net_kg: float) -> float:
-        new = replace(source, net_kg=net_kg)
-        if net_kg - line_loss(new, line_volume_m3) <= room * (1.0 + 1e-9):
-            return -1e9
-        other = near[0] = Transfer(new, receiver, line_volume_m3, like=near[0])
-        full = other.surplus(room)
-        if full >= 0.0:
-            full = min(full, other.surplus(0.0))
-        return 0.0 if abs(full) < _EVEN else full
-
-    if most <= room:
-        return None
-    # A supply with nothing left has no pressure; what is in it now halves the search at once.
-    low, at_low, high, at_high = room, -transfer.path.after(0.0).pressure_pa, most, -1.0
-    if room < source.net_kg < most:
-        now = surplus(source.net_kg)
-        if now >= 0.0:
-            high, at_high = source.net_kg, now
-        else:
-            low, at_low = source.net_kg, max(now, at_low)
-    if at_high < 0.0:
-        at_high = surplus(most)
-    if at_high < 0.0:
-        return None
-    return find_root(surplus, low, high, tolerance=1e-5 * most, at_low=at_low, at_high=at_high)

@@ -21,6 +21,10 @@ SENTENCES: Mapping[str, str] = {
         "No liquid leaves the supply bottle: either none is left, or it has no dip tube and "
         "stands upright. Vapour alone goes over, slowly."
     ),
+    "left_below_tube": (
+        "The supply bottle's dip tube doesn't reach its last liquid: that stays behind, and what "
+        "comes after is vapour, slowly. Change to another supply bottle."
+    ),
     "source_unknown": ("The supply bottle's weight isn't known, so the span is wide. Weigh it to narrow it."),
     "air": (
         "Air that was never purged takes up room and pressure: less goes over and the gauge "

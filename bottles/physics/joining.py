@@ -7,7 +7,8 @@ from itertools import chain
 
 from bottles.physics.vessel import HEAT, Vessel, pressure_and_energy, settle
 from bottles.physics.wall_condensing import Mark, slow_filling
-from bottles.physics.withdrawal import Adiabatic, mass_without_reach
+from bottles.physics.withdrawal import Adiabatic
+from bottles.physics.withdrawal_stages import mass_without_reach
 from shop.physics.fluid import T_SATURATION_MAX
 from shop.physics.roots import find_root
 from shop.physics.saturation_table import saturated, saturation_table, to_s, to_t
@@ -41,10 +42,10 @@ class Transfer:
         self.path = path or Adiabatic(source)
         self.line_volume_m3 = line_volume_m3
         self.line_kg = line_loss(source, line_volume_m3)
-        self._wall = receiver.wall_j_k + 2.5 * receiver.air  # air's own heat, 5/2 R a mole
+        self.receiver_wall_j_k = receiver.wall_j_k + 2.5 * receiver.air  # air's own heat, 5/2 R a mole
         t = receiver.temperature_k
         pressure, energy = pressure_and_energy(receiver.volume_m3, receiver.net_kg, t, receiver.air)
-        self._energy = energy + self._wall * t
+        self.receiver_j = energy + self.receiver_wall_j_k * t  # at its start
         self._rest = t, pressure
         self._guess, self._heat = t, HEAT
         if like is not None:
@@ -65,17 +66,21 @@ class Transfer:
         given = self.path.after(self.line_kg + moved_kg)
         return given.pressure_pa - self.mixed_receiver(moved_kg)[1]
 
+    def gained_j(self, moved_kg: float) -> float:
+        """Energy that went over with a mass, whatever the receiver does with it [J]."""
+        return self.path.after(self.line_kg + moved_kg).energy_given_j - self._line_j
+
     def mixed_receiver(self, moved_kg: float) -> tuple[float, float]:
         """Temperature and pressure of the receiver, uniform with its wall [K, Pa]."""
         if moved_kg == 0.0:
             return self._rest
         receiver = self.receiver
-        gained = self.path.after(self.line_kg + moved_kg).energy_given_j - self._line_j
+        gained = self.gained_j(moved_kg)
         t, p, self._heat = settle(
             receiver.volume_m3,
-            self._wall,
+            self.receiver_wall_j_k,
             receiver.net_kg + moved_kg,
-            self._energy + gained,
+            self.receiver_j + gained,
             self._guess,
             receiver.air,
             self._heat,
@@ -159,9 +164,9 @@ class Transfer:
         one, two = self.source, self.receiver
         table = saturation_table()
         volume = one.volume_m3 + two.volume_m3
-        wall = one.wall_j_k + self._wall
+        wall = one.wall_j_k + self.receiver_wall_j_k
         mass = one.net_kg - self.line_kg + two.net_kg
-        energy = self.path.start_j - self._line_j + self._energy
+        energy = self.path.start_j - self._line_j + self.receiver_j
         guess = min(0.5 * (one.temperature_k + two.temperature_k), T_SATURATION_MAX - 0.5)
         s = table.settled(volume, wall, mass, energy, to_s(guess))
         if s is None:

@@ -14,7 +14,8 @@ from bottles.physics.joining import Transfer as Transfer
 from bottles.physics.joining import line_loss as line_loss
 from bottles.physics.vessel import pressure_and_energy
 from bottles.physics.withdrawal import Held
-from shop.physics.roots import first_true
+from shop.physics.fluid import T_SATURATION_MAX, engine
+from shop.physics.roots import find_root, first_true
 
 PHYSICS_VERSION = "transfer 1"
 FILL_LIMIT = "fill limit"
@@ -174,6 +175,9 @@ def held(transfer: Transfer, limit_kg: float) -> Outcome:
     def even(moved: float) -> bool:
         return source.pressure(line + moved) <= receiver_pressure(moved) * (1.0 + 1e-12)
 
+    def gap(moved: float) -> float:
+        return source.pressure(line + moved) - receiver_pressure(moved)
+
     def free() -> float:
         most = transfer.capacity_kg
         if even(0.0):
@@ -181,7 +185,17 @@ def held(transfer: Transfer, limit_kg: float) -> Outcome:
         room = max(min(limit_kg - receiver.net_kg, most), 0.0)
         if not even(room):
             return most
-        return first_true(even, 0.0, room, tolerance=_RESOLUTION * room)
+        # Between the places where a phase comes or goes both pressures are smooth or level.
+        low, high, tolerance = 0.0, room, _RESOLUTION * room
+        for place in _turns(transfer, room):
+            if even(place):
+                high = place
+                break
+            low = place
+        at_low, at_high = gap(low), gap(high)
+        if at_low > 1e-6 * source.pressure(line + low) and at_high < 0.0:
+            return find_root(gap, low, high, tolerance=tolerance, at_low=at_low, at_high=at_high)
+        return first_true(even, low, high, tolerance=tolerance)
 
     moved, stopped = _stop(transfer, limit_kg, free)
     given = moved + line if moved > 0.0 else 0.0
@@ -196,6 +210,19 @@ def held(transfer: Transfer, limit_kg: float) -> Outcome:
         stopped,
         not source.has_liquid(given),
     )
+
+
+def _turns(transfer: Transfer, room: float) -> list[float]:
+    """Masses gone over at which a bottle kept at its temperature gains or loses a phase, in order."""
+    source, receiver = transfer.source, transfer.receiver
+    places = []
+    if source.temperature_k <= T_SATURATION_MAX:
+        _, rho_l, rho_v, _, _ = engine().saturation(source.temperature_k)
+        places += [source.net_kg - transfer.line_kg - density * source.volume_m3 for density in (rho_l, rho_v)]
+    if receiver.temperature_k <= T_SATURATION_MAX:
+        _, rho_l, rho_v, _, _ = engine().saturation(receiver.temperature_k)
+        places += [density * receiver.volume_m3 - receiver.net_kg for density in (rho_l, rho_v)]
+    return sorted(place for place in places if 0.0 < place < room)
 
 
 def _stop(transfer: Transfer, limit_kg: float, free: Callable[[], float]) -> tuple[float, str]:

@@ -73,7 +73,7 @@ class WithdrawalTable:
 class Drain:
     """One bottle giving one saturated phase: mass left against temperature, both ways."""
 
-    __slots__ = ("_c", "_g0", "_h0", "_m0", "_met", "_s0", "_table", "_v")
+    __slots__ = ("_c", "_g0", "_h0", "_m0", "_met", "_s0", "_share", "_table", "_v")
 
     def __init__(self, table: WithdrawalTable, volume: float, wall: float, mass: float, temperature: float) -> None:
         """Fix the start."""
@@ -82,7 +82,7 @@ class Drain:
         self._s0 = s = to_s(temperature)
         exponent, self._g0, self._h0, d_exponent, d_g, d_h = table.integrals(s)
         scale = exp(exponent)
-        self._m0 = mass / scale
+        self._m0, self._share = mass / scale, 1.0 / scale
         # A place on the path that was met before, its mass and its slope: where the next search begins.
         self._met = s, mass, d_exponent * mass + scale * (volume * d_g + wall * d_h)
 
@@ -139,6 +139,12 @@ class Drain:
                 return new
             s = new
         return s
+
+    def parts(self, s: float) -> tuple[float, float]:
+        """Mass left at s as a share of the mass at the start, and what comes to it whatever that was."""
+        exponent, g, h, _, _, _ = self._table.integrals(s)
+        scale = exp(exponent)
+        return scale * self._share, scale * (self._v * (g - self._g0) + self._c * (h - self._h0))
 
     def mass_and_slope(self, s: float) -> tuple[float, float]:
         """Mass left and its slope in s."""
