@@ -24,9 +24,9 @@ CAUTIONS = (
 )
 STOPPED = {
     "pressures equal": "pressures equal",
-    "source out of liquid": "the liquid runs out, then pressures equal",
-    "full of liquid": "it's full of liquid",
-    "no pressure difference": "nothing goes over",
+    "source out of liquid": "liquid out",
+    "full of liquid": "full of liquid",
+    "no pressure difference": "no difference",
 }
 WORST = ("passes_limit", "full_of_liquid")
 

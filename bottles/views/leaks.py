@@ -203,4 +203,4 @@ def _weeks(weeks: float) -> str:
         return "a day"
     if days < 14:
         return f"{round(days)} days"
-    return f"{round(weeks)} weeks" if weeks < 104 else f"{round(weeks / 52.18)} years"
+    return f"{round(weeks)} weeks" if weeks < 104 else f"{weeks / 52.18:.1f} years"
