@@ -13,6 +13,7 @@ from bottles.physics.vessel import COLDEST, Vessel
 from bottles.physics.withdrawal import Adiabatic
 from shop.physics.errors import OutOfRange
 
+_EMPTY = 1e-9  # kg: as good as nothing inside
 _MOST = 10_000  # fills that are counted
 _EVEN = 100.0  # Pa, as the forecast's: some hundredths of a gram
 
@@ -177,7 +178,7 @@ class _Straight(_Row):
 
     def __init__(self, source: Vessel, room: float, line_volume: float) -> None:
         super().__init__(source, room, line_volume)
-        self._path = Adiabatic(source) if source.net_kg > 0.0 else None
+        self._path = Adiabatic(source) if source.net_kg > _EMPTY else None
 
     def _next(self, before: Vessel) -> Vessel | None:
         after = super()._next(before)

@@ -29,6 +29,7 @@ CHILL, VENT_FIRST, PURGE, WAIT = "chill", "vent_first", "purge", "wait"
 VENT_FILLING, FULLER, WARM = "vent_filling", "fuller_supply", "warm_supply"
 EFFORT = (CHILL, VENT_FIRST, PURGE, WAIT, VENT_FILLING, FULLER, WARM)
 _FINE_K = 0.05  # how near to the edge a temperature is looked for
+_MARGIN = 2.0  # K that a warmed supply stays below the end of its two phases
 _WORTH = 1e-3  # share of the fill below which a gain is no help
 
 
@@ -119,7 +120,7 @@ def remedies(
     -----------
     One thing is changed, the rest stays as it is. A chilled bottle that starts vented is
     vented cold; any other keeps what it holds. A supply is warmed no further than 52 °C, and
-    not so far that it's full of liquid. Fuller and warmer supplies are judged as quick, or as
+    not so far that it's full of liquid or dry. Fuller and warmer supplies are judged as quick, or as
     likely where it's full in the quick case anyway.
 
     Valid for
@@ -338,10 +339,18 @@ def _supplied(asked: _Asked, short: dict[str, float]) -> list[Remedy]:
         least = edge("net_kg", most, at_full, source.net_kg, 1e-4 * most)
         found.append(Remedy(FULLER, case, None, least, True, short[case], 0.0))
     hottest = _warmest_supply(source)
-    warmed = pair(temperature_k=hottest) if hottest > t else None
-    if warmed is not None:
-        at_hot = asked.beyond(case, warmed)
-        to = edge("temperature_k", hottest, at_hot, t, _FINE_K) if at_hot >= 0.0 else hottest
+    tries = []
+    # Warmer isn't always better: near the end of two phases little liquid is left to draw.
+    for kelvin in (hottest, 0.5 * (hottest + t)) if hottest > t + 1.0 else ():
+        warmed = pair(temperature_k=kelvin)
+        if warmed is not None:
+            tries.append((asked.beyond(case, warmed), kelvin))
+            if tries[-1][0] >= 0.0:
+                break
+    if tries:
+        at_hot, to = max(tries)
+        if at_hot >= 0.0:
+            to = edge("temperature_k", to, at_hot, t, _FINE_K)
         gain = short[case] + min(at_hot, 0.0)
         found.append(Remedy(WARM, case, to, None, at_hot >= 0.0, max(gain, 0.0), 0.0))
     return found
@@ -353,7 +362,9 @@ def _warmest_supply(source: Vessel) -> float:
         temperature, word = one_phase_temperature(source.net_kg, source.volume_m3)
     except OutOfRange:  # one phase at any temperature: a trace of vapour, or all liquid
         return HOTTEST if source.net_kg < 100.0 * source.volume_m3 else COLDEST
-    return min(HOTTEST, temperature) if word == "liquid-full" else HOTTEST
+    if word == "dry" and temperature <= source.temperature_k:
+        return HOTTEST  # vapour alone
+    return min(HOTTEST, temperature - _MARGIN)
 
 
 def _told(code: str) -> tuple[tuple[str, str], ...]:

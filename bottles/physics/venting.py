@@ -15,6 +15,7 @@ VAPOUR = "vapour"
 LIQUID = "liquid"
 UPRIGHT = "upright"
 INVERTED = "inverted"
+_EMPTY = 1e-9  # kg: as good as nothing inside
 _LEAST = 1e-6  # share of the contents that is followed no further
 
 
@@ -123,7 +124,7 @@ def vent(vessel: Vessel, phase: str, *, to_kg: float | None = None, to_pa: float
     net, codes = vessel.net_kg, ["outdoors", "cold"]
     warm = None if to_pa is None else max(net - _gas_left(vessel, to_pa), 0.0)
     rest = pressure_and_energy(vessel.volume_m3, net, vessel.temperature_k)[0]
-    if net <= 0.0 or (to_kg is not None and to_kg >= net) or (to_pa is not None and to_pa >= rest):
+    if net <= _EMPTY or (to_kg is not None and to_kg >= net) or (to_pa is not None and to_pa >= rest):
         return Vented(
             0.0, net, _liquid(vessel.volume_m3, net, vessel.temperature_k), vessel.temperature_k, rest, warm,
             _told(["nothing_to_vent"]),
@@ -158,7 +159,11 @@ def _down_to(path: Adiabatic, pressure: float, most: float) -> float:
         aim = P_TRIPLE * (1.0 + 1e-6)
         if path.after(most).pressure_pa > aim:
             return most
-    return find_root(lambda given: path.after(given).pressure_pa - aim, 0.0, most, tolerance=1e-8 * most)
+    # That it stands above at rest is known; asked again, rounding might deny it.
+    at_rest = max(path.after(0.0).pressure_pa - aim, 1e-6)
+    return find_root(
+        lambda given: path.after(given).pressure_pa - aim, 0.0, most, tolerance=1e-8 * most, at_low=at_rest
+    )  # fmt: skip
 
 
 def _gas_left(vessel: Vessel, pressure: float) -> float:

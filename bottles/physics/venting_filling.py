@@ -161,9 +161,12 @@ def _start(transfer: Transfer, plain: float) -> _Point:
         aim = transfer.path.after(given).pressure_pa
         mass, t = receiver.net_kg, receiver.temperature_k
         path = Adiabatic(replace(receiver, liquid_pickup=False))
-        if path.after(0.0).pressure_pa > aim:
+        above = path.after(0.0).pressure_pa - aim
+        if above > 1e-9 * aim:
             most = mass * (1.0 - 1e-6)
-            vented = find_root(lambda y: path.after(y).pressure_pa - aim, 0.0, most, tolerance=1e-8 * most)
+            vented = find_root(
+                lambda y: path.after(y).pressure_pa - aim, 0.0, most, tolerance=1e-8 * most, at_low=above
+            )  # fmt: skip
         after = path.after(vented)
         mass, t, vented_j = mass - vented, after.temperature_k, after.energy_given_j
     energy = pressure_and_energy(receiver.volume_m3, mass, t)[1] + receiver.wall_j_k * t
