@@ -42,32 +42,6 @@ def test_saturation_meets_the_webbook_table(row):
     assert state.latent_heat / 1e3 == pytest.approx(float(row["hV_kJ_kg"]) - float(row["hL_kJ_kg"]), rel=2e-4)
 
 
-def esdu(name, temperature_k):
-    """Independent correlation of 1991 (ESDU 91022, equations 4.1 to 4.6)."""
-    row = next(row for row in rows("esdu_91022_coefficients.csv") if row["property"] == name)
-    b = [float(row[f"b{i}"]) if row[f"b{i}"] else 0.0 for i in range(1, 6)]
-    tr = temperature_k / 309.57
-    x = 1.0 - tr
-    if name == "p_vap":
-        return 7251e3 * math.exp((b[0] * x + b[1] * x**1.5 + b[2] * x**2.5 + b[3] * x**5) / tr)
-    if name == "rho_liq":
-        return 452.0 * math.exp(sum(b[i] * x ** ((i + 1) / 3) for i in range(4)))
-    if name == "rho_vap":
-        return 452.0 * math.exp(sum(b[i] * (1 / tr - 1) ** ((i + 1) / 3) for i in range(5)))
-    return 1e3 * (b[0] + b[1] * x ** (1 / 3) + b[2] * x ** (2 / 3) + b[3] * x + b[4] * x ** (4 / 3))
-
-
-@pytest.mark.parametrize("celsius", [-40, -20, 0, 10, 20, 25, 30])
-def test_saturation_meets_an_independent_correlation(celsius):
-    kelvin = celsius + 273.15
-    state = fluid.saturation_at_temperature(kelvin)
-    loose = 0.01 if celsius <= 25 else 0.02
-    assert state.pressure_pa == pytest.approx(esdu("p_vap", kelvin), rel=0.004)
-    assert state.liquid_density == pytest.approx(esdu("rho_liq", kelvin), rel=0.005 if celsius >= -20 else 0.006)
-    assert state.vapour_density == pytest.approx(esdu("rho_vap", kelvin), rel=loose)
-    assert state.latent_heat == pytest.approx(esdu("h_vap", kelvin) - esdu("h_liq", kelvin), rel=loose)
-
-
 def test_constants_are_those_published():
     published = {
         (row["quantity"], row["unit"]): float(row["value"])
