@@ -14,7 +14,7 @@ from dataclasses import dataclass
 from bottles.physics.vessel import HEAT, Vessel, settle
 from bottles.physics.withdrawal import Adiabatic
 from shop.physics.fluid import P_CRITICAL, P_TRIPLE, T_SATURATION_MAX, T_TRIPLE, engine
-from shop.physics.saturation_table import saturated
+from shop.physics.saturation_table import Side, saturated, saturation_table, to_s, to_t
 
 _STEPS = 20  # of the largest size, over what can go in
 _FIRST = 0.004  # the first step, as a share of what can go in
@@ -33,7 +33,7 @@ class Mark:
 class _Above:
     """Vapour and wall above the liquid: one temperature, a shrinking space."""
 
-    __slots__ = ("air", "climb", "energy", "heat", "mass", "pressure", "temperature", "volume", "wall")
+    __slots__ = ("air", "climb", "energy", "heat", "mass", "pressure", "s", "table", "temperature", "volume", "wall")
 
     def __init__(self, receiver: Vessel) -> None:
         fluid = engine()
@@ -52,24 +52,51 @@ class _Above:
                 self.volume = self.mass / rho_v if quality > 0.0 else 1e-6 * v
                 energy = h_v - p / rho_v
         self.energy = self.mass * energy + self.wall * t
-        self.pressure, self.heat, self.climb = 0.0, HEAT, 0.0
+        self.pressure, self.heat = 0.0, HEAT
+        self.table = saturation_table()
+        self.s: float | None = None  # of saturated vapour in the table, and how far it went in the last step
+        self.climb = 0.0
         self.settle()
 
     def settle(self) -> None:
         """Find temperature and pressure; let what has condensed drip away."""
-        guess = min(max(self.temperature + self.climb, T_TRIPLE), T_SATURATION_MAX)
-        t, p, self.heat = settle(self.volume, self.wall, self.mass, self.energy, guess, self.air, self.heat)
-        self.climb = t - self.temperature
-        self.temperature, self.pressure = t, p
-        if t > T_SATURATION_MAX or self.mass <= 0.0:
+        if self.s is not None and self._settle_wet(self.s + self.climb):
             return
-        p_sat, rho_l, rho_v, h_l, _ = saturated(t)
-        density = self.mass / self.volume
-        if rho_v < density < rho_l:
-            drip = (self.mass - rho_v * self.volume) / (1.0 - rho_v / rho_l)
-            self.mass -= drip
-            self.volume -= drip / rho_l
-            self.energy -= drip * (h_l - p_sat / rho_l)
+        before = self.temperature
+        t, self.pressure, self.heat = settle(
+            self.volume, self.wall, self.mass, self.energy, before, self.air, self.heat
+        )
+        self.temperature, self.s = t, None
+        if t <= T_SATURATION_MAX and self.mass > 0.0:
+            s = to_s(t)
+            side = self.table.side(s)
+            if side[2] < self.mass / self.volume < side[1]:
+                self.s, self.climb = s, 0.0
+                self._drip(side)
+
+    def _settle_wet(self, guess: float) -> bool:
+        """The same where vapour was saturated before, as it mostly stays."""
+        s = self.table.settled(self.volume, self.wall, self.mass, self.energy, guess)
+        if s is None:
+            return False
+        side = self.table.side(s)
+        if not side[2] < self.mass / self.volume < side[1]:
+            return False
+        self.climb = s - self.s if self.s is not None else 0.0
+        self.s, self.temperature, self.pressure = s, to_t(s), side[0]
+        if self.air:
+            space = (side[1] * self.volume - self.mass) / (side[1] - side[2])
+            self.pressure += self.air * self.temperature / max(space, 1e-6 * self.volume)
+        self._drip(side)
+        return True
+
+    def _drip(self, side: Side) -> None:
+        """Take away the liquid with the volume and the energy that it has."""
+        p_sat, rho_l, rho_v, h_l, _ = side
+        drip = (self.mass - rho_v * self.volume) / (1.0 - rho_v / rho_l)
+        self.mass -= drip
+        self.volume -= drip / rho_l
+        self.energy -= drip * (h_l - p_sat / rho_l)
 
 
 def slow_filling(source: Adiabatic, receiver: Vessel, line_kg: float, most_kg: float) -> list[Mark]:
