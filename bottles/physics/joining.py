@@ -14,7 +14,7 @@ from shop.physics.roots import find_root
 from shop.physics.saturation_table import saturated, saturation_table, to_s, to_t
 
 _RESOLUTION = 1e-6  # of the most that can go over
-_EVEN = 5.0  # Pa: less than a tenth of a gram on the flattest slope
+_EVEN = 1e-6  # of the supply's pressure: less than a tenth of a gram on the flattest slope
 _STIFF = 3e4  # m2/s2: liquid squeezed by a kilogram a cubic metre gains more pascals than this
 _EMPTY = 1e-9  # kg: a supply bottle with nothing in it, so that it has a state
 _DENSEST = 1240.0  # kg/m3, liquid at the triple point
@@ -52,6 +52,7 @@ class Transfer:
             self._guess, self._heat = like._guess, like._heat
         # The line's own contents leave with the energy that they took from the supply.
         self._line_j = self.path.after(self.line_kg).energy_given_j if self.line_kg else 0.0
+        self._even_pa = 0.0
         self._marks: list[Mark] | None = None
         self._mixed: float | None = None
 
@@ -108,6 +109,7 @@ class Transfer:
         """Where both pressures meet."""
         most = self.capacity_kg
         start = self.surplus(0.0)
+        self._even_pa = _EVEN * self.path.after(self.line_kg).pressure_pa
         if most <= 0.0 or start <= 0.0:
             return 0.0
         closed, first = self._level()
@@ -153,7 +155,7 @@ class Transfer:
     def _surplus_or_even(self, moved_kg: float) -> float:
         """Surplus, none where it's too small to tell."""
         surplus = self.surplus(moved_kg)
-        return 0.0 if abs(surplus) < _EVEN else surplus
+        return 0.0 if abs(surplus) < self._even_pa else surplus
 
     def _level(self) -> tuple[float | None, float | None]:
         """Where both bottles hold two phases at one temperature, by their balances alone.
@@ -181,7 +183,7 @@ class Transfer:
             return None, None
         if density >= side[1]:
             return None, side[1] * two.volume_m3 - two.net_kg
-        if two.air or abs(self.surplus(moved)) >= _EVEN:
+        if two.air or abs(self.surplus(moved)) >= self._even_pa:
             return None, moved
         return moved, None
 
