@@ -182,13 +182,13 @@ def test_warming_takes_energy_and_time():
     assert answer("heat", loss=None)["minutes"] != told["minutes"]
 
 
-def test_too_little_power_never_gets_there():
+def test_a_heater_too_weak_gives_no_minutes():
     told = answer("heat", watts="5")
     assert told["minutes"] is None and "never_gets_there" in codes(told)
     assert told["energy_kj"] == answer("heat")["energy_kj"]
 
 
-def test_a_nearly_empty_bottle_boils_dry():
+def test_a_nearly_empty_bottle_is_said_to_boil_dry():
     told = answer("heat", net="1kg", to_pressure="55bara")
     assert told["becomes"] == "dry" and "boils_dry" in codes(told)
     assert refusal("heat", net="0.2kg", to_pressure="62bara") == "pressure_unreachable"
