@@ -15,7 +15,8 @@ class Course:
     """Both bottles over time, how long it takes, and what ended it.
 
     `receiver_k` is the vapour and the wall; `liquid_k` is the pool below it, where it's followed
-    on its own. Heat that came in counts from the moment that the line was full.
+    on its own. Heat that came in counts from the moment that the line was full. `flow_between`
+    is how much less and more than the flow told may flow, half way.
     """
 
     seconds: Array
@@ -30,11 +31,21 @@ class Course:
     liquid_out: bool
     seconds_to_90: float | None
     seconds_to_limit: float | None
+    flow_between: tuple[float, float]
     heat_in_source_j: float | None = None
     heat_in_receiver_j: float | None = None
 
+    @property
+    def seconds_to_90_between(self) -> tuple[float, float] | None:
+        """Shortest and longest time to 90 %, by the range of the flow."""
+        if self.seconds_to_90 is None:
+            return None
+        least, most = self.flow_between
+        return self.seconds_to_90 / most, self.seconds_to_90 / least
+
     def as_dict(self) -> dict[str, object]:
         """Everything, with units in the keys, ready for JSON; pressures absolute."""
+        between = self.seconds_to_90_between
         return {
             "seconds": self.seconds.tolist(),
             "moved_kg": self.moved_kg.tolist(),
@@ -47,6 +58,7 @@ class Course:
             "stopped_by": self.stopped_by,
             "liquid_out": self.liquid_out,
             "minutes_to_90_percent": None if self.seconds_to_90 is None else self.seconds_to_90 / 60.0,
+            "minutes_to_90_percent_between": None if between is None else [time / 60.0 for time in between],
             "minutes_to_limit": None if self.seconds_to_limit is None else self.seconds_to_limit / 60.0,
         }
 

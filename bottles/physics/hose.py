@@ -5,7 +5,9 @@ from __future__ import annotations
 from math import pi, sqrt
 
 from shop.physics.errors import OutOfRange
-from shop.physics.flow import opening_flux
+from shop.physics.flow import hem_flux, opening_flux, spi_flux
+from shop.physics.fluid import T_SATURATION_MAX, engine
+from shop.physics.states import RHO_CRITICAL
 
 FRICTION = 0.025  # Darcy's factor, rough hose and fittings in turbulent flow (common practice)
 ENTRY = 1.5  # velocity heads lost on entering and leaving (common practice)
@@ -14,6 +16,7 @@ SEAT_COEFFICIENT = 0.6  # sharp-edged opening (common practice)
 VALVES = 2  # the supply's and the other bottle's
 # Two metres of 4.8 mm hose with both valves half open: 1.2 mm2 (common practice, no source).
 HALF_OPEN = 0.5
+LEAST_FLOW, MOST_FLOW = 0.9, 1.3  # of the model's flow: how measured openings scatter (common practice)
 COMMON_LENGTH_M, COMMON_BORE_M = 2.0, 0.0048
 
 
@@ -95,3 +98,46 @@ def line_flow(cd_area_m2: float, density: float, temperature_k: float, behind_pa
     See `opening_flux`.
     """
     return cd_area_m2 * opening_flux(density, temperature_k, behind_pa) if density > 0.0 else 0.0
+
+
+def flow_between(density: float, temperature_k: float, behind_pa: float) -> tuple[float, float]:
+    """How much less and how much more than `line_flow` says may flow, as shares of it.
+
+    Parameters
+    ----------
+    density : float, of what enters the line [kg/m3]
+    temperature_k : float, of what enters it [K]
+    behind_pa : float, absolute pressure in the bottle to fill [Pa]
+
+    Returns
+    -------
+    tuple of float, the least and the most [-]
+
+    Assumptions
+    -----------
+    Liquid lies between boiling in equilibrium, choked, and not boiling at all; never closer
+    than measured openings scatter, -10 to +30 %, which stands for vapour alone too. How far a
+    valve is open isn't counted.
+
+    Valid for
+    ---------
+    182.33 K to 525 K.
+
+    Raises
+    ------
+    OutOfRange
+        `temperature_range`, `density_range`, `pressure_range`.
+
+    References
+    ----------
+    See `hem_flux`, `spi_flux`; the scatter is common practice, no source.
+    """
+    if density <= RHO_CRITICAL or temperature_k > T_SATURATION_MAX:
+        return LEAST_FLOW, MOST_FLOW
+    flux = opening_flux(density, temperature_k, behind_pa)
+    if flux <= 0.0:
+        return LEAST_FLOW, MOST_FLOW
+    upstream = engine().pressure_energy(density, temperature_k)[0]
+    least = hem_flux(density, temperature_k, behind_pa) / flux
+    most = spi_flux(density, upstream, behind_pa) / flux
+    return min(least, LEAST_FLOW), max(most, MOST_FLOW)

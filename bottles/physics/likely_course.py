@@ -6,7 +6,7 @@ import numpy as np
 
 from bottles.physics.condensation import between
 from bottles.physics.course import Course, seconds_until
-from bottles.physics.hose import line_flow
+from bottles.physics.hose import LEAST_FLOW, MOST_FLOW, flow_between, line_flow
 from bottles.physics.transfer import EQUAL, FILL_LIMIT, LIQUID_OUT, NO_DIFFERENCE, Transfer
 from bottles.physics.wall_condensing import Mark
 from shop.physics.errors import OutOfRange
@@ -76,6 +76,7 @@ def likely_course(
         way = np.union1d(way, [dry])
     rows: list[tuple[float, ...]] = []
     seconds = flow = 0.0
+    spread = LEAST_FLOW, MOST_FLOW
     marks = _columns(transfer.slow_marks()) if figure < 1.0 else None
     for index, share in enumerate(way):
         moved = float(share * most)
@@ -86,6 +87,8 @@ def likely_course(
         density = (source.net_kg - transfer.line_kg - moved) / source.volume_m3
         ahead = wet and (index == 0 or share <= dry)
         density = _enters(density, given.temperature_k, liquid=ahead)
+        if index == len(way) // 2:
+            spread = flow_between(density, given.temperature_k, pressure)
         last, flow = flow, line_flow(cd_area_m2, density, given.temperature_k, pressure)
         if index:
             seconds += 2.0 * (moved - rows[-1][1]) / max(last + flow, 1e-12)
@@ -96,7 +99,7 @@ def likely_course(
     stopped = FILL_LIMIT if room <= most else EQUAL
     if stopped == EQUAL and rows[-1][3] - rows[-1][4] > 1e3:
         stopped = LIQUID_OUT
-    return _course(rows, stopped, liquid_out=not given.liquid)
+    return _course(rows, stopped, spread, liquid_out=not given.liquid)
 
 
 def _columns(marks: list[Mark]) -> tuple[list[float], list[float], list[float]]:
@@ -141,14 +144,14 @@ def _still(transfer: Transfer, stopped: str) -> Course:
     given = transfer.path.after(0.0)
     kelvin, pressure = transfer.mixed_receiver(0.0)
     row = (0.0, 0.0, 0.0, given.pressure_pa, pressure, given.temperature_k, kelvin)
-    return _course([row], stopped, liquid_out=not given.liquid)
+    return _course([row], stopped, (LEAST_FLOW, MOST_FLOW), liquid_out=not given.liquid)
 
 
-def _course(rows: list[tuple[float, ...]], stopped: str, *, liquid_out: bool) -> Course:
+def _course(rows: list[tuple[float, ...]], stopped: str, spread: tuple[float, float], *, liquid_out: bool) -> Course:
     """Moments as columns."""
     seconds, moved, flow, p1, p2, t1, t2 = np.array(rows).T
     reached = stopped == FILL_LIMIT and moved[-1] > 0.0
     return Course(
         seconds, moved, flow, p1, p2, t1, t2, None, stopped, liquid_out, seconds_until(seconds, moved, 0.9),
-        float(seconds[-1]) if reached else None,
+        float(seconds[-1]) if reached else None, spread,
     )  # fmt: skip

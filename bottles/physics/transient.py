@@ -14,7 +14,7 @@ from math import inf
 import numpy as np
 
 from bottles.physics.course import Course, seconds_until
-from bottles.physics.hose import effective_area, line_flow
+from bottles.physics.hose import effective_area, flow_between, line_flow
 from bottles.physics.transfer import EQUAL, FILL_LIMIT, LIQUID_OUT, NO_DIFFERENCE, Transfer
 from bottles.physics.transient_source import ClosedSupply, LeakingSupply, Supply
 from bottles.physics.transient_zones import Around, Filling, Zones
@@ -27,7 +27,9 @@ BURSTS = (
     "The bottle to fill would be full of liquid and go on warming past 500 bar: its safety disc would burst first. "
     "Set a lower fill limit, or keep it colder."
 )
-EXCHANGE = 60.0  # W/K between pool and what is above it (common practice, no source)
+# Between pool and what is above it: a tenth of a square metre of surface and wet wall, at some
+# 600 W/m2/K (common practice, no source).
+EXCHANGE = 60.0  # W/K
 _EVEN = 1.0  # Pa: pressures that differ by less are equal
 _AT_REST = 0.003  # K
 _FIRST = 0.004  # the first helping, as a share of what can go in
@@ -160,11 +162,14 @@ class _March:
         if stopped == EQUAL and self._moved <= 0.0:
             stopped = NO_DIFFERENCE
         columns = [np.array(column) for column in zip(*self._marks, strict=True)]
-        seconds, moved, flow, p1, p2, t1, t2, pool = columns
+        seconds, moved, flow, p1, p2, t1, t2, pool, density = columns
+        half = int(np.argmax(moved >= 0.5 * moved[-1]))
         given = self._supply.start.energy_j - self._given_j
         return Course(
             seconds, moved, flow, p1, p2, t1, t2, pool, stopped, not self._one.liquid,
-            seconds_until(seconds, moved, 0.9), float(seconds[-1]) if stopped == FILL_LIMIT and self._moved > 0.0 else None,
+            seconds_until(seconds, moved, 0.9),
+            float(seconds[-1]) if stopped == FILL_LIMIT and self._moved > 0.0 else None,
+            flow_between(float(density[half]), float(t1[half]), float(p2[half])),
             self._one.energy_j - given,
             self._two.energy_j - self._filling.start.energy_j - self._given_j,
         )  # fmt: skip
@@ -187,6 +192,10 @@ class _March:
                 size = wet
             step = self._helped(size)
             even = step.surplus_pa <= _EVEN
+            # Some of the liquid left boils away meanwhile: with heat coming in its end is closed in on.
+            if self._driven and self._one.liquid and not step.one.liquid and size > 1e-3 * self._scale:
+                helping = 0.5 * size
+                continue
             fell = (self._surplus() - step.surplus_pa) / self._fall
             if fell > 2.0 and size > 0.1 * _FIRST * self._scale:
                 helping = max(size / fell, 0.1 * size)
@@ -316,7 +325,7 @@ class _March:
         one, two = self._one, self._two
         self._marks.append(
             (self._time, self._moved, self._flow, one.pressure_pa, two.pressure_pa,
-             one.temperature_k, two.temperature_k, two.pool_k)
+             one.temperature_k, two.temperature_k, two.pool_k, one.outlet_density)
         )  # fmt: skip
 
     def _surplus(self) -> float:

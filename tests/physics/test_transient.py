@@ -210,8 +210,7 @@ def test_a_longer_and_a_narrower_hose_are_slower():
         transient(Transfer(supply(), bottle(-10)), LIMIT, Setting(cd_area_m2=area)).seconds_to_90
         for area in (common, long, narrow, shut)
     ]
-    assert times[0] == min(times)
-    assert times[1:] == [pytest.approx(time, rel=1e-9) for time in times[1:]]
+    assert min(times[1:]) > 1.1 * times[0]
 
 
 def test_without_exchange_time_goes_as_one_over_the_line():
@@ -300,6 +299,41 @@ def test_where_nothing_moves_a_course_is_one_moment(limit):
         assert course.moved_kg.tolist() == [0.0]
         assert course.stopped_by == ("fill limit" if limit == 1.0 else "no pressure difference")
         assert course.seconds_to_90 is None
+
+
+@pytest.mark.parametrize("name", ["level", "liquid runs out", "through the critical point", "no dip tube"])
+def test_next_to_no_leak_is_no_leak(name):
+    source, receiver = CASES[name]
+    none = transient(Transfer(source, receiver), ABOVE, QUICK)
+    around = Around(source.temperature_k, 1e-6)
+    little = transient(Transfer(source, receiver), ABOVE, Setting(exchange_w_k=inf, source_around=around))
+    # The supply stepped with its wall and leak, beside the same supply's closed path.
+    assert little.moved_kg[-1] == pytest.approx(none.moved_kg[-1], rel=2e-3, abs=2e-3)
+    assert little.source_k[-1] == pytest.approx(none.source_k[-1], abs=0.05)
+    assert little.seconds_to_90 == pytest.approx(none.seconds_to_90, rel=0.02)
+
+
+def test_what_the_dip_tube_does_not_reach_leaves_as_vapour_with_a_leak_too():
+    source = supply(8.0, below_tube_m3=0.004)
+    courses = [
+        transient(Transfer(source, bottle(-20)), ABOVE, Setting(exchange_w_k=inf, source_around=around))
+        for around in (None, Around(293.15, 1e-6))
+    ]
+    for course in courses:
+        assert course.liquid_out
+        assert course.moved_kg[-1] < transient(Transfer(supply(8.0), bottle(-20)), ABOVE, QUICK).moved_kg[-1]
+    assert courses[0].moved_kg[-1] == pytest.approx(courses[1].moved_kg[-1], rel=2e-3, abs=2e-3)
+
+
+@pytest.mark.parametrize("name", ["chilled", "vapour alone"])
+def test_a_course_says_between_which_times_it_lies(name):
+    transfer = Transfer(*CASES[name])
+    for course in (transient(transfer, LIMIT), likely_course(transfer, LIMIT, 0.5, effective_area())):
+        shortest, longest = course.seconds_to_90_between
+        assert shortest <= course.seconds_to_90 / 1.29
+        assert longest >= course.seconds_to_90 / 0.91
+        # Boiling in equilibrium and not boiling at all lie further apart than openings scatter.
+        assert (longest > 1.2 * course.seconds_to_90) == (name == "chilled")
 
 
 TEMPERATURES = st.floats(-40.0, 52.0) | st.sampled_from([36.37, 36.3707, 36.4])
