@@ -167,7 +167,9 @@ def _level_start(transfer: Transfer, join: Callable[[float], Transfer], limit_kg
     if receiver.air or limit_kg - receiver.net_kg > transfer.capacity_kg:
         return None
     other, start, heat = transfer, receiver.temperature_k, receiver.wall_j_k + _CONTENTS * receiver.net_kg
-    for _ in range(5):
+    if heat <= 0.0:  # neither wall nor contents: nothing that could be warm or cold
+        return None
+    for _ in range(5 if heat > 0.0 else 0):
         room = limit_kg - other.receiver.net_kg
         end = transfer.path.after(transfer.line_kg + room)
         t = end.temperature_k

@@ -123,6 +123,11 @@ def test_what_a_dip_tube_leaves_is_not_given():
     assert left["wall_condensing"]["moved_kg"] < whole["wall_condensing"]["moved_kg"]
 
 
+def test_an_evacuated_bottle_without_a_wall_is_answered_too():
+    told = answer("transfer", receiver_net="0kg", receiver_wall_mass="0kg", receiver_temperature="36C")
+    assert told["mixed"]["moved_kg"] > 0 and told["warmest_receiver_c"] is not None
+
+
 def test_an_overfull_supply_is_told():
     assert "over_limit" in codes(answer("transfer", source_net="21kg"))
 
