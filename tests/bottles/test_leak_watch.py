@@ -230,7 +230,7 @@ def test_an_empty_shop_is_told_what_to_do_first(desk: Client) -> None:
     assert "No stored bottle has a weighing that counts." in desk.get("/nitrous/leaks").content.decode()
 
 
-def test_the_number_of_queries_does_not_grow_with_the_bottles(desk: Client) -> None:
+def test_the_leak_watch_asks_no_more_often_with_more_bottles(desk: Client) -> None:
     scale, counts = b.scale(), []
     for number in range(8):
         leaky(f"T-{number:04}", scale, weeks=2, a_week=60 if number % 2 else 0)
