@@ -143,7 +143,7 @@ def _likelihood(observations: Sequence[Observation]) -> _Array:
             away = (_GRID[None, :] - figures[:, None]) / spread
             sound = _below(away) if censored else np.exp(-0.5 * away * away) / (spread * sqrt(2.0 * np.pi))
             total[number] += np.log((1.0 - _ODD_SHARE) * sound + _ODD_SHARE * odd).sum(axis=0)
-    return np.exp(total - total.max())
+    return np.asarray(np.exp(total - total.max()))
 
 
 class _Tree:
@@ -184,7 +184,7 @@ def _flat(message: _Array) -> _Array:
 
     Scaled as a whole: its size tells one scatter from another.
     """
-    return np.maximum(message / message.max(), _FLOOR)
+    return np.asarray(np.maximum(message / message.max(), _FLOOR))
 
 
 def _moments(joint: _Array) -> tuple[float, float, float]:
@@ -218,7 +218,7 @@ def _hyper() -> _Array:
 def _below(away: _Array) -> _Array:
     """The normal bell's share below so many deviations, from a table: its errors are below 1e-5."""
     steps, shares = _bell()
-    return np.interp(away, steps, shares)
+    return np.asarray(np.interp(away, steps, shares))
 
 
 @cache

@@ -18,8 +18,8 @@ from bottles.selectors.refills import Course, courses_of, net_without_hose
 from shop.base import clock
 from shop.base.models import Shop
 
-# Refills that are learned from and compared: the shop changes, and a page answers at once.
-WINDOW = 1_000
+# Refills that are learned from, for the shop changes; and those compared on a page, which answers at once.
+WINDOW, COMPARED = 1_000, 500
 
 Scope = tuple[str, int | None]
 
@@ -67,10 +67,10 @@ def latest_figures(shop: Shop) -> Figures:
     return Figures(Fit.objects.filter(pk__in=last).select_related("act"), shop)
 
 
-def closed_window() -> QuerySet[Refill]:
-    """Return the closed refills that are learned from and compared, the latest first."""
+def closed_window(many: int = WINDOW) -> QuerySet[Refill]:
+    """Return the latest closed refills, the latest first."""
     found = Refill.objects.filter(closed_at__isnull=False).order_by("-closed_at", "-id")
-    return found.select_related("bottle", "station__scale", "person")[:WINDOW]
+    return found.select_related("bottle", "station__scale", "person")[:many]
 
 
 @dataclass(frozen=True, slots=True)

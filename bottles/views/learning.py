@@ -12,7 +12,7 @@ from django.utils.safestring import mark_safe
 
 from bottles.physics.fitting_words import WAYS, litres
 from bottles.rules.learning import size_of, size_span, way_of
-from bottles.selectors.learning import WINDOW, closed_window, latest_figures, went
+from bottles.selectors.learning import COMPARED, WINDOW, closed_window, latest_figures, went
 from bottles.views.learning_words import (
     GROUP_HEAD,
     ROW_HEAD,
@@ -46,7 +46,7 @@ def learning(request: HttpRequest) -> HttpResponse:
     """Forecast against the scale for the latest refills, by what matters; the fitted figure; what is far outside."""
     shop = Shop.objects.get()
     words = refill_words(request, shop)
-    rows = went(list(closed_window()))
+    rows = went(list(closed_window(COMPARED)))
     compared, others = placed(rows)
     known = latest_figures(shop)
     whole = known.rows.get(("", None))
@@ -55,7 +55,7 @@ def learning(request: HttpRequest) -> HttpResponse:
     far = [row for row in compared if row.span.far]
     same_side = Counter((row.refill.bottle_id, row.span.off_g > 0) for row in compared if not row.span.inside)
     context: dict[str, Any] = {
-        "window": WINDOW, "at_window": len(rows) >= WINDOW, "count": len(rows), "compared": len(compared),
+        "window": WINDOW, "most": COMPARED, "at_most": len(rows) >= COMPARED, "count": len(rows), "compared": len(compared),
         "figures": fitted_rows(known, shop), "left_out": left_out_words(whole),
         "through": whole.act.recorded_at if whole else None,
         "others": others_words(others), "others_count": sum(others.values()),

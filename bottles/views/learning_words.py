@@ -16,7 +16,7 @@ from bottles.physics.fitting_words import WAYS, litres, why_untold
 from bottles.rules.agreement import Agreement, Compared, agreement
 from bottles.rules.learning import WHY, WHY_NOT_COMPARED, not_compared, size_span
 from bottles.rules.outliers import Span, Traces, Typed, causes
-from bottles.selectors.learning import Figures, Went
+from bottles.selectors.learning import Figures, Scope, Went
 from bottles.services.forecasting import BOOKS, tolerance_k
 from bottles.services.refill_books import flows_of
 from bottles.views.refill_words import RefillWords
@@ -64,8 +64,8 @@ def placed(rows: Iterable[Went]) -> tuple[list[Placed], Counter[str]]:
         likely = forecast.likely_g or 0
         came, at_limit = row.came_g, row.refill.ended_by == "limit"
         room = _room(row)
-        # The valve is shut where the scale may still be its ± out: what ended at its limit counts as that.
-        if at_limit and abs(room - came) <= 2 * row.error_g:
+        # The valve is shut short of it by the scale's ± and step: what ended at its limit counts as that.
+        if at_limit and (row.course.proves_full or abs(room - came) <= 2 * row.error_g):
             came = room
         found.append(Placed(row, Span(forecast.low_g, likely, forecast.high_g, came, row.error_g, at_limit)))
     return found, others
@@ -164,7 +164,7 @@ def traces(row: Placed, same_side: int) -> Traces:
 
 def fitted_rows(known: Figures, shop: Shop) -> list[dict[str, Any]]:
     """The condensation figures: the ways, their sizes, then where the way isn't known; priors said as such."""
-    wanted = [("dip", None), ("spray", None), ("", None)]
+    wanted: list[Scope] = [("dip", None), ("spray", None), ("", None)]
     wanted += [scope for scope in known.rows if scope not in wanted and scope[0]]
     order = {"dip": 0, "spray": 1, "": 2}
     wanted.sort(key=lambda scope: (order[scope[0]], scope[1] or 0))
