@@ -122,6 +122,8 @@ class Drain:
     def _s_between(self, mass: float) -> float:
         """The same by Newton's steps in a bracket that shrinks: mass falls with rising s all the way."""
         low, high = self._s0, self._table.s_cold
+        if mass >= self.mass_and_slope(low)[0] * (1.0 - 1e-14):
+            return low  # the start itself: halving would stop a hair beside it
         if mass <= self.mass_and_slope(high)[0]:
             return high
         s = 0.5 * (low + high)

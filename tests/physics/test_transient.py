@@ -139,6 +139,13 @@ def test_a_course_conserves_mass_and_energy(name, leaks):
         assert heat == pytest.approx(0.0, abs=1e-6 * moved * 3e5)
 
 
+def test_a_path_looked_at_later_begins_where_it_began():
+    path = Transfer(Vessel(0.029, 500.0, 16.17122974098339, 273.15), bottle()).path
+    first = path.after(0.0).energy_given_j
+    path.after(1.0)
+    assert path.after(0.0).energy_given_j == pytest.approx(first, abs=1e-3)
+
+
 @pytest.mark.parametrize("exchange", [0.0, 60.0, 1e4])
 def test_zones_keep_all_that_arrives_and_agree_with_their_states(exchange):
     receiver = bottle(10, net=0.5)
