@@ -6,6 +6,7 @@ import logging
 from contextlib import suppress
 from typing import Any
 
+import bottles.tasks_plan  # noqa: F401  # its handler registers itself
 from bottles.selectors.ledger import balance_differences, standing_differences
 from bottles.services.learning import gather, learn
 from shop.base.errors import AlreadyDone

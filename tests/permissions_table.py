@@ -112,7 +112,7 @@ ROOMS = [
     Page("rooms:place_new", MANAGERS),
     Page("rooms:jobs", MANAGERS),
     Page("rooms:job", EVERYONE, lambda world: {"pk": world.job.pk}),
-    Page("rooms:job_cancel", MANAGERS, lambda world: {"pk": world.job.pk}, get=405),
+    Page("rooms:job_cancel", EVERYONE, lambda world: {"pk": world.job.pk}, get=405),
     Page("rooms:check_books", MANAGERS),
     Page("rooms:place", MANAGERS, lambda world: {"pk": world.place.pk}),
 ]
@@ -147,6 +147,8 @@ REFILLS = [
     Page("bottles:forecast_live", EVERYONE, _of_bottle, html=False),
     Page("bottles:course_live", EVERYONE, _of_bottle, html=False),
     Page("bottles:joined", EVERYONE, _of_bottle),
+    Page("bottles:plan", DESK),
+    Page("bottles:plan_new", DESK),
     Page("bottles:refills", EVERYONE),
     Page("bottles:refill", EVERYONE, lambda world: {"pk": world.refill.pk}),
     Page("bottles:refill_wait", EVERYONE, lambda world: {"pk": world.refill.pk}),

@@ -18,6 +18,7 @@ from bottles.selectors.refills import Course, course_of, draws_of, in_force
 from bottles.services.forecasting import Answer, Asked, DangerSign
 from bottles.services.learning import ask_to_learn
 from bottles.services.locking import lock
+from bottles.services.planning import plan_again
 from bottles.services.refill_books import post_flows
 from bottles.services.refill_refusals import Closed, NotDisconnected, Overfull, WetProvesNothing
 from bottles.services.refilling import draw_on, refuse_source
@@ -73,6 +74,7 @@ def weigh_refill(
             _close(course, ended_by)
         except (Overfull, NotDisconnected, WetProvesNothing) as why:
             return Weighed(weighing, why_not=why.sentence)
+        plan_again(act, refill.bottle.code)
     return Weighed(weighing, closed=True)
 
 
@@ -141,9 +143,10 @@ def close_refill(*, key: uuid.UUID, person: User | None, refill: Refill, version
     with acts.begin(
         key=key, person=person, code="refill.closed", subject=f"bottle:{refill.bottle.code}",
         changes={"refill": refill.pk, "ended_by": ended_by},
-    ):
+    ) as act:
         current, draws = _locked(refill)
         _close(course_of(current, draws), ended_by, version=version)
+        plan_again(act, refill.bottle.code)
 
 
 def may_close(course: Course, ended_by: str) -> None:

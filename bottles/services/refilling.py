@@ -34,6 +34,7 @@ from bottles.selectors.scales import scale_checked, scale_uncertainty
 from bottles.services.deciding import decide, keep_refusal
 from bottles.services.forecasting import Answer, Asked, DangerSign, keep_forecast
 from bottles.services.locking import lock
+from bottles.services.planning import plan_again
 from bottles.services.refusals import Retired
 from bottles.services.weighing import tare_at, weigh_in
 from shop.base import acts, clock
@@ -163,6 +164,7 @@ def _open(key: uuid.UUID, person: User | None, opening: Opening, items: Sequence
         )
         draw_on(act=act, refill=refill, asked=opening.asked, answer=opening.answer, reason=opening.reason,
                 happened_at=refill.opened_at)  # fmt: skip
+        plan_again(act, bottle.code)
     return Opened(refill)
 
 

@@ -20,7 +20,7 @@ from bottles.views.refill_words import RefillWords, refill_words
 from bottles.views.wording import Words
 from shop.base import clock
 from shop.base.models import Shop
-from shop.base.permissions import EVERYONE, allow
+from shop.base.permissions import DESK, EVERYONE, allow
 from shop.rooms.jobs import going_on
 
 
@@ -44,6 +44,7 @@ def counter(request: HttpRequest) -> HttpResponse:
         "supplies": [_supply(supply, fills.get(supply.pk), words, shop) for supply in supplies],
         "has_stations": bool(supplies) or selected.has_stations(),
         "going_on": going_on(request),
+        "may_plan": bool(DESK & request.user.roles),  # type: ignore[union-attr]
         "leaking": len(leaking()),
     }
     return render(request, "rooms/counter.html", context)

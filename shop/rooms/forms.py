@@ -85,6 +85,25 @@ def _months(label: str, hint: str) -> forms.IntegerField:
     )
 
 
+def _percent(label: str, hint: str, above: str) -> forms.DecimalField:
+    sentence = "Give a percentage, 1 to 100."
+    return forms.DecimalField(
+        label=label,
+        required=False,
+        min_value=1,
+        max_value=100,
+        decimal_places=1,
+        help_text=hint,
+        widget=forms.TextInput(attrs={"inputmode": "decimal", "autocomplete": "off"}),
+        error_messages={
+            "invalid": sentence,
+            "min_value": sentence,
+            "max_decimal_places": "One digit after the point is enough.",
+            "max_value": above,
+        },
+    )
+
+
 class PolicyForm(ActForm):
     """What the shop decides from a day on; never looser than the country's rules."""
 
@@ -104,20 +123,12 @@ class PolicyForm(ActForm):
     )
     visual_interval_months = _months("Months between visual inspections", "Empty: only what the rules ask for.")
     disc_interval_months = _months("Months after which a safety disc is replaced", "Empty: no rule of the shop's own.")
-    own_percent = forms.DecimalField(
-        label="Fill at most to this percent of the limit",
-        required=False,
-        min_value=1,
-        max_value=100,
-        decimal_places=1,
-        help_text="Empty: to the limit.",
-        widget=forms.TextInput(attrs={"inputmode": "decimal", "autocomplete": "off"}),
-        error_messages={
-            "invalid": "Give a percentage, 1 to 100.",
-            "min_value": "Give a percentage, 1 to 100.",
-            "max_decimal_places": "One digit after the point is enough.",
-            "max_value": "No shop may fill above the limit: give 1 to 100.",
-        },
+    own_percent = _percent(
+        "Fill at most to this percent of the limit", "Empty: to the limit.", "No shop may fill above the limit: give 1 to 100."
+    )
+    good_percent = _percent(
+        "A fill is good enough from this percent of its target", "For the day's plan. Empty: 95 (common practice, no source).",
+        "Give a percentage, 1 to 100.",
     )
     reason = forms.CharField(required=False, max_length=400, label="Why", widget=forms.Textarea(attrs={"rows": 2}))
 

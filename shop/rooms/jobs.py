@@ -5,6 +5,7 @@ from __future__ import annotations
 import uuid
 from typing import Any
 
+from django.core.exceptions import PermissionDenied
 from django.http import HttpRequest, HttpResponse, HttpResponseRedirect
 from django.shortcuts import get_object_or_404, render
 from django.urls import reverse
@@ -12,11 +13,12 @@ from django.views.decorators.http import require_POST, require_safe
 
 from shop.base import acts, clock, jobs
 from shop.base.models import Job, Shop
-from shop.base.permissions import EVERYONE, MANAGERS, allow
+from shop.base.permissions import DESK, EVERYONE, MANAGERS, allow
 from shop.people.acting import ActForm, ActView
 from shop.people.models import User, full_name
 
-KINDS = {"demo.fill": "Writing the demo's past", "ledger.check": "Checking the books", "learning.fit": "Learning from the refills"}
+KINDS = {"demo.fill": "Writing the demo's past", "ledger.check": "Checking the books", "learning.fit": "Learning from the refills",
+         "plan.make": "Making the day's fill plan"}  # fmt: skip
 RUNNING = ("queued", "running")
 LATEST = 40
 
@@ -49,13 +51,16 @@ def job(request: HttpRequest, pk: int) -> HttpResponse:
     return render(request, template, progress(request, found))
 
 
-@allow(MANAGERS, room="office")
+@allow(EVERYONE, room="office")
 @require_POST
 def cancel(request: HttpRequest, pk: int) -> HttpResponse:
-    """Ask work to stop after what it's at; what it did stays."""
+    """Ask work to stop after what it's at; what it did stays. A manager may, and whoever asked for it."""
     found = get_object_or_404(Job, pk=pk)
+    if not may_stop(request, found):
+        raise PermissionDenied
     jobs.cancel(found)
-    return HttpResponseRedirect(reverse("rooms:job", args=[found.pk]))
+    seen_on_plan = found.kind == "plan.make" and bool(DESK & request.user.roles)  # type: ignore[union-attr]
+    return HttpResponseRedirect(reverse("bottles:plan") if seen_on_plan else reverse("rooms:job", args=[found.pk]))
 
 
 class CheckBooks(ActView):
@@ -85,15 +90,20 @@ class CheckBooks(ActView):
 
 def progress(request: HttpRequest, found: Job) -> dict[str, Any]:
     """What `_progress.html` takes."""
-    may_stop = bool(MANAGERS & request.user.roles)  # type: ignore[union-attr]
     return {
         "job": found,
         "what": what(found),
         "running": found.state in RUNNING,
         "job_url": reverse("rooms:job", args=[found.pk]),
-        "cancel_url": reverse("rooms:job_cancel", args=[found.pk]) if may_stop else "",
+        "cancel_url": reverse("rooms:job_cancel", args=[found.pk]) if may_stop(request, found) else "",
         "result": found.note if found.state in RUNNING else result_words(found),
     }
+
+
+def may_stop(request: HttpRequest, found: Job) -> bool:
+    """Whether who looks may stop a piece of work: a manager, or who asked for it."""
+    person: User = request.user  # type: ignore[assignment]
+    return bool(MANAGERS & person.roles) or (found.asked_by_id is not None and found.asked_by_id == person.pk)
 
 
 def going_on(request: HttpRequest) -> dict[str, Any] | None:
@@ -115,4 +125,7 @@ def result_words(found: Job) -> str:
         if not result.get("count"):
             return "The books agree: each account with its movements, all accounts with nothing."
         return f"{result['count']} differences: " + "; ".join(differences)
+    if found.kind == "plan.make" and found.state == "done":
+        result = found.result or {}
+        return "A later plan answers for it." if result.get("superseded") else f"The plan is made, for {result['bottles']} bottles."
     return found.note

@@ -10,6 +10,7 @@ from django.shortcuts import render
 from django.urls import reverse
 
 from bottles.selectors.edition import edition_in_force
+from bottles.services.plan_day import GOOD_PER_MILLE
 from shop.base import clock
 from shop.base.models import Place, Policy, Shop
 from shop.base.paging import page_of
@@ -99,6 +100,7 @@ def policies(request: HttpRequest) -> HttpResponse:
             "visual": _months(one.values.get("visual_interval_months")),
             "disc": _months(one.values.get("disc_interval_months")),
             "own": _own(one.values.get("own_limit_per_mille")),
+            "good": f"{_percent(one.values.get('good_enough_per_mille') or GOOD_PER_MILLE)} % of the target",
             "who": str(one.act.person) if one.act.person else "Tarebook",
             "reason": one.act.reason,
         }
@@ -130,7 +132,11 @@ class PolicyNew(ActView):
         values = {name: latest.values.get(name) for name in POLICY_KEYS} if latest else {}
         values["month_rule"] = values.get("month_rule") or BY_THE_RULES
         own = latest.values.get("own_limit_per_mille") if latest else None
-        return values | {"effective_from": clock.today(self.shop), "own_percent": _percent(own) if own else None}
+        good = latest.values.get("good_enough_per_mille") if latest else None
+        return values | {
+            "effective_from": clock.today(self.shop), "own_percent": _percent(own) if own else None,
+            "good_percent": _percent(good) if good else None,
+        }  # fmt: skip
 
     def act(self, form: Any, person: User, key: uuid.UUID) -> str:
         typed = form.cleaned_data
@@ -139,6 +145,7 @@ class PolicyNew(ActView):
         if values["month_rule"] == BY_THE_RULES:
             values["month_rule"] = None
         values["own_limit_per_mille"] = int(typed["own_percent"] * 10) if typed["own_percent"] else None
+        values["good_enough_per_mille"] = int(typed["good_percent"] * 10) if typed["good_percent"] else None
         values["overlays"] = latest.values.get("overlays", []) if latest else []  # no page changes them yet
         services.decide_policy(
             person=person, key=key, effective_from=typed["effective_from"], today=clock.today(self.shop),

@@ -28,6 +28,7 @@ BOOKS: tuple[tuple[str, tuple[tuple[str, str, str], ...]], ...] = (
             ("bottles:bottles", "Bottles", "the register of all bottles"),
             ("bottles:leaks", "Leak watch", "stored bottles that lose weight, and how soon a leak would show"),
             ("bottles:learning", "Learning", "forecasts against the scale, and what the shop's own refills tell"),
+            ("bottles:plan", "Fill plan", "today's fills in their order, promises, and the last day to order"),
             ("bottles:scales", "Scales", "their resolution, error and checks"),
             ("bottles:stations", "Filling stations", "what hangs on each"),
             ("bottles:stock_take", "Stock-take", "every bottle that is in, and when it was weighed"),

@@ -81,7 +81,7 @@ def test_a_policy_holds_from_its_day_and_the_older_one_stays(post: Callable[...,
     assert second is not None
     assert second.values == {
         "month_rule": "from first day", "visual_interval_months": 12, "disc_interval_months": None,
-        "own_limit_per_mille": 975, "overlays": [],
+        "own_limit_per_mille": 975, "good_enough_per_mille": None, "overlays": [],
     }  # fmt: skip
     assert (second.act.person, second.act.reason) == (manager, "the insurer asks for it")
     first.refresh_from_db()

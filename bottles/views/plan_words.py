@@ -1,0 +1,214 @@
+"""A plan as the desk reads it: clock times, weights in the person's own units, sentences."""
+
+from __future__ import annotations
+
+from datetime import date, datetime, timedelta
+from typing import Any
+
+from django.urls import reverse
+from django.utils.safestring import mark_safe
+
+from bottles.models import DayPlanResult
+from bottles.views.reason_rows import in_own_units
+from bottles.views.refill_words import RefillWords
+from shop.base import clock
+from shop.base.models import Shop
+from shop.charts.model import Axis, Chart, Series
+from shop.charts.svg import to_svg
+
+CAUSES = {
+    "refill.opened": "after the refill of {} was opened",
+    "refill.weighed": "after the refill of {}",
+    "refill.closed": "after the refill of {}",
+    "bottle.checked in": "after {} was checked in",
+    "bottle.moved": "after {} was moved",
+    "bottle.wanted": "after what {} waits for was changed",
+    "bottle.handed over": "after {} was handed over",
+}
+WHY = {
+    "no supply": "There is no supply bottle that can be counted on. Weigh one, or order.",
+    "no station": "There is no station with a scale. A manager sets one up.",
+    "too warm": (
+        "No supply bottle stands above it in pressure as warm as it is, and there's no freezer. Chill it, or use a fuller supply."
+    ),
+    "supply weak": "No supply bottle stands above it in pressure, chilled or not. Order.",
+    "no time": "The day's hours don't take it: hoses, people or the freezer are taken. Fill it tomorrow.",
+    "supply used": "What the others leave in the supply bottles doesn't go over. Order.",
+    "supply used, warm": "What the others leave in the supply bottles doesn't go over as warm as it is. Chill it, or order.",
+}
+
+
+class PlanWords:
+    """One result, told."""
+
+    def __init__(self, kept: DayPlanResult, words: RefillWords, shop: Shop) -> None:
+        self.kept, self.words, self.shop = kept, words, shop
+        self.told: dict[str, Any] = kept.result
+        self.zone = clock.zone(shop)
+        self.zero = datetime.fromisoformat(self.told["zero"])
+
+    def page(self) -> dict[str, Any]:
+        """Everything that the page shows of it."""
+        told = self.told
+        return {
+            "made": f"{self.kept.made_at.astimezone(self.zone):%H:%M}", "after": self._cause(), "counted": self._counted(),
+            "proven": self._proven(), "promises": self._promises(), "fills": [self._fill(one) for one in told["fills"]],
+            "unfilled": [self._unfilled(one) for one in told["unfilled"]],
+            "left_out": [
+                one | {"sentence": in_own_units(one["sentence"], self.words), "url": _of(one["bottle"])} for one in told["left_out"]
+            ],
+            "not_weighed": told["not_weighed"], "not_counted": [one | {"url": _of(one["code"])} for one in told["not_counted"]],
+            "sources": self._sources(), "empties": [self._empty(one) for one in told["empties"]], "order": self._order(),
+            "pumped": told["pumped"], "is_prior": told["is_prior"], "room": self.words.temperature(told["room_mk"]),
+            "colds": [
+                f"{cold['name']} at {self.words.temperature(cold['mk'])}, {cold['takes']} at once" for cold in told["colds"]
+            ],
+            "good_enough": f"{told['good_per_mille'] / 10:g} %", "warming": self._warming(),
+        }  # fmt: skip
+
+    def _at(self, seconds: int) -> str:
+        return f"{(self.zero + timedelta(seconds=seconds)).astimezone(self.zone):%H:%M}"
+
+    def _cause(self) -> str:
+        cause = self.told.get("cause", {})
+        return CAUSES.get(cause.get("why", ""), "").format(cause.get("bottle", ""))
+
+    def _counted(self) -> str:
+        told = self.told
+        if not told["count"]:
+            return "No bottle waits that may be filled."
+        said = f"{told['good']} of {told['count']} good enough"
+        most = min(told["most_good"], told["count"])
+        if told["good"] >= most:
+            return f"{said}; no plan can do more." if told["good"] < told["count"] else f"{said}."
+        return f"{said}; this is the best plan." if told["exact"] else f"{said}; no plan can do more than {most}."
+
+    def _proven(self) -> str:
+        told = self.told
+        if told["exact"]:
+            return f"Every order and every way of filling was looked at ({told['looked_at']} partial plans): no plan is better."
+        least = told["least_broken"]
+        kept = f"at least {least} must break" if least else "none of them need break"
+        return (
+            f"{told['looked_at']} partial plans were looked at and the best one taken. Of the promises {kept}, "
+            f"and no plan makes more than {told['most_good']} good enough; a better one than this may exist."
+        )
+
+    def _promises(self) -> list[dict[str, Any]]:
+        rows = [self._promise(one, filled=True) for one in self.told["fills"] if one["promised_s"] is not None]
+        rows += [self._promise(one, filled=False) for one in self.told["unfilled"] if one["promised_s"] is not None]
+        return sorted(rows, key=lambda row: (row["kind"] == "yes", row["promised_s"], row["code"]))
+
+    def _promise(self, one: dict[str, Any], *, filled: bool) -> dict[str, Any]:
+        breaks = []
+        if filled and one["late_s"]:
+            minutes = -(-one["late_s"] // 60)
+            breaks.append(f"{_minutes(minutes)} late")
+        if one["short_g"]:
+            breaks.append(f"{self.words.mass(one['short_g'])} short of good enough")
+        if not filled:
+            breaks.insert(0, "not filled today")
+        done = f"done {self._at(one['draws'][-1]['until_s'])}" if filled else ""
+        return {
+            "code": one["bottle"], "url": _of(one["bottle"]), "promised_s": one["promised_s"],
+            "promised": self._at(one["promised_s"]), "kind": "no" if breaks else "yes",
+            "word": "Will break" if breaks else "Kept", "how": ", ".join([part for part in (done, *breaks) if part]),
+        }  # fmt: skip
+
+    def _fill(self, one: dict[str, Any]) -> dict[str, Any]:
+        words, draws = self.words, one["draws"]
+        percent = round(100 * one["final_g"] / one["target_g"])
+        chill = ""
+        if one["chill_from_s"] is not None:
+            cold = self.told["colds"][one["place"]]
+            chill = (
+                f"Chill in {cold['name']} from {self._at(one['chill_from_s'])} to {self._at(one['chill_until_s'])}, "
+                f"to {words.temperature(one['start_mk'])}"
+            )
+        return {
+            "code": one["bottle"], "url": _of(one["bottle"]), "at": self._at(draws[0]["from_s"]),
+            "until": self._at(draws[-1]["until_s"]), "chill": chill,
+            "kind": "yes" if one["good"] else "after", "word": f"{percent} % of target",
+            "holds": f"{words.mass(one['final_g'])} of {words.mass(one['target_g'])}",
+            "draws": [
+                {
+                    "at": self._at(draw["from_s"]), "source": draw["source"], "station": self.told["stations"][draw["station"]],
+                    "moved": words.small(draw["moved_g"]), "changed": draw["changed"],
+                }
+                for draw in draws
+            ],
+        }  # fmt: skip
+
+    def _unfilled(self, one: dict[str, Any]) -> dict[str, Any]:
+        best = ""
+        if one["best_g"] > one["start_g"] and one["why"] not in ("no supply", "no station"):
+            best = f"Alone and first it would come to some {round(100 * one['best_g'] / one['target_g'])} % of its target."
+        return {"code": one["bottle"], "url": _of(one["bottle"]), "why": WHY[one["why"]], "best": best}
+
+    def _sources(self) -> dict[str, Any]:
+        """The supplies running down: a table of each draw, and the same as a chart."""
+        words, rows, lines = self.words, [], []
+        unit = words.units.mass if words.units.mass == "kg" else "lb"
+        size = 1000.0 if unit == "kg" else 453.59237
+        for one in self.told["sources"]:
+            rows.append([one["code"], "now", words.mass(one["net_g"]), words.pressure(one["pa"]), words.temperature(one["mk"])])
+            points: list[tuple[float, float]] = [(0.0, one["net_g"] / size)]
+            for filled in self.told["fills"]:
+                for draw in filled["draws"]:
+                    if draw["source"] == one["code"]:
+                        rows.append([
+                            one["code"], f"{self._at(draw['until_s'])}, after {filled['bottle']}", words.mass(draw["left_g"]),
+                            words.pressure(draw["left_pa"]), words.temperature(draw["left_mk"]),
+                        ])  # fmt: skip
+                        points.append((draw["until_s"] / 3600.0, draw["left_g"] / size))
+            lines.append(Series(one["code"], sorted(points), kind="step"))
+        drawn = [line for line in lines if len(line.points) > 1]
+        chart = Chart("Supply bottles running down", Axis("Hours from now", "h"), Axis("Nitrous", unit, low=0.0), drawn)
+        return {
+            "caption": "Supply bottles running down", "rows": rows,
+            "head": ["Supply bottle", "When", "Holds", "Gauge", "Temperature"],
+            "svg": mark_safe(to_svg(chart, id="plan-chart")) if drawn else "",
+        }  # fmt: skip
+
+    def _empty(self, one: dict[str, Any]) -> dict[str, Any]:
+        words = self.words
+        return {
+            "code": one["code"], "url": _of(one["code"]), "holds": words.mass(one["holds_g"]), "gauge": words.pressure(one["pa"]),
+            "could": [
+                f"{each['bottle']} at {words.temperature(each['mk'])} could draw {words.small(each['g'])}" for each in one["could"]
+            ],
+        }  # fmt: skip
+
+    def _order(self) -> dict[str, str]:
+        words, order = self.words, self.told["order"]
+        usable = f"{words.mass(order['usable_g'])} can still be drawn as liquid from the supply bottles on hand"
+        pace = order["pace"]
+        if pace is None:
+            return {"head": "No order day can be given", "how": f"{usable}. Too little was filled in recent weeks to tell a pace."}
+        told = f"{words.mass(pace['grams'], plus_minus_g=pace['error_g'])} an open day, from {pace['days']} open days"
+        if order["order_by"] is None:
+            return {"head": "No need to order yet", "how": f"{usable}. At {told}, it lasts for longer than a year."}
+        today = clock.today(self.shop)
+        by, likely, soonest = (date.fromisoformat(order[name]) for name in ("order_by", "lasts_until", "soonest"))
+        head = "Order today" if by <= today else f"Order by {by:%A} {by.day} {by:%b}"
+        until = f"{likely:%A} {likely.day} {likely:%b}"
+        early = "" if soonest == likely else f", at the soonest {soonest:%A} {soonest.day} {soonest:%b}"
+        lead = f"the supplier takes {order['lead_days']} days"
+        return {"head": head, "how": f"{usable}. At {told}, that lasts until {until}{early}; {lead}."}
+
+    def _warming(self) -> str:
+        hours = sorted(one["warming_s"] / 3600 for one in self.told["sources"])
+        if not hours:
+            return ""
+        return f"{hours[0]:.1f} h" if f"{hours[0]:.1f}" == f"{hours[-1]:.1f}" else f"{hours[0]:.1f} to {hours[-1]:.1f} h"
+
+
+def _of(code: str) -> str:
+    return reverse("bottles:bottle", args=[code])
+
+
+def _minutes(minutes: int) -> str:
+    if minutes < 90:
+        return f"{minutes} min"
+    hours, rest = divmod(minutes, 60)
+    return f"{hours} h {rest} min" if rest else f"{hours} h"

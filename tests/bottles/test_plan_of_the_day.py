@@ -1,0 +1,296 @@
+"""The day's fill plan: asked for at the desk, made anew as refills are logged, stopped by who asked."""
+
+from __future__ import annotations
+
+import re
+import uuid
+from datetime import UTC, datetime, timedelta
+from typing import Any
+
+import pytest
+from django.urls import reverse
+
+from bottles.models import DayPlan, DayPlanResult
+from bottles.services import custody, planning, refill_steps
+from bottles.services.plan_day import gather, wants_filling
+from shop.base import clock
+from shop.base.models import Act, Job, Place
+from tests import factories
+from tests.bottles.of_refill import Works, key
+
+pytestmark = pytest.mark.django_db
+
+NOW = datetime(2026, 3, 3, 15, 0, tzinfo=UTC)  # nine in the morning in Chicago
+INPUTS: dict[str, Any] = {
+    "people": 1, "fill_minutes": 15, "change_minutes": 5, "opens": "08:00", "closes": "18:00", "lead_days": 2,
+    "room_mk": 293_150, "room_typed": "20 °C", "supply_mk": 293_150, "supply_typed": "20 °C", "freezer_mk": None,
+    "freezer_typed": "", "freezer_takes": None,
+}  # fmt: skip
+
+
+@pytest.fixture
+def morning() -> Any:
+    with clock.pretend(NOW):
+        yield
+
+
+@pytest.fixture
+def works(morning: Any, shop: Any, front_desk: Any) -> Works:
+    made = Works(shop, front_desk)
+    Place.objects.create(code="FREEZER", name="Chest freezer", kind="freezer", coldest_mk=255_150, takes_at_once=3)
+    wants(made.bottle)
+    return made
+
+
+def wants(bottle: Any, promised: datetime | None = None, wanted: str = "refill") -> None:
+    factories.placed(bottle, "moved", wanted=wanted, promised_at=promised, happened_at=clock.now() - timedelta(minutes=30))
+    from bottles.models import Standing
+
+    Standing.objects.filter(bottle=bottle).update(waits=True)
+
+
+def plan(works: Works, **changes: Any) -> DayPlan:
+    return planning.ask_for_plan(key=key(), person=works.person, shop=works.shop, inputs=INPUTS | changes)
+
+
+def told(plan: DayPlan) -> dict[str, Any]:
+    found = DayPlanResult.objects.filter(plan=plan).order_by("-id").first()
+    assert found is not None
+    return found.result
+
+
+def typed(**changes: str) -> dict[str, str]:
+    return {
+        "form_key": str(uuid.uuid4()), "people": "1", "fill_minutes": "15", "change_minutes": "5", "opens": "08:00",
+        "closes": "18:00", "room": "68 F", "supply": "68 F", "lead_days": "2",
+    } | changes  # fmt: skip
+
+
+def test_a_small_day_is_planned_at_once(works: Works, client_of: Any) -> None:
+    client = client_of(works.person)
+    answer = client.post(reverse("bottles:plan_new"), typed())
+    assert answer.status_code == 302, answer.content.decode()
+    html = client.get(answer.url).content.decode()
+    assert "T-0412" in html and "S-07" in html and "Made at 09:00" in html
+    assert "1 of 1 good enough" in html
+    assert not Job.objects.filter(kind=planning.KIND).exists()
+
+
+def test_the_form_arriving_twice_makes_one_plan(works: Works, client_of: Any) -> None:
+    client, form = client_of(works.person), typed()
+    client.post(reverse("bottles:plan_new"), form)
+    client.post(reverse("bottles:plan_new"), form)
+    assert DayPlan.objects.count() == 1
+
+
+@pytest.mark.parametrize(
+    ("field", "value", "said"),
+    [("people", "0", "whole number, 1 to 20"), ("closes", "07:00", "Filling ends after it begins"),
+     ("room", "90 C", "between -40 °C and 52 °C"), ("opens", "soon", "time of day")],
+)  # fmt: skip
+def test_a_day_that_cannot_be_is_refused_with_a_sentence(works: Works, client_of: Any, field: str, value: str, said: str) -> None:
+    answer = client_of(works.person).post(reverse("bottles:plan_new"), typed(**{field: value}))
+    assert answer.status_code == 422 and said in answer.content.decode()
+    assert not DayPlan.objects.exists()
+
+
+def test_a_promise_that_breaks_says_by_how_much(works: Works, client_of: Any) -> None:
+    wants(works.bottle, NOW + timedelta(minutes=5))
+    result = told(plan(works))
+    assert result["broken"] == result["least_broken"] == 1
+    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
+    assert "Will break" in html and re.search(r"\d+ min late", html)
+
+
+def test_a_promise_for_tomorrow_presses_nobody_today(works: Works) -> None:
+    wants(works.bottle, NOW + timedelta(days=1))
+    assert all(fill["promised_s"] is None for fill in told(plan(works))["fills"])
+
+
+def test_what_must_not_be_filled_is_named_with_its_reason(works: Works, client_of: Any) -> None:
+    dented = works.bottle_to_fill("T-0500")
+    factories.ConditionFactory(bottle=dented, code="dent")
+    wants(dented)
+    result = told(plan(works))
+    assert [one["bottle"] for one in result["left_out"]] == ["T-0500"]
+    assert "T-0500" not in [fill["bottle"] for fill in result["fills"]]
+    assert "Must not be filled" in client_of(works.person).get(reverse("bottles:plan")).content.decode()
+
+
+def test_a_supply_bottle_that_nobody_weighed_is_not_counted_on(works: Works) -> None:
+    works.connected("S-09", net_g=None, last_held="nitrous")
+    result = told(plan(works))
+    assert [one["code"] for one in result["not_counted"]] == ["S-09"]
+    assert "Weigh it" in result["not_counted"][0]["why"]
+
+
+def test_a_bottle_that_waits_for_a_test_is_not_planned(works: Works) -> None:
+    wants(works.bottle, wanted="hydrostatic test")
+    assert told(plan(works))["count"] == 0
+    assert wants_filling("fill to its limit; the customer waits") and not wants_filling("weigh")
+
+
+def test_a_freezer_entered_for_the_plan_is_used_where_none_is_written_down(works: Works) -> None:
+    Place.objects.all().filter(kind="freezer").update(active=False)
+    assert told(plan(works))["colds"] == []
+    assert told(plan(works, freezer_mk=258_150, freezer_takes=2))["colds"][0]["takes"] == 2
+
+
+def test_grams_are_neither_made_nor_lost(works: Works) -> None:
+    wants(works.bottle_to_fill("T-0413", net_g=900))
+    result = told(plan(works))
+    came = sum(draw["moved_g"] + draw["line_g"] for fill in result["fills"] for draw in fill["draws"])
+    went = sum(source["net_g"] - source["end_g"] for source in result["sources"])
+    assert abs(came - went) <= 2 * len(result["fills"])
+
+
+def test_an_open_refill_holds_its_hose(works: Works) -> None:
+    works.open()
+    day = gather(works.shop, INPUTS).day
+    assert day.stations_free_s[0] > 0 and not day.bottles
+
+
+def test_the_plan_is_made_anew_after_each_refill_and_says_so(works: Works, client_of: Any, run_jobs: Any) -> None:
+    other = works.bottle_to_fill("T-0413")
+    wants(other)
+    plan(works)
+    refill = works.open()
+    assert Job.objects.filter(kind=planning.KIND).count() == 1
+    refill_steps.weigh_refill(key=key(), person=works.person, refill=refill, weight=works.weight(4_500), ended_by="by hand")
+    assert Job.objects.filter(kind=planning.KIND).count() == 2
+    run_jobs()
+    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
+    assert "after the refill of T-0412" in html
+    assert DayPlanResult.objects.count() == 2  # the first job saw that a later one follows
+    result = told(DayPlan.objects.get())
+    assert [fill["bottle"] for fill in result["fills"]] == ["T-0413"]
+    assert DayPlanResult.objects.latest("id").after_act == Act.objects.latest("id").pk
+
+
+def test_checking_a_bottle_in_makes_the_plan_anew(works: Works, run_jobs: Any) -> None:
+    plan(works)
+    new = works.bottle_to_fill("T-0414")
+    factories.placed(new, "out")
+    custody.check_in(
+        key=key(), person=works.person, bottle=new, place=factories.PlaceFactory(), brought_by="Ostrander", wanted="refill"
+    )
+    run_jobs()
+    assert "T-0414" in {fill["bottle"] for fill in told(DayPlan.objects.get())["fills"]}
+
+
+def test_without_a_plan_for_today_nothing_is_asked_for(works: Works) -> None:
+    with clock.pretend(NOW - timedelta(days=1)):
+        plan(works)
+    works.open()
+    assert not Job.objects.filter(kind=planning.KIND).exists()
+
+
+def many(works: Works, count: int = 9) -> None:
+    for number in range(count):
+        wants(works.bottle_to_fill(f"T-{600 + number}"))
+
+
+def test_a_large_day_is_made_in_the_background_while_the_last_plan_stays(works: Works, client_of: Any, run_jobs: Any) -> None:
+    plan(works)
+    many(works)
+    plan(works)
+    client = client_of(works.person)
+    html = client.get(reverse("bottles:plan")).content.decode()
+    assert "waiting to start" in html and "Stop this" in html and "1 of 1 good enough" in html
+    run_jobs()
+    html = client.get(reverse("bottles:plan")).content.decode()
+    assert "of 10 good enough" in html and "Stop this" not in html
+
+
+def test_who_asked_for_a_plan_may_stop_it_and_nobody_else_but_a_manager(
+    works: Works, client_of: Any, make_user: Any, manager: Any
+) -> None:  # fmt: skip
+    plan(works)
+    many(works)
+    plan(works)
+    job = Job.objects.get(kind=planning.KIND)
+    stop = reverse("rooms:job_cancel", args=[job.pk])
+    other = client_of(make_user("front_desk", name="other"))
+    assert other.post(stop).status_code == 403
+    assert "Stop this" not in other.get(reverse("bottles:plan")).content.decode()
+    answer = client_of(works.person).post(stop)
+    assert answer.status_code == 302 and answer.url == reverse("bottles:plan")
+    html = client_of(works.person).get(answer.url).content.decode()
+    assert "cancelled" in html and "The last plan stays" in html and "1 of 1 good enough" in html
+
+
+def test_work_that_is_stopped_amid_its_computing_keeps_nothing(works: Works, monkeypatch: Any) -> None:
+    from bottles import tasks_plan
+    from shop.base import jobs
+
+    many(works)
+    plan(works)
+    job = Job.objects.get(kind=planning.KIND)
+    monkeypatch.setattr(tasks_plan, "_TOLD_EVERY", 0.0)
+    real = tasks_plan.gather
+
+    def gathered(*args: Any) -> Any:
+        jobs.cancel(Job.objects.get(pk=job.pk))
+        return real(*args)
+
+    monkeypatch.setattr(tasks_plan, "gather", gathered)
+    jobs.perform(job.pk)
+    job.refresh_from_db()
+    assert job.state == "cancelled" and not DayPlanResult.objects.exists()
+
+
+def test_gathering_a_day_asks_no_more_of_ten_bottles_than_of_two(works: Works, django_assert_max_num_queries: Any) -> None:
+    from django.db import connection
+    from django.test.utils import CaptureQueriesContext
+
+    many(works, 1)
+    with CaptureQueriesContext(connection) as few:
+        gather(works.shop, INPUTS)
+    many_more = [works.bottle_to_fill(f"T-{700 + number}") for number in range(8)]
+    for bottle in many_more:
+        wants(bottle)
+    works.connected("S-11")
+    with django_assert_max_num_queries(len(few.captured_queries)):
+        assert len(gather(works.shop, INPUTS).day.bottles) == 10
+
+
+def test_the_page_asks_no_more_for_a_long_plan(
+    works: Works, client_of: Any, run_jobs: Any, django_assert_max_num_queries: Any
+) -> None:  # fmt: skip
+    from django.db import connection
+    from django.test.utils import CaptureQueriesContext
+
+    client = client_of(works.person)
+    plan(works)
+    with CaptureQueriesContext(connection) as few:
+        client.get(reverse("bottles:plan"))
+    many(works)
+    plan(works)
+    run_jobs()
+    with django_assert_max_num_queries(len(few.captured_queries)):
+        client.get(reverse("bottles:plan"))
+
+
+def test_the_shops_good_enough_is_its_policy(works: Works) -> None:
+    assert gather(works.shop, INPUTS).day.good_per_mille == 950
+    factories.PolicyFactory(effective_from=NOW.date(), values={"good_enough_per_mille": 800})
+    assert gather(works.shop, INPUTS).day.good_per_mille == 800
+
+
+def test_the_manager_decides_what_is_good_enough(shop: Any, manager: Any, client_of: Any) -> None:
+    from shop.base.models import Policy
+
+    client = client_of(manager)
+    form = {
+        "form_key": str(uuid.uuid4()), "effective_from": clock.today(shop).isoformat(), "month_rule": "rules",
+        "good_percent": "92.5",
+    }  # fmt: skip
+    assert client.post(reverse("rooms:policy_new"), form).status_code == 302
+    assert Policy.objects.latest("id").values["good_enough_per_mille"] == 925
+    assert "92.5 % of the target" in client.get(reverse("rooms:policies")).content.decode()
+
+
+def test_the_counter_leads_the_desk_to_the_plan_and_not_the_bench(works: Works, technician: Any, client_of: Any) -> None:
+    address = f'href="{reverse("bottles:plan")}"'
+    assert address in client_of(works.person).get(reverse("rooms:counter")).content.decode()
+    assert address not in client_of(technician).get(reverse("rooms:counter")).content.decode()
