@@ -40,7 +40,7 @@ def limits_free_kg(source: Vessel, receiver: Vessel, line_volume_m3: float = 0.0
     """
     transfer = Transfer(source, receiver, line_volume_m3)
     mixed = transfer.mixed_free_kg()
-    wall = transfer.slow_free_kg() if transfer.path.after(0.0).liquid else mixed
+    wall = transfer.slow_free_kg() if transfer.path.gives_liquid else mixed
     return wall, mixed
 
 

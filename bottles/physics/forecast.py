@@ -22,7 +22,7 @@ from bottles.physics.transfer import (
 )
 from bottles.physics.vessel import Vessel
 from shop.physics.errors import OutOfRange
-from shop.physics.fluid import T_SATURATION_MAX
+from shop.physics.fluid import T_SATURATION_MAX, T_TRIPLE
 from shop.physics.saturation_table import saturated
 
 
@@ -170,16 +170,19 @@ def forecast(
         wall_condensing(transfer, limit_kg),
         held(transfer, limit_kg),
     )
-    if room > 0.0 and transfer.surplus(0.0) <= 0.0:
+    if room > 0.0 and transfer.mixed_free_kg() <= 0.0:
         codes.append("no_flow")
-    if limits[0].liquid_out and transfer.path.after(0.0).liquid:
+    gives_liquid = transfer.path.gives_liquid
+    if limits[0].liquid_out and gives_liquid:
         codes.append("liquid_runs_out")
     if room > 0.0 and "fill limit" in (limits[0].stopped_by, limits[2].stopped_by):
         codes.append("can_pass_limit")
-    if not transfer.path.after(0.0).liquid:
+    if not gives_liquid:
         codes.append("no_source_liquid")
     if _leaves_below_tube(source, limits):
         codes.append("left_below_tube")
+    if any(min(limit.source_final_k, limit.receiver_final_k) < T_TRIPLE + 0.01 for limit in limits):
+        codes.append("freezes")
     line = transfer.line_kg
     fills = None
     if least is not None and room > 0.0:

@@ -9,7 +9,8 @@ from bottles.physics.condensation import Condensation, band, between
 from bottles.physics.contents import SCALE_TOLERANCE, THERMOMETER_TOLERANCE
 from bottles.physics.receiver_start import OWN_VAPOUR, VENTED, Start
 from bottles.physics.transfer import Transfer, held
-from bottles.physics.vessel import HOTTEST, Vessel
+from bottles.physics.vessel import Vessel
+from shop.physics.errors import OutOfRange
 
 CONDENSATION = "condensation"
 MORE_REFILLS = "more refills"
@@ -119,7 +120,7 @@ def band_of(
     if quick <= 0.0 or room <= 0.0:
         return Band(0.0, 0.0, 0.0, (), None)
     parts = _reading_parts(transfer, min(quick, room), tolerances, unsure)
-    enters = transfer.path.after(0.0).liquid
+    enters = transfer.path.gives_liquid
     if enters:
         slow = transfer.slow_free_kg()
         likely = between(slow, quick, condensation.figure)
@@ -166,13 +167,11 @@ def _reading_parts(
     if slope <= 0.0:
         return []
     degree, gram = tolerances.thermometer_k, tolerances.scale_kg
-    cooler = -degree if source.temperature_k + degree > HOTTEST else degree
-    other = -degree if receiver.temperature_k + degree > HOTTEST else degree
     changed = (
-        ("source temperature", source.changed(temperature_k=source.temperature_k + cooler), receiver),
-        ("source weight", source.changed(net_kg=source.net_kg + gram), receiver),
-        ("receiver temperature", source, receiver.changed(temperature_k=receiver.temperature_k + other)),
-        (unsure[0], source, receiver.changed(net_kg=receiver.net_kg + unsure[1])),
+        ("source temperature", _warmer(source, degree), receiver),
+        ("source weight", _heavier(source, gram), receiver),
+        ("receiver temperature", source, _warmer(receiver, degree)),
+        (unsure[0], source, _heavier(receiver, unsure[1])),
     )
     parts = []
     for name, new_source, new_receiver in changed:
@@ -180,3 +179,19 @@ def _reading_parts(
         new = Transfer(new_source, new_receiver, transfer.line_volume_m3, path=path, like=transfer)
         parts.append((name, min(abs(new.surplus(moved) - there) / slope, moved)))
     return parts
+
+
+def _warmer(vessel: Vessel, degree: float) -> Vessel:
+    """The bottle a degree warmer, or colder where it can't be warmer."""
+    try:
+        return vessel.changed(temperature_k=vessel.temperature_k + degree)
+    except OutOfRange:
+        return vessel.changed(temperature_k=vessel.temperature_k - degree)
+
+
+def _heavier(vessel: Vessel, more_kg: float) -> Vessel:
+    """The bottle with more in it, or with less where it can't hold more."""
+    try:
+        return vessel.changed(net_kg=vessel.net_kg + more_kg)
+    except OutOfRange:
+        return vessel.changed(net_kg=max(vessel.net_kg - more_kg, 0.0))

@@ -33,6 +33,10 @@ SENTENCES: Mapping[str, str] = {
     "near_critical": (
         "Near and above 36.4 °C liquid and vapour become one and these figures are rough. Let the bottles cool first."
     ),
+    "freezes": (
+        "So much so fast would cool a bottle to -90.8 °C, where nitrous freezes: these figures end "
+        "there. Check the walls' weights; go slowly."
+    ),
     "condensation_prior": (
         "How much vapour condenses isn't known for this shop yet: the likely figure is midway "
         "between two limits (common practice, no source) until refills are logged."

@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from itertools import chain
 
 from bottles.physics.vessel import HEAT, Vessel, pressure_and_energy, settle
-from bottles.physics.wall_condensing import Mark, slow_filling
+from bottles.physics.wall_condensing import NO_SURPLUS, Mark, slow_filling
 from bottles.physics.withdrawal import Adiabatic
 from bottles.physics.withdrawal_stages import mass_without_reach
 from shop.physics.fluid import T_SATURATION_MAX
@@ -109,8 +109,9 @@ class Transfer:
         """Where both pressures meet."""
         most = self.capacity_kg
         start = self.surplus(0.0)
-        self._even_pa = _EVEN * self.path.after(self.line_kg).pressure_pa
-        if most <= 0.0 or start <= 0.0:
+        pressure = self.path.after(self.line_kg).pressure_pa
+        self._even_pa = _EVEN * pressure
+        if most <= 0.0 or start <= NO_SURPLUS * pressure:
             return 0.0
         closed, first = self._level()
         if closed is not None:
@@ -139,18 +140,17 @@ class Transfer:
         """Where to look for the end before the receiver is full, nearest first."""
         if first is not None:
             yield first
-        dry = self.path.dry_at_kg
+        dry = max(self.path.dry_out(), self.line_kg)
         share = 1.0 + self.source.volume_m3 / self.receiver.volume_m3
-        if dry is not None and self.line_kg < dry < self.line_kg + full:
+        if dry > self.line_kg + full:
+            return
+        if dry > self.line_kg:
             yield dry - self.line_kg
             start, share = self.surplus(dry - self.line_kg), 1.0
-        else:
-            dry = None if self.path.after(self.line_kg).liquid else self.line_kg
-        if dry is not None:
-            # Vapour alone from here on: its pressure falls a little faster than its mass.
-            given = self.path.after(dry)
-            left = self.source.net_kg - dry
-            yield dry - self.line_kg + 1.3 * start * left / (given.pressure_pa * share)
+        # Vapour alone from here on: its pressure falls a little faster than its mass.
+        given = self.path.after(dry)
+        left = self.source.net_kg - dry
+        yield dry - self.line_kg + 1.3 * start * left / (given.pressure_pa * share)
 
     def _surplus_or_even(self, moved_kg: float) -> float:
         """Surplus, none where it's too small to tell."""

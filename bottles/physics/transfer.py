@@ -124,7 +124,7 @@ def wall_condensing(transfer: Transfer, limit_kg: float) -> Outcome:
     if stopped == EQUAL and marks[-1].surplus_pa > 0.0 and moved >= marks[-1].moved_kg - 1e-12:
         dry = transfer.path.dry_out() - transfer.line_kg <= moved + 1e-9
         stopped = LIQUID_OUT if dry else EQUAL
-    elif stopped == NO_DIFFERENCE and marks[0].surplus_pa > 0.0:
+    elif stopped == NO_DIFFERENCE and transfer.mixed_free_kg() > 0.0:
         stopped = LIQUID_OUT
     after = next((mark for mark in marks if mark.moved_kg >= moved), marks[-1])
     before = marks[max(marks.index(after) - 1, 0)]

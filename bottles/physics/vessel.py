@@ -8,6 +8,7 @@ from shop.physics.errors import OutOfRange
 from shop.physics.fluid import P_MAX, T_MAX, T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.roots import find_root
 from shop.physics.saturation_table import saturation_table, to_s, to_t
+from shop.physics.states import RHO_CRITICAL
 
 WALL_HEAT = {"aluminium": 896.0, "steel": 470.0}  # J/kg/K
 COLDEST = 233.15  # K: -40 °C
@@ -144,8 +145,8 @@ def pressure_and_energy(volume: float, mass: float, temperature: float, air: flo
         space = volume
         if quality is not None:
             space = quality * mass / fluid.saturation(min(temperature, T_SATURATION_MAX))[2]
-        elif mass / volume > 452.0:
-            space = 0.0
+        elif temperature <= T_SATURATION_MAX and mass / volume > RHO_CRITICAL:
+            space = 0.0  # full of liquid; above the critical point a fluid takes air in
         pressure += air * temperature / max(space, 1e-6 * volume)
     return pressure, mass * energy
 

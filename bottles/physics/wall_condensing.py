@@ -17,6 +17,7 @@ from shop.physics.fluid import P_CRITICAL, P_TRIPLE, T_SATURATION_MAX, T_TRIPLE,
 from shop.physics.saturation_table import Side, saturated, saturation_table, to_s, to_t
 
 _STEPS = 20  # of the largest size, over what can go in
+NO_SURPLUS = 1e-8  # of a pressure: even, as far as two ways to compute it agree
 _FIRST = 0.004  # the first step, as a share of what can go in
 
 
@@ -138,7 +139,7 @@ def slow_filling(source: Adiabatic, receiver: Vessel, line_kg: float, most_kg: f
     surplus = given.pressure_pa - above.pressure
     marks = [Mark(0.0, above.temperature, above.pressure, surplus)]
     end = min(most_kg, source.dry_out() - line_kg)
-    if surplus <= 0.0 or end <= 0.0:
+    if surplus <= NO_SURPLUS * given.pressure_pa or end <= 0.0:
         return marks
     scale = min(end, receiver.volume_m3 * 900.0)
     step = _FIRST * scale

@@ -18,6 +18,8 @@ from shop.physics.fluid import T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.saturation_table import saturated, to_s
 from shop.physics.states import RHO_CRITICAL
 
+_STAGES = 12  # more than any path has
+
 
 @dataclass(frozen=True, slots=True)
 class Given:
@@ -63,7 +65,7 @@ class Adiabatic:
             pressure_and_energy(self._v, vessel.net_kg, vessel.temperature_k)[1] + self._c * vessel.temperature_k
         )
         self._stages: list[TwoPhase | OnePhase] = []
-        self.dry_at_kg: float | None = None  # mass given when no liquid could be drawn any more, once known
+        self._dry: float | None = None
         self._last = (-1.0, Given(0.0, 0.0, 0.0, 0.0, False))
         self._open(vessel.net_kg, vessel.temperature_k, None)
 
@@ -72,7 +74,7 @@ class Adiabatic:
         if self._last[0] == given_kg:
             return self._last[1]
         left = max(self._vessel.net_kg - given_kg, self._vessel.net_kg * 1e-6)
-        for _ in range(12):
+        for _ in range(_STAGES):
             stage = self._stages[-1]
             if stage.reaches(left):
                 break
@@ -89,26 +91,40 @@ class Adiabatic:
         return answer
 
     def dry_out(self) -> float:
-        """Mass given when no liquid can be drawn any more; nothing where none can at the start [kg]."""
-        if self.dry_at_kg is None:
-            if not self.after(0.0).liquid:
-                self.dry_at_kg = 0.0
-            for index in range(12):
-                if self.dry_at_kg is not None:
+        """Mass given when no liquid can be drawn any more; nothing where none ever can [kg]."""
+        if self._dry is None:
+            self._dry = self._find_dry()
+        return self._dry
+
+    @property
+    def gives_liquid(self) -> bool:
+        """Say whether liquid is what it gives, now or, as a dense fluid that cools, before long."""
+        return self._vessel.liquid_pickup and self.dry_out() > 0.0
+
+    def _find_dry(self) -> float:
+        """Follow the stages to the end of the one that gives liquid, or a fluid as dense."""
+        vessel, given = self._vessel, 0.0
+        for index in range(_STAGES):
+            stage = self._stages[index]
+            if isinstance(stage, TwoPhase):
+                if stage.liquid:
+                    return vessel.net_kg - stage.end[0]
+                if not stage.rises:
                     break
-                stage = self._stages[index]
-                mass = stage.end[0]
-                if mass <= 0.0 or (isinstance(stage, TwoPhase) and not stage.liquid and not stage.rises):
-                    # It never comes to an end, or mist that lies below all that is drawn.
-                    self.dry_at_kg = self._vessel.net_kg - mass
-                elif index + 1 == len(self._stages):
-                    self._open_next(stage)
-        return self.dry_at_kg or 0.0
+            elif not stage.thin:
+                given = vessel.net_kg - max(stage.end[0], RHO_CRITICAL * vessel.volume_m3)
+            elif index or vessel.temperature_k < T_SATURATION_MAX - 1.0:
+                break
+            if stage.end[0] <= 0.0:
+                break
+            if index + 1 == len(self._stages):
+                self._open_next(stage)
+        return given
 
     def given_at(self, temperature_k: float) -> float | None:
         """Mass given when two phases have cooled to a temperature; None where there's no such moment [kg]."""
-        s, index = to_s(temperature_k), 0
-        while index < 12:
+        s = to_s(temperature_k)
+        for index in range(_STAGES):
             stage = self._stages[index]
             if isinstance(stage, TwoPhase):
                 left = stage.left_at(s)
@@ -116,19 +132,15 @@ class Adiabatic:
                     return self._vessel.net_kg - left
             elif stage.thin:
                 return None
-            index += 1
-            if index == len(self._stages):
-                if stage.end[0] <= 0.0:
-                    return None
+            if stage.end[0] <= 0.0:
+                return None
+            if index + 1 == len(self._stages):
                 self._open_next(stage)
         return None
 
     def _open_next(self, stage: TwoPhase | OnePhase) -> None:
         """Begin what follows the last stage."""
-        mass, temperature = stage.end
-        if isinstance(stage, TwoPhase) and stage.liquid and self.dry_at_kg is None:
-            self.dry_at_kg = self._vessel.net_kg - mass
-        self._open(mass, temperature, stage)
+        self._open(*stage.end, stage)
 
     def _open(self, mass: float, temperature: float, before: TwoPhase | OnePhase | None) -> None:
         """Begin the stage that follows from a state and from how it was reached."""
