@@ -124,8 +124,11 @@ def test_what_a_dip_tube_leaves_is_not_given():
 
 
 def test_an_evacuated_bottle_without_a_wall_is_answered_too():
-    told = answer("transfer", receiver_net="0kg", receiver_wall_mass="0kg", receiver_temperature="36C")
-    assert told["mixed"]["moved_kg"] > 0 and told["warmest_receiver_c"] is not None
+    nothing = {"receiver_net": "0kg", "receiver_wall_mass": "0kg", "receiver_temperature": "36C"}
+    free, full = answer("transfer", **nothing), answer("transfer", limit="2kg", **nothing)
+    # With nothing in it to be warm, no start is too warm: only the limit decides.
+    assert (free["mixed"]["stopped_by"], free["warmest_receiver_c"]) == ("pressures equal", None)
+    assert (full["mixed"]["stopped_by"], full["warmest_receiver_c"]) == ("fill limit", pytest.approx(52.0))
 
 
 def test_an_overfull_supply_is_told():
