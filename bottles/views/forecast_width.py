@@ -9,7 +9,7 @@ from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, WEIGHED
 from bottles.services.forecasting import TAKEN, Answer
 from bottles.views.refill_words import RefillWords
 
-HEAD = ["From", "Alone", "How well it's known"]
+HEAD = ["From", "By itself", "How well it's known"]
 SUPPLY_WEIGHT, START = "source weight", "receiver start"
 PARTS = {
     CONDENSATION: "how much vapour condenses",

@@ -100,7 +100,8 @@ def _row(same: list[Remedy], words: RefillWords) -> dict[str, Any]:
         to = colder(first.temperature_k, words)
         what = f"Warm the supply bottle to {to} by a listed device, where local code permits it: {gives}"
     else:
-        what = f"{DO[first.kind]}: {FULL[first.case] if first.fills else _more(first, words)}"
+        full = "full in the end" if first.kind == WAIT else FULL[first.case]
+        what = f"{DO[first.kind]}: {full if first.fills else _more(first, words)}"
         if first.cost_kg > 0.0:
             what += f"; {words.small(ceil(first.cost_kg * 1000))} of nitrous is lost"
     return {"what": what + ".", "caution": first.caution, "times": []}

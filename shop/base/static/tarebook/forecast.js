@@ -1,5 +1,5 @@
 "use strict";
-/* A late answer never takes the place of a newer one: each question carries its number. */
+/* A late answer never takes the place of a newer one: each question carries its number. Folds that were open stay so. */
 
 (() => {
   const HEADER = "X-Live-Number";
@@ -16,6 +16,14 @@
     if (!number || event.detail.xhr.status >= 400) return;
     if (number < shown) event.detail.shouldSwap = false;
     else shown = number;
+  });
+
+  let open = [];
+  document.addEventListener("htmx:beforeSwap", () => {
+    open = [...document.querySelectorAll("[data-keeps][open]")].map((fold) => fold.id);
+  });
+  document.addEventListener("htmx:afterSwap", () => {
+    for (const id of open) document.getElementById(id)?.setAttribute("open", "");
   });
 
   // A fold that is dear to fill is asked for when it's opened, and again once the readings rest.
