@@ -10,46 +10,15 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from bottles.physics.condensation import between
 from bottles.physics.hose import effective_area, line_flow
 from bottles.physics.likely_course import likely_course
-from bottles.physics.receiver_start import Start, start_vessel
 from bottles.physics.transfer import Transfer, held, mixed, wall_condensing
 from bottles.physics.transient import Setting, transient
 from bottles.physics.transient_zones import Around, Filling
-from bottles.physics.vessel import Vessel, pressure_and_energy, wall_heat
+from bottles.physics.vessel import Vessel, pressure_and_energy
 from shop.physics.errors import OutOfRange, PhysicsError
 from shop.physics.fluid import engine
-
-LIMIT = 0.68 * 6.8  # kg
-ABOVE = 5.5  # kg: a limit that most transfers don't reach
-
-
-def supply(net=19.72, celsius=20.0, **other):
-    return Vessel(0.029, wall_heat("steel", 32.0), net, celsius + 273.15, **other)
-
-
-def bottle(celsius=0.0, net=None, kind=None):
-    return start_vessel(
-        volume_m3=0.0068, wall_j_k=wall_heat("aluminium", 5.9), temperature_k=celsius + 273.15,
-        start=Start(kind or ("vented" if net is None else "weighed"), net),
-    )  # fmt: skip
-
-
-CASES = {
-    "chilled": (supply(), bottle(-20)),
-    "level": (supply(), bottle(20)),
-    "liquid runs out": (supply(6.9), bottle(0)),
-    "vapour alone": (supply(3.0), bottle(-10)),
-    "through the critical point": (supply(19.72, 44.0), bottle(10)),
-    "full of liquid at the start": (supply(19.72, 33.0), bottle(15)),
-    "no dip tube": (supply(12.0, liquid_pickup=False), bottle(-20)),
-    "part filled": (supply(8.0, 10.0), bottle(5, net=1.4)),
-    "warmer": (supply(19.0, 0.0), bottle(20)),
-    "air": (supply(), bottle(10, kind="air")),
-}
-QUICK = Setting(exchange_w_k=inf)
-SLOW = Setting(exchange_w_k=0.0)
+from tests.physics.courses import ABOVE, CASES, LIMIT, QUICK, SLOW, bottle, supply
 
 
 def kept(source, receiver):
@@ -265,49 +234,6 @@ def test_time_that_is_up_ends_it():
     assert 0.0 < course.moved_kg[-1] < LIMIT
 
 
-@pytest.mark.parametrize("figure", [0.0, 0.3, 0.5, 1.0])
-@pytest.mark.parametrize("name", CASES)
-def test_the_likely_course_ends_at_the_likely_mass(name, figure):
-    transfer = Transfer(*CASES[name])
-    quick, slow = transfer.mixed_free_kg(), transfer.slow_free_kg()
-    ends = quick if not transfer.path.after(0.0).liquid else between(slow, quick, figure)
-    room = ABOVE - transfer.receiver.net_kg
-    course = likely_course(transfer, ABOVE, figure, effective_area())
-    assert course.moved_kg[-1] == pytest.approx(min(ends, room), rel=1e-9)
-    assert (course.stopped_by == "fill limit") == (room <= ends)
-    assert np.all(np.diff(course.seconds) > 0.0)
-    assert np.all(course.receiver_pa >= 0.0)
-    if course.stopped_by == "pressures equal":
-        assert course.receiver_pa[-1] == pytest.approx(course.source_pa[-1], rel=1e-3)
-
-
-@pytest.mark.parametrize("name", ["chilled", "level", "through the critical point", "liquid runs out"])
-@pytest.mark.parametrize(("figure", "setting"), [(0.0, SLOW), (1.0, QUICK)])
-def test_the_likely_course_takes_as_long_as_the_detailed_one_at_its_ends(name, figure, setting):
-    transfer = Transfer(*CASES[name])
-    likely, detailed = likely_course(transfer, LIMIT, figure, effective_area()), transient(transfer, LIMIT, setting)
-    assert likely.seconds_to_90 == pytest.approx(detailed.seconds_to_90, rel=0.03)
-
-
-def test_a_course_becomes_words_and_numbers():
-    told = transient(Transfer(supply(), bottle(-20)), LIMIT, SLOW).as_dict()
-    assert told["minutes_to_limit"] == pytest.approx(told["seconds"][-1] / 60.0)
-    assert told["moved_kg"][-1] == pytest.approx(LIMIT - bottle(-20).net_kg)
-    assert told["receiver_liquid_c"][-1] < told["receiver_c"][-1]
-    likely = likely_course(Transfer(supply(), bottle(-10)), LIMIT, 0.5, effective_area()).as_dict()
-    assert likely["receiver_liquid_c"] is None
-    assert likely["source_bar"][0] == pytest.approx(50.53, rel=1e-3)
-
-
-@pytest.mark.parametrize("limit", [1.0, LIMIT])
-def test_where_nothing_moves_a_course_is_one_moment(limit):
-    transfer = Transfer(supply(19.0, 10.0), bottle(25.0, net=3.0))
-    for course in (transient(transfer, limit), likely_course(transfer, limit, 0.5, effective_area())):
-        assert course.moved_kg.tolist() == [0.0]
-        assert course.stopped_by == ("fill limit" if limit == 1.0 else "no pressure difference")
-        assert course.seconds_to_90 is None
-
-
 @pytest.mark.parametrize("name", ["level", "liquid runs out", "through the critical point", "no dip tube"])
 def test_next_to_no_leak_is_no_leak(name):
     source, receiver = CASES[name]
@@ -330,17 +256,6 @@ def test_what_the_dip_tube_does_not_reach_leaves_as_vapour_with_a_leak_too():
         assert course.liquid_out
         assert course.moved_kg[-1] < transient(Transfer(supply(8.0), bottle(-20)), ABOVE, QUICK).moved_kg[-1]
     assert courses[0].moved_kg[-1] == pytest.approx(courses[1].moved_kg[-1], rel=2e-3, abs=2e-3)
-
-
-@pytest.mark.parametrize("name", ["chilled", "vapour alone"])
-def test_a_course_says_between_which_times_it_lies(name):
-    transfer = Transfer(*CASES[name])
-    for course in (transient(transfer, LIMIT), likely_course(transfer, LIMIT, 0.5, effective_area())):
-        shortest, longest = course.seconds_to_90_between
-        assert shortest <= course.seconds_to_90 / 1.29
-        assert longest >= course.seconds_to_90 / 0.91
-        # Boiling in equilibrium and not boiling at all lie further apart than openings scatter.
-        assert (longest > 1.2 * course.seconds_to_90) == (name == "chilled")
 
 
 TEMPERATURES = st.floats(-40.0, 52.0) | st.sampled_from([36.37, 36.3707, 36.4])
