@@ -26,7 +26,9 @@ def examples() -> list[str]:
 def test_every_example_of_the_readme_runs(example, tmp_path):
     python, manage, name, *options = shlex.split(example)
     assert (python, manage) == (".venv/bin/python", "manage.py")
+    before = set(MANAGE.parent.iterdir())
     told = in_a_process(tmp_path, name, *options)
+    assert MANAGE.parent / ".tarebook" not in set(MANAGE.parent.iterdir()) - before
     assert (told.returncode, told.stderr) == (0, "")
     assert set(read(told.stdout)) - {"expected_bar"} == KEYS[name]
     assert list(tmp_path.iterdir()) == []
