@@ -11,21 +11,20 @@ from django.shortcuts import render
 from django.utils.safestring import mark_safe
 
 from bottles.physics.fitting_words import WAYS, litres
+from bottles.rules.agreement import agreement
 from bottles.rules.learning import size_of, size_span, way_of
 from bottles.selectors.learning import COMPARED, WINDOW, closed_window, latest_figures, went
+from bottles.views.learning_far import odd
+from bottles.views.learning_figures import fitted_rows, left_out_words
 from bottles.views.learning_words import (
     GROUP_HEAD,
     ROW_HEAD,
     Placed,
     figures,
-    fitted_rows,
     groups,
-    left_out_words,
-    odd,
     others_words,
     placed,
     row_words,
-    summed,
 )
 from bottles.views.refill_words import RefillWords, refill_words
 from shop.base import clock
@@ -59,7 +58,7 @@ def learning(request: HttpRequest) -> HttpResponse:
         "figures": fitted_rows(known, shop), "left_out": left_out_words(whole),
         "through": whole.act.recorded_at if whole else None,
         "others": others_words(others), "others_count": sum(others.values()),
-        "overall": dict(zip(("count", "bias", "spread", "inside"), figures(summed(compared), words), strict=True)),
+        "overall": dict(zip(("count", "bias", "spread", "inside"), figures(agreement([row.compared for row in compared]), words), strict=True)),
         "groups": _groups(compared, words, manager=manager),
         "far": [
             odd(row, same_side[row.refill.bottle_id, row.span.off_g > 0] - 1, words, shop) for row in far[:MOST_ODD]

@@ -1,4 +1,4 @@
-"""Forecast against the scale in words: rows, groups, the fitted figures, refills far outside their band."""
+"""Forecast against the scale in words: which refills are compared, groups of them, rows of the table."""
 
 from __future__ import annotations
 
@@ -9,16 +9,11 @@ from typing import Any
 
 from django.urls import reverse
 
-from bottles.models import Fit, Forecast, Refill
-from bottles.physics.condensation import PRIOR
-from bottles.physics.fitting import ENOUGH
-from bottles.physics.fitting_words import WAYS, litres, why_untold
+from bottles.models import Forecast, Refill
 from bottles.rules.agreement import Agreement, Compared, agreement
-from bottles.rules.learning import WHY, WHY_NOT_COMPARED, not_compared, size_span
-from bottles.rules.outliers import Span, Traces, Typed, causes
-from bottles.selectors.learning import Figures, Scope, Went
-from bottles.services.forecasting import BOOKS, tolerance_k
-from bottles.services.refill_books import flows_of
+from bottles.rules.learning import WHY_NOT_COMPARED, not_compared
+from bottles.rules.outliers import Span
+from bottles.selectors.learning import Went
 from bottles.views.refill_words import RefillWords
 from shop.base import clock
 from shop.base.models import Shop
@@ -60,7 +55,7 @@ def placed(rows: Iterable[Went]) -> tuple[list[Placed], Counter[str]]:
         if why:
             others[why] += 1
             continue
-        forecast = _forecast(row)
+        forecast = forecast_of(row)
         likely = forecast.likely_g or 0
         came, at_limit = row.came_g, row.refill.ended_by == "limit"
         room = _room(row)
@@ -75,11 +70,6 @@ def others_words(others: Counter[str], words: dict[str, str] | None = None) -> l
     """Counts with their words, the most first."""
     named = words or WHY_NOT_COMPARED
     return [(count, named[code]) for code, count in sorted(others.items(), key=lambda pair: (-pair[1], pair[0]))]
-
-
-def summed(rows: Sequence[Placed]) -> Agreement | None:
-    """All of them as one group."""
-    return agreement([row.compared for row in rows])
 
 
 def groups(rows: Sequence[Placed], by: Callable[[Placed], Any], name: Callable[[Any], str], words: RefillWords) -> list[list[str]]:
@@ -125,57 +115,6 @@ def position(span: Span) -> str:
     return f"far {side}" if span.far else side
 
 
-def odd(row: Placed, same_side: int, words: RefillWords, shop: Shop) -> dict[str, Any]:
-    """A refill far outside its band, with its likely causes."""
-    shown = row_words(row, words, shop)
-    cells = shown["cells"]
-    return {
-        "url": shown["url"], "code": row.refill.bottle.code, "when": cells[0], "source": row.source,
-        "difference": f"{small(abs(row.span.off_g), words)} {'less' if row.span.off_g < 0 else 'more'} than likely",
-        "forecast": words.span(row.span.low_g, row.span.high_g), "came": cells[4],
-        "causes": [{"sentence": one.sentence, "strength": one.strength} for one in causes(row.span, traces(row, same_side))],
-    }  # fmt: skip
-
-
-def traces(row: Placed, same_side: int) -> Traces:
-    """What else is known of a refill that went far out of its band."""
-    course, refill = row.went.course, row.refill
-    before, last, forecast = course.before, course.reads[-1], _forecast(row.went)
-    assert before is not None
-    told, readings = forecast.result, forecast.readings
-    flows = {flow.kind: flow.grams for flow in flows_of(course)}
-    taken = {name: readings.get(name, "wall") for name in ("taken", "bottle_taken")}
-    worth = {part["from"]: float(part["kg"]) for part in told.get("width", ())}
-    degrees = max(tolerance_k(refill.station, each) for each in taken.values())
-    ends = [told.get(name) or {} for name in ("mixed", "wall_condensing")]
-    left = told.get("source_left_kg")
-    return Traces(
-        before=Typed(before.typed, before.gross_g), after=Typed(last.typed, last.gross_g),
-        tares_differ=before.tare_id != last.tare_id, missing_g=flows.get("missing", 0), found_g=flows.get("found beyond", 0),
-        supply_by_books=told.get("source_origin") == BOOKS, supply_left_g=None if left is None else round(left * 1000),
-        supply_held_g=told.get("source_g"), liquid_out=any(end.get("liquid_out") for end in ends),
-        not_vented="not_vented" in told.get("notes", ()), start=readings.get("start", "weighed"),
-        supply_in_air=taken["taken"] == "air", bottle_in_air=taken["bottle_taken"] == "air",
-        supply_kg_k=worth.get("source temperature", 0.0) / degrees, bottle_kg_k=worth.get("receiver temperature", 0.0) / degrees,
-        minutes=int((refill.closed_at - refill.opened_at).total_seconds() // 60) if refill.closed_at else 0,
-        same_bottle_off=same_side,
-    )  # fmt: skip
-
-
-def fitted_rows(known: Figures, shop: Shop) -> list[dict[str, Any]]:
-    """The condensation figures: the ways, their sizes, then where the way isn't known; priors said as such."""
-    wanted: list[Scope] = [("dip", None), ("spray", None), ("", None)]
-    wanted += [scope for scope in known.rows if scope not in wanted and scope[0]]
-    order = {"dip": 0, "spray": 1, "": 2}
-    wanted.sort(key=lambda scope: (order[scope[0]], scope[1] or 0))
-    return [_fitted(scope[0], scope[1], known.rows.get(scope), known, shop) for scope in wanted]
-
-
-def left_out_words(row: Fit | None) -> list[tuple[int, str]]:
-    """Why refills tell nothing of condensation, counted."""
-    return others_words(Counter(row.left_out), dict(WHY)) if row else []
-
-
 def signed(grams: float, words: RefillWords) -> str:
     """A difference with its sign."""
     shown = small(abs(grams), words)
@@ -191,38 +130,13 @@ def small(grams: float, words: RefillWords) -> str:
     return words.small(round(grams))
 
 
-def _fitted(way: str, size: int | None, row: Fit | None, known: Figures, shop: Shop) -> dict[str, Any]:
-    """One line of the figures."""
-    informative, bounds = (row.informative, row.bounds) if row else (0, 0)
-    holds = known.row_for(way, size)
-    own = row is not None and holds is row
-    figure = (row.figure_milli / 1000, row.deviation_milli / 1000) if row and own else _of(holds)
-    if own and row is not None:
-        since = f"{row.act.recorded_at.astimezone(clock.zone(shop)):%Y-%m-%d}"
-        said = ""
-    else:
-        since, said = "", why_untold(informative, bounds)
-        if holds is not None:
-            said = f"Too few of its own: that of {'all its sizes' if size else 'the whole shop'} holds."
-    return {
-        "name": litres(size_span(size)) if size else WAYS[way].capitalize(), "inner": bool(size),
-        "figure": f"{figure[0]:.2f} ±{2 * figure[1]:.2f}",
-        "origin": "fitted" if own else "taken over" if holds is not None else f"prior, {PRIOR.origin}",
-        "since": since, "informative": informative, "bounds": bounds, "said": said,
-        "enough": informative >= ENOUGH,
-    }  # fmt: skip
-
-
-def _of(row: Fit | None) -> tuple[float, float]:
-    return (row.figure_milli / 1000, row.deviation_milli / 1000) if row else (PRIOR.figure, PRIOR.deviation)
-
-
 def _room(row: Went) -> int:
     before = row.course.before
     return row.refill.target_g - max(0, before.net_g) if before else 0
 
 
-def _forecast(row: Went) -> Forecast:
+def forecast_of(row: Went) -> Forecast:
+    """The forecast of a refill that is compared."""
     forecast = row.course.draws[0].forecast
     assert forecast is not None  # `not_compared` lets no other through
     return forecast

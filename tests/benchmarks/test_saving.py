@@ -28,7 +28,8 @@ from tests.bottles.of_refill import Works, key
 pytestmark = [pytest.mark.benchmark, pytest.mark.django_db(transaction=True)]
 
 ROUNDS = 11
-MOST_STATEMENTS = {"opened": 31, "weighed": 27, "closed": 34}  # the first closing opens the account of line losses: four
+# The first closing opens the account of line losses (four) and asks for a fit (seven; one while a fit waits already).
+MOST_STATEMENTS = {"opened": 31, "weighed": 27, "closed": 41}
 
 
 def test_a_saved_refill_is_worth_few_bare_transactions(shop: Any, front_desk: Any, tell: Told) -> None:
