@@ -128,18 +128,20 @@ def _inputs(asked: Asked, answer: Answer, words: RefillWords) -> list[dict[str, 
         ("Bottle to fill", f"{asked.bottle.code}, {words.temperature(readings.bottle_temperature.stored)}"),
         ("holds", words.mass(answer.start_g)),
         ("Target", words.mass(answer.target_g)),
-        ("Condensation figure", f"{condensation.figure:.2f} ±{2 * condensation.deviation:.2f}"),
+        ("Condensation figure", f"{condensation.figure:.2f} ±{2 * condensation.deviation:.2f}, {condensation.origin}"),
     ]
     return [{"name": name, "value": value} for name, value in rows]
 
 
 def _method(answer: Answer) -> str:
+    figure = answer.transferred.condensation
+    known = f"How much condenses is fitted from {figure.origin}."
+    if figure.is_prior:
+        known = "How much condenses is midway between the two until the shop's own refills tell (common practice, no source)."
     return (
         "Two bottles, each a volume with its wall; mass and energy conserved; between the transfer that mixes at once (quick) "
-        "and the one in which vapour condenses on the wall alone (slow to condense)."
-        + (" How much condenses is midway between the two until the shop's own refills tell (common practice, no source)."
-           if answer.transferred.condensation.is_prior else "")
-    )  # fmt: skip
+        f"and the one in which vapour condenses on the wall alone (slow to condense). {known}"
+    )
 
 
 def held_words(answer: Answer, words: RefillWords) -> str:

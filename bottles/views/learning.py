@@ -53,12 +53,13 @@ def learning(request: HttpRequest) -> HttpResponse:
     page = page_of(request, compared)
     far = [row for row in compared if row.span.far]
     same_side = Counter((row.refill.bottle_id, row.span.off_g > 0) for row in compared if not row.span.inside)
+    overall = figures(agreement([row.compared for row in compared]), words)
     context: dict[str, Any] = {
         "window": WINDOW, "most": COMPARED, "at_most": len(rows) >= COMPARED, "count": len(rows), "compared": len(compared),
         "figures": fitted_rows(known, shop), "left_out": left_out_words(whole),
         "through": whole.act.recorded_at if whole else None,
         "others": others_words(others), "others_count": sum(others.values()),
-        "overall": dict(zip(("count", "bias", "spread", "inside"), figures(agreement([row.compared for row in compared]), words), strict=True)),
+        "overall": dict(zip(("count", "bias", "spread", "inside"), overall, strict=True)),
         "groups": _groups(compared, words, manager=manager),
         "far": [
             odd(row, same_side[row.refill.bottle_id, row.span.off_g > 0] - 1, words, shop) for row in far[:MOST_ODD]

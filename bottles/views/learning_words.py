@@ -59,8 +59,9 @@ def placed(rows: Iterable[Went]) -> tuple[list[Placed], Counter[str]]:
         likely = forecast.likely_g or 0
         came, at_limit = row.came_g, row.refill.ended_by == "limit"
         room = _room(row)
-        # The valve is shut short of it by the scale's ± and step: what ended at its limit counts as that.
-        if at_limit and (row.course.proves_full or abs(room - came) <= 2 * row.error_g):
+        # The valve is shut short of it by the scale's ±, to its step: what ended at its limit counts as that.
+        step = row.refill.station.scale.resolution_g if row.refill.station.scale else 0
+        if at_limit and abs(room - came) <= 2 * (row.error_g + step):
             came = room
         found.append(Placed(row, Span(forecast.low_g, likely, forecast.high_g, came, row.error_g, at_limit)))
     return found, others

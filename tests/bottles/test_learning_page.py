@@ -16,7 +16,7 @@ from bottles.models import Refill
 from bottles.services import refill_steps as steps
 from bottles.services.learning import gather, learn
 from bottles.services.weighing import strike
-from tests.bottles.of_refill import Works, degrees, key
+from tests.bottles.of_refill import TARE_G, Works, degrees, key
 from tests.bottles.test_learning import COOL, learned, refilled, several
 
 pytestmark = pytest.mark.django_db(transaction=True)
@@ -79,11 +79,12 @@ def test_what_is_not_compared_is_counted_with_its_reason(works: Works, client_of
 
 
 def far_one(works: Works) -> Refill:
-    """A refill of which 1,500 g seem missing: weighed 9.12 kg and typed so, of what should be some 10.6."""
+    """A refill of which far less came than any reading allows."""
     into = works.bottle_to_fill("T-0666")
     refill = works.open(into, works.connected("S-0666"), bottle_temperature=degrees(COOL))
-    weight = works.weight(700)
-    done = steps.weigh_refill(key=key(), person=works.person, refill=refill, weight=weight, ended_by="flow ceased")
+    done = steps.weigh_refill(
+        key=key(), person=works.person, refill=refill, weight=works.weight(700), ended_by="flow ceased"
+    )
     assert done.closed
     return refill
 
@@ -142,3 +143,13 @@ def test_the_page_asks_as_much_for_many_refills_as_for_few(
         refilled(works, f"T-{750 + number}")
     with django_assert_max_num_queries(len(few)):
         page(client)
+
+
+def test_a_refill_that_ended_at_its_limit_counts_with_the_room_it_had(works: Works, client_of: Any) -> None:
+    """The reading to stop at lies below the target by the scale's ±: that's no error of the forecast."""
+    refill = works.open(bottle_temperature=degrees("-15 °C"))
+    stop = works.weight(refill.stop_at_g - TARE_G)
+    done = steps.weigh_refill(key=key(), person=works.person, refill=refill, weight=stop, close_when_full=True)
+    assert done.closed and refill.target_g > refill.stop_at_g - TARE_G
+    (row,) = page(client_of(works.person)).context["rows"]
+    assert row["cells"][5] == "0.0 oz" and row["cells"][-1] == "within"
