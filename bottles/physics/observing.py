@@ -7,7 +7,8 @@ from math import hypot
 
 from bottles.physics.receiver_start import OWN_VAPOUR, VENTED, Start, start_vessel
 from bottles.physics.transfer import Transfer
-from bottles.physics.vessel import HOTTEST, Vessel
+from bottles.physics.vessel import Vessel
+from shop.physics.errors import OutOfRange
 
 ALIKE = "limits alike"
 NO_LIQUID = "no liquid"
@@ -86,7 +87,7 @@ def observe(refilled: Refilled) -> Told:
     quick = transfer.mixed_free_kg()
     if quick <= 0.0:
         return Told(0.0, 0.0, 0.0, 0.0, NO_FLOW)
-    if not transfer.path.after(0.0).liquid:
+    if not transfer.path.gives_liquid:
         return Told(0.0, quick, 0.0, 0.0, NO_LIQUID)
     slow = transfer.slow_free_kg()
     gap = quick - slow
@@ -101,21 +102,20 @@ def _parts(transfer: Transfer, refilled: Refilled) -> list[float]:
     source, receiver = transfer.source, transfer.receiver
     quick = transfer.mixed_free_kg()
     moved = min(quick, max(refilled.moved_kg, 0.1 * quick))
-    there, step = transfer.surplus(moved), 1e-3 * moved
-    slope = (transfer.surplus(moved - step) - there) / step
+    there = transfer.surplus(moved)
+    if quick > moved * (1.0 + 1e-3):
+        # From what came to where the flow would cease: pressures may go level and then climb steeply.
+        slope = there / (quick - moved)
+    else:
+        step = 1e-3 * moved
+        slope = (transfer.surplus(moved - step) - there) / step
     if slope <= 0.0:
         return []
-    warmer = refilled.source_error_k
-    if source.temperature_k + warmer > HOTTEST:
-        warmer = -warmer
-    other = refilled.receiver_error_k
-    if receiver.temperature_k + other > HOTTEST:
-        other = -other
     changed = (
-        (replace(source, temperature_k=source.temperature_k + warmer), receiver),
-        (replace(source, net_kg=source.net_kg + refilled.source_error_kg), receiver),
-        (source, replace(receiver, temperature_k=receiver.temperature_k + other)),
-        (source, replace(receiver, net_kg=receiver.net_kg + _start_error(refilled, receiver))),
+        (_other(source, refilled.source_error_k, 0.0), receiver),
+        (_other(source, 0.0, refilled.source_error_kg), receiver),
+        (source, _other(receiver, refilled.receiver_error_k, 0.0)),
+        (source, _other(receiver, 0.0, _start_error(refilled, receiver))),
     )
     parts = []
     for new_source, new_receiver in changed:
@@ -125,6 +125,15 @@ def _parts(transfer: Transfer, refilled: Refilled) -> list[float]:
         new = Transfer(new_source, new_receiver, refilled.line_volume_m3, path=path, like=transfer)
         parts.append(min(abs(new.surplus(moved) - there) / slope, moved))
     return parts
+
+
+def _other(vessel: Vessel, kelvin: float, kilograms: float) -> Vessel:
+    """The bottle so much warmer and fuller, or colder and emptier where it can't be that."""
+    t, net = vessel.temperature_k, vessel.net_kg
+    try:
+        return replace(vessel, temperature_k=t + kelvin, net_kg=net + kilograms)
+    except OutOfRange:
+        return replace(vessel, temperature_k=t - kelvin, net_kg=max(net - kilograms, 0.0))
 
 
 def _start_error(refilled: Refilled, receiver: Vessel) -> float:
