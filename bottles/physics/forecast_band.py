@@ -119,7 +119,7 @@ def band_of(
     quick = transfer.mixed_free_kg()
     if quick <= 0.0 or room <= 0.0:
         return Band(0.0, 0.0, 0.0, (), None)
-    parts = _reading_parts(transfer, min(quick, room), tolerances, unsure)
+    parts = _reading_parts(transfer, quick, room, tolerances, unsure)
     enters = transfer.path.gives_liquid
     if enters:
         slow = transfer.slow_free_kg()
@@ -157,13 +157,19 @@ def _edges(likely: float, below: float, above: float, readings: float, room: flo
 
 
 def _reading_parts(
-    transfer: Transfer, moved: float, tolerances: Tolerances, unsure: tuple[str, float]
+    transfer: Transfer, quick: float, room: float, tolerances: Tolerances, unsure: tuple[str, float]
 ) -> list[tuple[str, float]]:
     """What each reading's tolerance is worth in mass, by the mixed limit's own slope."""
     source, receiver = transfer.source, transfer.receiver
+    moved = min(quick, room)
     there = transfer.surplus(moved)
-    step = 1e-3 * moved
-    slope = (transfer.surplus(moved - step) - there) / step
+    if quick > room * (1.0 + 1e-3):
+        # From where it's full to where the flow would cease: a slope at one of them misleads, as
+        # pressures go level before the receiver is full of liquid and climb steeply after.
+        slope = there / (quick - room)
+    else:
+        step = 1e-3 * moved
+        slope = (transfer.surplus(moved - step) - there) / step
     if slope <= 0.0:
         return []
     degree, gram = tolerances.thermometer_k, tolerances.scale_kg

@@ -155,8 +155,11 @@ class Adiabatic:
             if isinstance(before, TwoPhase) and before.dries:
                 mass = min(mass, rho_v * v)
             if rho_v + edge < mass / v < rho_l * (1.0 + 1e-6):
-                draws = self._vessel.liquid_pickup and not (isinstance(before, TwoPhase) and before.liquid)
-                if draws and below and mass <= mass_without_reach(side, v, below):
+                draws = self._vessel.liquid_pickup
+                if isinstance(before, TwoPhase):
+                    # Either liquid has come up to the tube's end, or it has sunk to it for good.
+                    draws = before.rises
+                elif below and mass <= mass_without_reach(side, v, below):
                     draws = False
                 self._stages.append(TwoPhase(v, c, mass, temperature, side, liquid=draws, below=below))
                 return

@@ -31,11 +31,12 @@ def settled(volume, wall, mass, energy, around):
     return low, state_by_density_temperature(mass / volume, low)
 
 
-def outlet(volume, mass, state, *, latched):
-    """Enthalpy of what leaves: liquid while there is any, then vapour for good."""
+def outlet(volume, mass, state, *, latched, below=0.0):
+    """Enthalpy of what leaves: liquid while there is any that the tube reaches, then vapour for good."""
     if state.quality is not None and state.temperature_k < T_SATURATION_MAX:
         side = saturation_at_temperature(state.temperature_k)
-        dry = latched or mass <= side.vapour_density * volume * (1.0 + 1e-9)
+        reach = side.vapour_density * (volume - below) + side.liquid_density * below
+        dry = latched or mass <= reach * (1.0 + 1e-9)
         return (side.vapour_enthalpy if dry else side.liquid_enthalpy), dry
     return state.enthalpy, latched
 
@@ -49,9 +50,9 @@ def step_mixed(source, receiver, moved, steps):
     total, share, latched = e1 + e2, moved / steps, False
     one = state_by_density_temperature(m1 / v1, t1)
     for _ in range(steps):
-        h, _ = outlet(v1, m1, one, latched=latched)
+        h, _ = outlet(v1, m1, one, latched=latched, below=source.below_tube_m3)
         _, half = settled(v1, c1, m1 - share / 2, e1 - h * share / 2, t1)
-        h, latched = outlet(v1, m1 - share / 2, half, latched=latched)
+        h, latched = outlet(v1, m1 - share / 2, half, latched=latched, below=source.below_tube_m3)
         m1, m2, e1, e2 = m1 - share, m2 + share, e1 - h * share, e2 + h * share
         t1, one = settled(v1, c1, m1, e1, t1)
     t2, two = settled(v2, c2, m2, e2, t2)
