@@ -45,7 +45,7 @@ class Helps:
 
     found: Remedies
     places: tuple[ColdPlace, ...]
-    chill_k: float | None  # to where the times are reckoned
+    chill_k: float | None  # to where the times are reckoned; None: no chilling fills it
     times: tuple[tuple[str, Chilling], ...]
 
 
@@ -72,8 +72,8 @@ def would_help(pair: Pair) -> Helps:
         source_range_kg=pair.source_range_kg, line_volume_m3=pair.line_volume_m3, condensation=pair.condensation,
         coldest_k=min(place.coldest_k for place in places),
     )  # fmt: skip
-    chilled = {each.case: each.temperature_k for each in found.remedies if each.kind == CHILL}
-    to = next((chilled[case] for case in (LIKELY, EVERY, QUICK) if chilled.get(case) is not None), None)
+    chilled = {each.case: each.temperature_k for each in found.remedies if each.kind == CHILL and each.fills}
+    to = next((chilled[case] for case in (LIKELY, EVERY, QUICK) if case in chilled), None)
     return Helps(found, places, to, _times(pair, to, places) if to is not None else ())
 
 

@@ -57,13 +57,14 @@ def _masses(course: Course, minutes: list[float], answer: Answer, words: RefillW
     def mass(grams: float) -> float:
         return float(value_in(round(grams), unit))
 
+    wide = answer.high_g > answer.low_g + 1  # a gram is lost in rounding down
     held = [(x, mass(holds + 1000 * float(moved))) for x, moved in zip(minutes, course.moved_kg, strict=True)]
     return Chart(
         title="Nitrous in the bottle while it fills",
         x=Axis("Time", "min", low=0),
         y=Axis("In the bottle", unit, low=0, decimals=1 if unit == "lb" else 2),
         series=[Series("in the bottle", held)],
-        bands=[Band("forecast", mass(holds + answer.low_g), mass(holds + answer.high_g))],
+        bands=[Band("forecast", mass(holds + answer.low_g), mass(holds + answer.high_g))] if wide else [],
         marks=[Mark("target", y=mass(answer.target_g))],
     )
 

@@ -9,7 +9,7 @@ from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, WEIGHED
 from bottles.services.forecasting import TAKEN, Answer
 from bottles.views.refill_words import RefillWords
 
-HEAD = ["From", "By itself", "How well it's known"]
+HEAD = ["From, and how well it's known", "By itself"]
 SUPPLY_WEIGHT, START = "source weight", "receiver start"
 PARTS = {
     CONDENSATION: "how much vapour condenses",
@@ -29,7 +29,7 @@ WORTH_G = 10  # what changes the span by less is no reason to measure again
 
 
 def width_rows(answer: Answer, words: RefillWords) -> list[list[str]]:
-    """A row for each part of the width, the widest first: what, how much by itself, from which ±."""
+    """A row for each part of the width, the widest first: what, how much by itself, how well it's known."""
     rows = []
     for name, kilograms in answer.transferred.width:
         said = words.small(round(kilograms * 1000))
