@@ -1,19 +1,20 @@
 """What no plan of a day can do better than: promises that must break, bottles that can't be good enough.
 
 Each rule leaves something out, so that its answer is never worse than the best plan's: supply bottles
-are taken as they stand at the beginning and for one bottle alone; hoses, people and the freezer are
+are there for one bottle alone; hoses, people and the freezer are
 counted apart; masses are counted without pressure where that is simpler.
 """
 
 from __future__ import annotations
 
-from itertools import combinations
+from itertools import combinations, permutations
 
 from bottles.rules.planning.problem import MOST_DRAWS, Bound
 from bottles.rules.planning.schedule import Rehearsal
 from shop.physics.fluid import T_SATURATION_MAX, engine
 
-_SLACK = 0.01  # of the target: the lattice's error, and what of the order of draws isn't known
+_SLACK = 0.02  # of the target: the lattice's error, and supplies cooled otherwise than was tried
+_COOLED = (0.0, 6.0, 12.0)  # K
 NEVER = 1 << 40
 
 
@@ -30,39 +31,64 @@ def bound_of(rehearsal: Rehearsal) -> Bound:
 
 def earliest(rehearsal: Rehearsal) -> list[int]:
     """When each bottle could begin to be filled well enough, had it the day to itself; far off where it can't."""
-    return [
-        min((rehearsal.day.opens_s + start.seconds if start.place is not None else rehearsal.day.opens_s
-             for number, start in enumerate(one.starts)
-             if (start.place is None or rehearsal.day.slots[start.place]) and reaches(rehearsal, bottle, number)), default=NEVER)
-        for bottle, one in enumerate(rehearsal.day.bottles)
-    ]  # fmt: skip
+    return [_earliest(rehearsal, number) for number in range(len(rehearsal.day.bottles))]
+
+
+def _earliest(rehearsal: Rehearsal, bottle: int) -> int:
+    day, starts = rehearsal.day, rehearsal.day.bottles[bottle].starts
+    there = [number for number, start in enumerate(starts) if start.place is None or day.slots[start.place]]
+    if not there or not reaches(rehearsal, bottle, min(there, key=lambda number: starts[number].temperature_k)):
+        return NEVER  # what isn't enough at its coldest isn't when it's warmer
+    soonest = sorted(there, key=lambda number: starts[number].seconds)
+    return day.opens_s + next(starts[number].seconds for number in soonest if reaches(rehearsal, bottle, number))
 
 
 def reaches(rehearsal: Rehearsal, bottle: int, start: int) -> bool:
-    """Whether a bottle can get good enough from a start, all supply bottles being as at the beginning."""
-    return best_kg(rehearsal, bottle, start, enough=True) >= rehearsal.good_kg[bottle]
+    """Whether a bottle can get good enough from a start, the day's supplies being there for it alone."""
+    enough = rehearsal.good_kg[bottle] - slack_kg(rehearsal, bottle)
+    return best_kg(rehearsal, bottle, start, enough_kg=enough) >= enough
 
 
-def best_kg(rehearsal: Rehearsal, bottle: int, start: int, *, enough: bool = False) -> float:
-    """The most that a bottle can come to hold from a start, with some slack; `enough` stops at good enough [kg]."""
-    day, fills = rehearsal.day, rehearsal.fills
+def slack_kg(rehearsal: Rehearsal, bottle: int) -> float:
+    """By how much a plan may better the best that is worked out here for a bottle [kg]."""
+    return _SLACK * rehearsal.day.bottles[bottle].target_kg
+
+
+def best_kg(rehearsal: Rehearsal, bottle: int, start: int, *, enough_kg: float | None = None) -> float:
+    """The most that a bottle can come to hold from a start; with `enough_kg` it stops there [kg].
+
+    The last supply bottle in turn is taken as it stands, or as warm as the room: it gives no more
+    when it's weaker. Those before may have cooled: what comes over colder leaves room for more.
+    """
+    day = rehearsal.day
     one = day.bottles[bottle]
-    most, slack = one.net_kg, _SLACK * one.target_kg
-    temperatures = [max(each.temperature_k, day.room_k) for each in day.sources]
+    enough = one.target_kg if enough_kg is None else enough_kg
+    most = one.net_kg
     order = sorted(range(len(day.sources)), key=lambda each: day.sources[each].net_kg / day.sources[each].volume_m3)
     for many in range(1, min(MOST_DRAWS, len(order)) + 1):
-        for sources in reversed(list(combinations(order, many))):
-            held, warm = one.net_kg, one.starts[start].temperature_k
-            for source in sources:
-                receiver, net, hot = (bottle, held, warm), day.sources[source].net_kg, temperatures[source]
-                moved = max(0.0, min(fills.free_kg(receiver, source, net, hot), one.target_kg - held, net))
-                if source != sources[-1] and moved:
-                    warm = fills.receiver_after(receiver, source, net, hot, moved)
-                held += moved
-            most = max(most, min(held + slack, one.target_kg))
-            if most >= one.target_kg or (enough and most >= rehearsal.good_kg[bottle]):
-                return most
+        turns = permutations(order, many) if many == 2 else combinations(order, many)
+        for sources in reversed(list(turns)):
+            for cooled in _COOLED if many > 1 else _COOLED[:1]:
+                most = max(most, _in_turn(rehearsal, bottle, start, sources, cooled))
+                if most >= enough:
+                    return most
     return most
+
+
+def _in_turn(rehearsal: Rehearsal, bottle: int, start: int, sources: tuple[int, ...], cooled: float) -> float:
+    """What a bottle holds after its turns, all supply bottles but the last being so much colder."""
+    day, fills = rehearsal.day, rehearsal.fills
+    one = day.bottles[bottle]
+    held, warm = one.net_kg, one.starts[start].temperature_k
+    for turn, source in enumerate(sources, 1):
+        net, hot = day.sources[source].net_kg, max(day.sources[source].temperature_k, day.room_k)
+        if turn < len(sources):
+            hot -= cooled
+        moved = max(0.0, min(fills.free_kg((bottle, held, warm), source, net, hot), one.target_kg - held, net))
+        if turn < len(sources) and moved:
+            warm = fills.receiver_after((bottle, held, warm), source, net, hot, moved)
+        held += moved
+    return held
 
 
 def thinnest(rehearsal: Rehearsal) -> tuple[float, float]:

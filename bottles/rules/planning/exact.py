@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from bottles.rules.planning.bound import NEVER, best_kg, bound_of, earliest, thinnest
+from bottles.rules.planning.bound import NEVER, best_kg, bound_of, earliest, slack_kg, thinnest
 from bottles.rules.planning.heuristic import Watch, good_plan
 from bottles.rules.planning.problem import MOST_DRAWS, Choice, Day, Plan, Score
 from bottles.rules.planning.schedule import Position, Rehearsal, half_kilos, hectograms
@@ -128,4 +128,4 @@ class _Tree:
     def _least_short(self, number: int) -> int:
         starts = range(len(self.rehearsal.day.bottles[number].starts))
         best = max(best_kg(self.rehearsal, number, start) for start in starts)
-        return hectograms(self.rehearsal.good_kg[number] - best)
+        return hectograms(self.rehearsal.good_kg[number] - slack_kg(self.rehearsal, number) - best)

@@ -25,14 +25,15 @@ class Search:
     """A rehearsal that counts what is looked at, and stops in time."""
 
     def __init__(self, rehearsal: Rehearsal, *, most: int, transfers: int, watch: Watch | None) -> None:
-        self.rehearsal, self.most, self.transfers, self.watch = rehearsal, most, transfers, watch
+        self.rehearsal, self.most, self.watch = rehearsal, most, watch
+        # What the bound took counts too, as long as some remain.
+        self.transfers = max(transfers, rehearsal.fills.calls + transfers // 2)
         self.looked_at = 0
-        self._from = rehearsal.fills.calls
 
     @property
     def over(self) -> bool:
         """Whether so much was looked at that the best plan so far is taken."""
-        return self.looked_at >= self.most or self.rehearsal.fills.calls - self._from >= self.transfers
+        return self.looked_at >= self.most or self.rehearsal.fills.calls >= self.transfers
 
     def place(self, at: Position, choice: Choice) -> Position | None:
         """Where a choice leads; None where it can't be, or where it's time to stop."""

@@ -63,15 +63,17 @@ class Rehearsal:
 
     def choices(self, at: Position, bottle: int) -> Iterator[Choice]:
         """Every choice for a bottle: each start, and supply bottles in turn, the weaker first."""
-        weakest_first = sorted(range(len(at.net_kg)), key=lambda each: (at.net_kg[each] / self.day.sources[each].volume_m3, each))
+        weakest_first = sorted(range(len(at.net_kg)), key=lambda each: self._strength(at, each))
         for start in range(len(self.day.bottles[bottle].starts)):
             for many in range(1, min(MOST_DRAWS, len(weakest_first)) + 1):
                 for sources in combinations(weakest_first, many):
                     yield Choice(bottle, start, sources)
 
     def place(self, at: Position, choice: Choice) -> tuple[Position, Filled] | None:
-        """What comes of a choice; None where it can't be done today or one of its draws gives nothing."""
+        """What comes of a choice; None where it can't be done today, draws on a stronger one first, or draws nothing."""
         day, bottle = self.day, self.day.bottles[choice.bottle]
+        if list(choice.sources) != sorted(choice.sources, key=lambda each: self._strength(at, each)):
+            return None
         start = bottle.starts[choice.start]
         slots, chill_from, ready = at.slot_free_s, None, day.opens_s
         if start.place is not None:
@@ -126,6 +128,9 @@ class Rehearsal:
                 at, filled = placed
                 fills.append(filled)
         return at, tuple(fills)
+
+    def _strength(self, at: Position, source: int) -> tuple[float, int]:
+        return at.net_kg[source] / self.day.sources[source].volume_m3, source
 
     def _draw(self, at: Position, receiver: tuple[int, float, float], source: int, ready: int) -> Drawn | None:
         """One draw from a supply bottle, as early as it can be; None where nothing goes over."""

@@ -1,0 +1,216 @@
+"""Plans of small days beside brute force, and what holds of every plan."""
+
+from __future__ import annotations
+
+from itertools import permutations, product
+from typing import Any
+
+import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
+
+from bottles.rules.planning.bound import bound_of
+from bottles.rules.planning.exact import best_plan
+from bottles.rules.planning.heuristic import first_come_first_served, good_plan
+from bottles.rules.planning.problem import Day, Plan, Score, Source, Start, Waiting
+from bottles.rules.planning.schedule import Rehearsal
+from bottles.rules.planning.told import tell
+
+SIZES = ((3.4e-3, 2_700.0), (6.8e-3, 5_300.0), (10e-3, 7_300.0))  # m3, J/K: aluminium
+STEEL = 15_000.0
+HOUR = 3600
+
+
+def bottle(code: str, size: int = 1, *, held: float = 0.05, chilled: bool = True, promised: int | None = None) -> Waiting:
+    volume, wall = SIZES[size]
+    starts = (Start(293.15), Start(258.15, 0, 5_400)) if chilled else (Start(293.15),)
+    return Waiting(code, volume, wall, held * 680 * volume, 680 * volume, starts, promised)
+
+
+def supply(code: str, net: float, station: int | None = 0) -> Source:
+    return Source(code, 0.029, STEEL, net, 293.15, station, line_m3=3e-5)
+
+
+def day(bottles: Any, sources: Any, **more: Any) -> Day:
+    values: dict[str, Any] = {"stations_free_s": (0,), "closes_s": 8 * HOUR, "slots": (2,)}
+    return Day(tuple(bottles), tuple(sources), **values | more)
+
+
+@st.composite
+def days(draw: Any, most_bottles: int = 3, most_sources: int = 2) -> Day:
+    """A random day; nets and promises such that something is often short."""
+    many = draw(st.integers(1, most_bottles))
+    bottles = [
+        bottle(
+            f"T-{number}", draw(st.integers(0, 2)), held=draw(st.sampled_from((0.01, 0.1, 0.4))), chilled=draw(st.booleans()),
+            promised=draw(st.sampled_from((None, HOUR, 2 * HOUR, 4 * HOUR))),
+        )
+        for number in range(many)
+    ]  # fmt: skip
+    stations = draw(st.integers(1, 2))
+    sources = [
+        supply(f"S-{number}", draw(st.sampled_from((2.5, 4.5, 8.0, 19.0))), draw(st.sampled_from((None, 0, stations - 1))))
+        for number in range(draw(st.integers(1, most_sources)))
+    ]
+    return day(
+        bottles, sources, stations_free_s=(0,) * stations, people=draw(st.integers(1, 2)), slots=(draw(st.integers(1, 2)),),
+        closes_s=draw(st.sampled_from((2, 3, 8))) * HOUR,
+    )  # fmt: skip
+
+
+def brute_force(of: Day) -> Score:
+    """Every order of every choice of bottles, every way of filling each, nothing cut."""
+    rehearsal = Rehearsal(of)
+    best = rehearsal.score(rehearsal.beginning())
+
+    def go_on(at: Any, order: tuple[int, ...]) -> None:
+        nonlocal best
+        best = min(best, rehearsal.score(at))
+        if order:
+            for choice in rehearsal.choices(at, order[0]):
+                placed = rehearsal.place(at, choice)
+                if placed is not None:
+                    go_on(placed[0], order[1:])
+
+    for order in permutations(range(len(of.bottles))):
+        go_on(rehearsal.beginning(), order)
+    return best
+
+
+@settings(max_examples=30, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@given(days())
+def test_the_exact_plan_is_as_good_as_brute_force(of: Day) -> None:
+    plan = best_plan(of)
+    assert plan.exact
+    assert plan.score == brute_force(of)
+
+
+@settings(max_examples=25, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@given(days(6, 3))
+def test_no_plan_is_worse_than_first_come_first_served(of: Day) -> None:
+    rehearsal = Rehearsal(of)
+    served = rehearsal.score(rehearsal.follow(first_come_first_served(rehearsal))[0])
+    assert good_plan(of).score <= served
+    assert best_plan(of, nodes=500).score <= served
+
+
+@settings(max_examples=25, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@given(days())
+def test_no_plan_passes_the_bound(of: Day) -> None:
+    best, bound = brute_force(of), bound_of(Rehearsal(of))
+    assert best[0] >= bound.broken
+    assert -best[2] <= bound.good
+
+
+@settings(max_examples=40, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@given(days(6, 3))
+def test_a_plan_keeps_to_hoses_people_slots_hours_and_masses(of: Day) -> None:
+    check(of, good_plan(of, most=800))
+
+
+def check(of: Day, plan: Plan) -> None:
+    draws = [(draw, filled) for filled in plan.fills for draw in filled.draws]
+    assert len({filled.choice.bottle for filled in plan.fills}) == len(plan.fills)
+    for name in ("station", "source"):
+        for one in {getattr(draw, name) for draw, _ in draws}:
+            taken = sorted((draw.from_s, draw.until_s) for draw, _ in draws if getattr(draw, name) == one)
+            assert all(before[1] <= after[0] for before, after in zip(taken, taken[1:], strict=False))
+    for filled in plan.fills:
+        one = of.bottles[filled.choice.bottle]
+        start = one.starts[filled.choice.start]
+        assert filled.final_kg <= one.target_kg + 1e-9
+        assert filled.final_kg == pytest.approx(one.net_kg + sum(draw.moved_kg for draw in filled.draws))
+        assert 0 <= filled.draws[0].from_s and filled.until_s <= of.closes_s
+        if start.place is not None:
+            assert filled.chill_from_s is not None and filled.chill_until_s is not None
+            assert filled.chill_until_s - filled.chill_from_s >= start.seconds
+    moments = {draw.from_s for draw, _ in draws}
+    for moment in moments:
+        assert sum(filled.draws[0].from_s <= moment < filled.until_s for filled in plan.fills) <= of.people
+    for place, slots in enumerate(of.slots):
+        inside = [
+            (filled.chill_from_s, filled.chill_until_s) for filled in plan.fills
+            if of.bottles[filled.choice.bottle].starts[filled.choice.start].place == place
+        ]  # fmt: skip
+        for begin, _ in inside:
+            assert sum(other[0] <= begin < other[1] for other in inside) <= slots  # type: ignore[operator]
+    for number, source in enumerate(of.sources):
+        given_kg = sum(draw.moved_kg + draw.line_kg for draw, _ in draws if draw.source == number)
+        left = [draw.left_kg for draw, _ in sorted(draws, key=lambda each: each[0].from_s) if draw.source == number]
+        assert (left[-1] if left else source.net_kg) == pytest.approx(source.net_kg - given_kg)
+        assert not left or left[-1] >= 0.0
+        if source.station is not None:
+            assert {draw.station for draw, _ in draws if draw.source == number} <= {source.station}
+
+
+def test_the_same_day_gives_the_same_plan() -> None:
+    of = day([bottle(f"T-{n}", n % 3, promised=(n + 1) * HOUR) for n in range(9)], [supply("S-1", 19.0), supply("S-2", 4.5, None)])
+    first, second = good_plan(of, most=1_000), good_plan(of, most=1_000)
+    assert first == second
+    assert tell(of, first) == tell(of, second)
+
+
+def test_a_promise_goes_before_the_number_of_full_bottles() -> None:
+    """One supply bottle fills two small bottles or one large one; the large one is promised."""
+    of = day(
+        [bottle("small", 0), bottle("smaller", 0), bottle("large", 2, promised=3 * HOUR)], [supply("S-1", 11.5)],
+    )  # fmt: skip
+    plan = best_plan(of)
+    assert plan.score[0] == 0
+    assert of.bottles[plan.fills[0].choice.bottle].code == "large" or plan.good == 3
+
+
+def test_a_weak_supply_bottle_is_drawn_on_first_and_a_fresh_one_fills_up() -> None:
+    of = day([bottle("T-1")], [supply("weak", 6.5), supply("fresh", 19.0, None)])
+    fill = best_plan(of).fills[0]
+    assert [of.sources[draw.source].code for draw in fill.draws] == ["weak", "fresh"]
+    assert fill.final_kg == pytest.approx(of.bottles[0].target_kg)
+
+
+def test_as_warm_as_its_supply_a_bottle_stays_short_and_chilled_it_is_full() -> None:
+    warm = best_plan(day([bottle("T-1", chilled=False)], [supply("S-1", 19.0)]))
+    cold = best_plan(day([bottle("T-1")], [supply("S-1", 19.0)]))
+    assert warm.good == 0 and cold.good == 1
+    assert cold.fills[0].chill_until_s == 5_400
+
+
+def test_what_is_left_out_says_why() -> None:
+    told = tell(of := day([bottle("T-1")], []), good_plan(of))
+    assert [one["why"] for one in told["unfilled"]] == ["no supply"]
+    told = tell(of := day([bottle("T-1")], [supply("S-1", 19.0)], closes_s=600), good_plan(of))
+    assert [one["why"] for one in told["unfilled"]] == ["no time"]
+    told = tell(of := day([bottle("T-1", chilled=False, held=0.3)], [supply("S-1", 0.5)]), good_plan(of))
+    assert [one["why"] for one in told["unfilled"]] == ["too warm"]
+
+
+def test_an_empty_supply_bottle_tells_what_a_cold_bottle_could_draw() -> None:
+    of = day([bottle("T-1")], [supply("empty", 3.0), supply("fresh", 19.0, None)])
+    told = tell(of, best_plan(of))
+    empty = next(one for one in told["empties"] if one["code"] == "empty")
+    assert empty["could"][0]["bottle"] == "T-1" and 20 <= empty["could"][0]["g"] < 3_000
+
+
+def test_a_plan_is_stopped_by_who_watches() -> None:
+    class Stop(Exception):
+        pass
+
+    def watch(done: int, total: int) -> None:
+        assert 0 <= done <= total
+        raise Stop
+
+    of = day([bottle("T-1"), bottle("T-2")], [supply("S-1", 19.0)])
+    for plan in (good_plan, best_plan):
+        with pytest.raises(Stop):
+            plan(of, watch)
+
+
+@pytest.mark.parametrize(("many", "people"), list(product((1, 2), (1, 2))))
+def test_two_bottles_are_filled_side_by_side_where_there_are_hoses_and_people(many: int, people: int) -> None:
+    of = day(
+        [bottle("T-1", chilled=False, held=0.5), bottle("T-2", chilled=False, held=0.5)],
+        [supply("S-1", 19.0, 0), supply("S-2", 19.0, many - 1)], stations_free_s=(0,) * many, people=people,
+    )  # fmt: skip
+    plan = best_plan(of)
+    starts = sorted(filled.draws[0].from_s for filled in plan.fills)
+    if len(starts) == 2:
+        assert (starts[0] == starts[1]) == (many == people == 2)
