@@ -11,7 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from bottles.physics.condensation import Condensation
-from bottles.physics.forecast import forecast
+from bottles.physics.forecast import Tolerances, forecast
 from bottles.physics.receiver_start import Start, start_vessel
 from bottles.physics.transfer import Transfer, mixed
 from bottles.physics.vessel import HOTTEST, Vessel, wall_heat
@@ -159,6 +159,33 @@ def test_it_is_written_as_plain_figures_with_units():
         assert isinstance(told[key], int | float)
     assert told["line_loss_kg"] == pytest.approx(5e-5 * saturation_at_temperature(293.15).liquid_density)
     assert told["mixed"]["receiver_final_bar"] * 1e5 > ATMOSPHERE
+
+
+def test_it_names_the_measurement_that_would_narrow_it_most():
+    known = Condensation(0.5, 0.0, "fitted to 40 refills")
+    assert ask(receiver=20).narrows == "more refills"
+    assert ask(receiver=20, condensation=known).narrows == "receiver temperature"
+    assert ask(receiver=20, condensation=known, tolerances=Tolerances(0.01, 0.5)).narrows == "source weight"
+    assert ask(receiver=-30).narrows is None
+    assert ask(net=0.0, receiver=-10, source_range_kg=(4.58, 19.72)).narrows == "source weight"
+    assert ask(receiver=20).as_dict()["narrows"] == "more refills"
+
+
+def test_weighing_is_named_for_a_start_only_where_the_scale_tells_more():
+    known = Condensation(0.5, 0.0, "fitted to 40 refills")
+    left = {"receiver": 8, "condensation": known, "start": Start("own vapour")}
+    assert ask(tolerances=Tolerances(0.2, 0.005), **left).narrows == "receiver weight"
+    assert ask(tolerances=Tolerances(0.2, 5.0), **left).narrows != "receiver weight"
+
+
+def test_without_the_named_doubt_the_band_is_narrower():
+    for net, receiver in ((19.72, 20), (12.0, 10), (8.5, 0)):
+        known = Condensation(0.5, 0.0, "fitted to 40 refills")
+        told = ask(net=net, receiver=receiver, condensation=known)
+        exact = {"source temperature": Tolerances(1e-6, 0.05), "receiver temperature": Tolerances(1e-6, 0.05),
+                 "source weight": Tolerances(1.0, 1e-6)}  # fmt: skip
+        better = ask(net=net, receiver=receiver, condensation=known, tolerances=exact[told.narrows])
+        assert better.high_kg - better.low_kg < told.high_kg - told.low_kg
 
 
 @settings(max_examples=80, deadline=None)
