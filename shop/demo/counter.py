@@ -9,8 +9,9 @@ from shop.demo import names
 from shop.demo.cylinders import Spec
 from shop.demo.past import Past
 from shop.demo.people import BOSS, DESK
-from shop.demo.premises import PLACES
+from shop.demo.premises import CHILLS, PLACES
 from shop.demo.steps import Step
+from shop.physics.units import parse_temperature
 
 ON_THE_COUNTER = ("T-0101", "T-0102", "T-0103")
 FULL_SUPPLY_G = 27_100
@@ -28,7 +29,7 @@ def premises(past: Past) -> Iterator[Step]:
     past.on(past.days.beginning, "08:00")
     past.write("policy.decide", by=BOSS.sign_in, **POLICY)
     for code, name, kind, outdoors in PLACES:
-        past.write("place.add", by=BOSS.sign_in, code=code, name=name, kind=kind, outdoors=outdoors)
+        past.write("place.add", by=BOSS.sign_in, code=code, name=name, kind=kind, outdoors=outdoors, **_cold(past, code))
     for scale in past.scales.values():
         past.write(
             "scale.add", by=BOSS.sign_in, calibrated_on=past.days.ago(_CALIBRATED_AGO).isoformat(),
@@ -93,6 +94,17 @@ def everybody_else(past: Past) -> Iterator[Step]:
             engine=car.engine, owner=car.owner,
         )  # fmt: skip
     yield from past.drain()
+
+
+def _cold(past: Past, code: str) -> dict[str, Any]:
+    """How cold a place gets and how many bottles it takes, for the places that chill."""
+    if code not in CHILLS:
+        return {}
+    celsius, at_once = CHILLS[code]
+    typed = past.kit.temperature(celsius + 273.15)
+    return {
+        "coldest_mk": parse_temperature(typed, default_unit="°C").stored, "coldest_typed": typed, "takes_at_once": at_once,
+    }  # fmt: skip
 
 
 def customer(past: Past, name: str) -> None:

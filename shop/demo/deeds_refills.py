@@ -6,6 +6,7 @@ from bottles.models import Refill, Station, Supply
 from bottles.selectors.filling_facts import air_pressure
 from bottles.services import refill_steps, stations
 from bottles.services.forecasting import Asked, Readings, work_out
+from bottles.services.learning import gather, learn
 from bottles.services.refill_steps import Weight, weigh_refill
 from bottles.services.refilling import Opened, Opening, look_items, open_refill
 from shop.demo.deeds_books import answering
@@ -69,6 +70,11 @@ def _wait(doer: Doer, step: Step) -> None:
     refill_steps.wait(
         **doer.common(step), refill=refill, version=refill.version, until=instant(step.values["until"]), note=step.values["note"]
     )
+
+
+@deed("learning.fit")
+def _learn(doer: Doer, step: Step) -> object:
+    return learn(key=doer.key_of(step.name), shop=doer.shop, gathered=gather(doer.shop))
 
 
 def _open_one(step: Step) -> Refill:

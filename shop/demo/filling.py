@@ -115,7 +115,7 @@ def _vessels(past: Past, code: str, celsius: float) -> Vessels:
     wall_g = parse_mass(spec.parts(past.kit)[0][1], default_unit="kg").stored
     return Vessels(
         spec.capacity_ml, spec.wall if spec.wall in ("aluminium", "steel") else "aluminium", wall_g, past.net_g[code],
-        celsius + DEGREE_C,
+        celsius + DEGREE_C, spec.dip,
     )  # fmt: skip
 
 

@@ -15,7 +15,8 @@ from bottles.physics.vessel import Vessel, pressure_and_energy, wall_heat
 from shop.physics.fluid import engine
 
 VAPOUR_KG_M3 = 1.85  # of nitrous at the room's pressure; what a vented bottle still holds
-FIGURE, SPREAD = 0.5, 0.12  # this shop's condensation figure, and how it scatters
+# This shop's condensation figure by how the liquid enters, and how it scatters.
+FIGURES, SPREAD = {"dip": 0.62, "none": 0.78}, 0.1
 
 
 @dataclass(frozen=True, slots=True)
@@ -27,6 +28,7 @@ class Vessels:
     wall_g: int
     net_g: float
     temperature_k: float
+    dip: str = "dip"
 
     def vessel(self) -> Vessel:
         """The bottle at rest."""
@@ -49,7 +51,7 @@ class Poured:
 def pour(*, source: Vessels, receiver: Vessels, room_g: float, line_volume_m3: float, rng: random.Random) -> Poured:
     """Let nitrous go over until the room is used up or nothing moves any more."""
     transfer = Transfer(source.vessel(), receiver.vessel(), line_volume_m3)
-    figure = min(max(rng.gauss(FIGURE, SPREAD), 0.15), 0.85)
+    figure = min(max(rng.gauss(FIGURES[receiver.dip], SPREAD), 0.15), 0.95)
     free_g = 1000 * between(transfer.slow_free_kg(), transfer.mixed_free_kg(), figure)
     line_g = transfer.line_kg * 1000 * rng.uniform(0.85, 1.1)
     moved_g = min(room_g, free_g)

@@ -14,7 +14,7 @@ from shop.physics.unit_table import LB_G
 from shop.physics.units import parse_mass
 
 # code, name, kind, outdoors
-PLACES = (
+PLACES: tuple[tuple[str, str, str, bool], ...] = (
     ("COUNTER", "Counter", "counter", False),
     ("RACK-A", "Rack A, customers' bottles", "shelf", False),
     ("RACK-B", "Rack B, shop's bottles", "shelf", False),
@@ -26,6 +26,8 @@ PLACES = (
     ("CAGE", "Outdoors cage, supply bottles", "shelf", True),
     ("CAGE-Q", "Outdoors cage, quarantine", "quarantine", True),
 )
+# What chills: how cold it gets in °C, how many bottles it takes at once.
+CHILLS = {"FREEZER": (-18, 4), "BATH": (1, 2)}
 _OUNCE_G = Fraction(LB_G) / 16
 
 

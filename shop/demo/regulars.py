@@ -54,6 +54,7 @@ def spec_of(past: Past, regular: Regular, number: int) -> Spec:
         maker=number % len(names.MAKERS), since_days=(past.days.today - past.days.first).days + 3,
         made_ago=ago + full, tests_ago=(ago,),
         star=star, visual_ago=27 + number % 8, labelled=number % 7 != 3, race_grade=True if number % 4 == 0 else None,
+        dip="none" if number % 4 == 3 else "dip",
     )  # fmt: skip
 
 

@@ -10,7 +10,7 @@ from collections.abc import Iterator
 from datetime import date
 from zoneinfo import ZoneInfo
 
-from shop.demo import counter, mishaps, regulars, states
+from shop.demo import counter, mishaps, promised, regulars, states
 from shop.demo.days import HISTORY_MONTHS, Days
 from shop.demo.history import History
 from shop.demo.kit import Kit
@@ -33,5 +33,6 @@ def plan(*, today: date, kit: Kit, seed: int = SEED, history_months: float = HIS
     yield from states.by_what_was_noted(past)
     yield from mishaps.in_the_books(past)
     yield from mishaps.somewhere_else(past)
+    yield from promised.for_today(past)
     yield from regulars.register_regulars(past)
     yield from History(past).days()

@@ -207,7 +207,7 @@ class Filled(TestCase):
         assert not Act.objects.filter(recorded_at__gte=midnight).exists()
 
     def test_the_job_says_the_short_codes(self) -> None:
-        job = Job.objects.get()
+        job = Job.objects.get(kind="demo.fill")
         assert len(job.result["short codes"]) == 5
         assert job.done == job.total == job.result["steps"]
 

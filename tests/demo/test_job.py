@@ -59,7 +59,7 @@ def test_the_screen_is_told_and_may_cancel(monkeypatch):
     def cancelled_meanwhile(steps, **rest):
         for number, step in enumerate(plain(islice(steps, 30), **rest)):
             if number == 20:
-                jobs.cancel(Job.objects.get())
+                jobs.cancel(Job.objects.get(kind="demo.fill"))
             yield step
 
     monkeypatch.setattr(tasks, "do_all", cancelled_meanwhile)
