@@ -73,6 +73,30 @@ def test_the_band_its_explanation_and_what_would_help_are_seen(new_page: Callabl
     fine(page)
 
 
+def test_an_answer_that_comes_late_takes_no_focus_away(new_page: Callable[..., Page], desk: Desk) -> None:
+    desk.bottle_to_fill("T-0421")
+    page = new_page()
+    read(page)
+    summary = page.locator("summary", has_text=WIDTH)
+    summary.focus()
+    with page.expect_response(re.compile("/fill/forecast$")):
+        steps.field(page, "Target, if less than the limit").evaluate(
+            "field => { field.value = '3 kg'; field.dispatchEvent(new Event('input', { bubbles: true })); }"
+        )
+    expect(page.locator("#forecast")).to_contain_text("target")
+    expect(summary).to_be_focused()
+
+
+def test_enter_opens_the_refill_and_not_the_course(new_page: Callable[..., Page], desk: Desk) -> None:
+    desk.bottle_to_fill("T-0421")
+    page = new_page()
+    read(page)
+    page.get_by_label("I looked at each of these, and each is in order").check()
+    steps.field(page, "The bottle to fill weighs").focus()
+    steps.enter(page)
+    expect(page).to_have_url(re.compile(r"/refills/\d+$"))
+
+
 def test_a_fold_that_was_opened_stays_open_while_one_types_on(new_page: Callable[..., Page], desk: Desk) -> None:
     desk.bottle_to_fill("T-0421")
     page = new_page()
