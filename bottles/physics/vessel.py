@@ -7,13 +7,15 @@ from dataclasses import dataclass
 from shop.physics.errors import OutOfRange
 from shop.physics.fluid import P_MAX, T_MAX, T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.roots import find_root
-from shop.physics.saturation_table import saturation_table, to_s, to_t
+from shop.physics.saturation_table import saturated, saturation_table, to_s, to_t
 from shop.physics.states import RHO_CRITICAL
 
 WALL_HEAT = {"aluminium": 896.0, "steel": 470.0}  # J/kg/K
 COLDEST = 233.15  # K: -40 °C
 HOTTEST = 325.15  # K: 52 °C
 HEAT = 1500.0  # J/kg/K: a first guess at the heat capacity of contents at constant volume
+LEAST_SPACE = 0.01  # of a bottle, that air takes up however full: squeezed further it dissolves (common practice)
+_DENSE = 0.2  # beyond the critical density by this share a fluid leaves air no room of its own
 _BELOW_500_BAR = 900.0  # kg/m3: so much stands below 500 bar at any temperature that is taken
 
 
@@ -120,8 +122,8 @@ def pressure_and_energy(volume: float, mass: float, temperature: float, air: flo
 
     Assumptions
     -----------
-    Equilibrium. Air stays in the vapour's space, doesn't dissolve, and adds its pressure by
-    Dalton's law.
+    Equilibrium. Air stays in the vapour's space, or a hundredth of the bottle where that is
+    less, and adds its pressure by Dalton's law.
 
     Valid for
     ---------
@@ -142,12 +144,12 @@ def pressure_and_energy(volume: float, mass: float, temperature: float, air: flo
     pressure, energy = fluid.pressure_energy(mass / volume, temperature)
     if air:
         quality = fluid.quality()
-        space = volume
         if quality is not None:
-            space = quality * mass / fluid.saturation(min(temperature, T_SATURATION_MAX))[2]
-        elif temperature <= T_SATURATION_MAX and mass / volume > RHO_CRITICAL:
-            space = 0.0  # full of liquid; above the critical point a fluid takes air in
-        pressure += air * temperature / max(space, 1e-6 * volume)
+            space = quality * mass / saturated(min(temperature, T_SATURATION_MAX))[2]
+        else:
+            # A dense fluid takes the room away bit by bit, so that pressure doesn't jump.
+            space = volume * (1.0 - (mass / volume / RHO_CRITICAL - 1.0) / _DENSE)
+        pressure += air * temperature / min(max(space, LEAST_SPACE * volume), volume)
     return pressure, mass * energy
 
 
@@ -205,7 +207,7 @@ def settle(
                     new = to_t(found)
                     if air:
                         space = (liquid * volume - mass) / (liquid - vapour)
-                        pressure += air * new / max(space, 1e-6 * volume)
+                        pressure += air * new / max(space, LEAST_SPACE * volume)
                     return new, pressure, heat
     pair = fluid.pressure_energy
 

@@ -11,7 +11,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from bottles.physics.vessel import HEAT, Vessel, settle
+from bottles.physics.vessel import HEAT, LEAST_SPACE, Vessel, settle
 from bottles.physics.withdrawal import Adiabatic
 from shop.physics.fluid import P_CRITICAL, P_TRIPLE, T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.saturation_table import Side, saturated, saturation_table, to_s, to_t
@@ -87,7 +87,7 @@ class _Above:
         self.s, self.temperature, self.pressure = s, to_t(s), side[0]
         if self.air:
             space = (side[1] * self.volume - self.mass) / (side[1] - side[2])
-            self.pressure += self.air * self.temperature / max(space, 1e-6 * self.volume)
+            self.pressure += self.air * self.temperature / max(space, LEAST_SPACE * self.volume)
         self._drip(side)
         return True
 

@@ -10,6 +10,7 @@ from shop.physics.saturation_table import Side, saturated, saturation_table, to_
 from shop.physics.states import RHO_CRITICAL
 
 _STEP, _STEP_THIN = 0.12, 0.25  # share of the mass that one step in one phase may take; in thin vapour
+_PROBES = (0.0, 1e-3, 0.03, 0.2, 0.5)  # share of a step
 _RISE = (1e-3, 1e-2, 0.1, 0.3, 1.0, 3.0, 10.0, 30.0)  # K below saturation, where a level is looked for
 
 
@@ -78,7 +79,8 @@ class TwoPhase:
         if self._end is None:
             _, temperature, side = self._at(left)
             if temperature > T_TRIPLE + 1e-9:
-                if left >= self._least(side):
+                # Rounding at the very start of what gathers mustn't pass for its end.
+                if left >= self._least(side) * (1.0 - 1e-12):
                     return True
                 self._past = temperature
             return left >= self.end[0]
@@ -159,12 +161,21 @@ class OnePhase:
         new = (m + dm, max(t + dm * (k1 + 2.0 * (k2 + k3) + k4) / 6.0, T_TRIPLE))
         self._nodes.append((*new, _one_phase_slope(v, c, *new)))
         if _room(v, *new) < 0.0:
-            edge = (
-                find_root(lambda left: _room(v, left, self._temperature(left)), m + dm, m, tolerance=1e-9 * m)
-                if _room(v, m, t) > 0.0
-                else m
-            )
-            self._end = (edge, self._temperature(edge))
+            self._end = self._crossing(m, m + dm)
+
+    def _crossing(self, m: float, past: float) -> tuple[float, float]:
+        """Mass and temperature where saturation is met in the last step."""
+        v = self._v
+
+        def room(left: float) -> float:
+            return _room(v, left, self._temperature(left))
+
+        # A stage may begin on saturation itself, leave it, and come back.
+        clear = next((left for left in (m + share * (past - m) for share in _PROBES) if room(left) > 0.0), None)
+        if clear is None:
+            return m, self._temperature(m)
+        edge = find_root(room, past, clear, tolerance=1e-9 * m)
+        return edge, self._temperature(edge)
 
     def _temperature(self, left: float) -> float:
         """Temperature between two steps."""

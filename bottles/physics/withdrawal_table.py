@@ -97,9 +97,9 @@ class Drain:
     def s_at(self, mass: float) -> float:
         """The table's variable when a mass is left."""
         s0, m0, slope0 = self._met
-        if mass == m0:
-            return s0
         s = s0 + (mass - m0) / slope0 if slope0 < 0.0 else s0
+        if abs(mass - m0) <= 1e-9 * m0 and slope0 < 0.0:
+            return s
         for _ in range(3):
             if not self._s0 < s < self._table.s_cold:
                 break
@@ -135,10 +135,11 @@ class Drain:
             else:
                 high = s
             new = s - gap / slope if slope < 0.0 else high
-            if not low < new < high:
+            if low < new < high:
+                if abs(new - s) < _NEAR:
+                    return new
+            else:
                 new = 0.5 * (low + high)
-            if abs(new - s) < _NEAR:
-                return new
             s = new
         return s
 

@@ -1,9 +1,13 @@
-"""What any two bottles must keep to: conservation, order, monotony, units, an answer or a sentence."""
+"""What any two bottles must keep to: conservation, order, monotony, units, an answer or a sentence.
+
+`TAREBOOK_EXAMPLES=20000 python -m pytest tests/physics/test_transfer_properties.py -k any` is the long run.
+"""
 
 from __future__ import annotations
 
 import json
 import math
+import os
 
 import pytest
 from hypothesis import assume, given, reject, settings
@@ -18,6 +22,7 @@ from shop.physics.fluid import ATMOSPHERE, T_SATURATION_MAX, T_TRIPLE, load, sat
 from shop.physics.units import in_own_unit, parse_mass, parse_pressure, parse_temperature, parse_volume
 from tests.physics.stepping import step_mixed
 
+MANY = int(os.environ.get("TAREBOOK_EXAMPLES", "250"))
 LIMITS = {"mixed": mixed, "wall_condensing": wall_condensing, "held": held}
 LIMIT, VOLUME, WALL = 4.624, 6.8e-3, wall_heat("aluminium", 5.9)
 STEEL = wall_heat("steel", 32.0)
@@ -90,7 +95,7 @@ def energy(vessel, mass, kelvin):
     return pressure_and_energy(vessel.volume_m3, mass, kelvin)[1] + vessel.wall_j_k * kelvin
 
 
-@settings(max_examples=250, deadline=2000)
+@settings(max_examples=MANY, deadline=2000)
 @given(refills())
 def test_any_refill_gets_an_answer_or_a_sentence(asked):
     try:
@@ -117,7 +122,7 @@ def test_any_refill_gets_an_answer_or_a_sentence(asked):
             assert told.mixed.source_final_pa == pytest.approx(told.mixed.receiver_final_pa, rel=2e-3)
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=MANY, deadline=None)
 @given(refills().filter(lambda asked: asked["start"].kind in (VENTED, OWN_VAPOUR)))
 def test_mass_and_energy_are_conserved_between_any_two_bottles(asked):
     source = asked["source"]
@@ -134,9 +139,9 @@ def test_mass_and_energy_are_conserved_between_any_two_bottles(asked):
     assert after - before == pytest.approx(0.0, abs=1e-6 * 4e5 * told.moved_kg + 1e-11 * abs(before))
 
 
-@settings(max_examples=120, deadline=None)
+@settings(max_examples=MANY, deadline=None)
 @given(refills())
-def test_the_limits_do_not_depend_on_what_was_asked_first(asked):
+def test_the_limits_of_any_refill_do_not_depend_on_what_was_asked_first(asked):
     receiver = receiver_of(asked)
     one, two = (Transfer(asked["source"], receiver, asked["line_volume_m3"]) for _ in range(2))
     forth = [LIMITS[name](one, asked["limit_kg"]) for name in LIMITS]
