@@ -125,6 +125,8 @@ class PlanWords:
                 f"Chill in {cold['name']} from {self._at(one['chill_from_s'])} to {self._at(one['chill_until_s'])}, "
                 f"to {words.temperature(one['start_mk'])}"
             )
+        elif one["start_mk"] < self.told["room_mk"] - 2_000:
+            chill = f"Cold already, {words.temperature(one['start_mk'])}"
         return {
             "code": one["bottle"], "url": _of(one["bottle"]), "at": self._at(draws[0]["from_s"]),
             "until": self._at(draws[-1]["until_s"]), "chill": chill,
@@ -147,10 +149,13 @@ class PlanWords:
 
     def _sources(self) -> dict[str, Any]:
         """The supplies running down: a table of each draw, and the same as a chart."""
-        words, rows, lines = self.words, [], []
+        words, rows, lines, untouched = self.words, [], [], []
         unit = words.units.mass if words.units.mass == "kg" else "lb"
         size = 1000.0 if unit == "kg" else 453.59237
         for one in self.told["sources"]:
+            if one["end_g"] == one["net_g"]:
+                untouched.append(f"{one['code']} ({words.mass(one['net_g'])})")
+                continue
             rows.append([one["code"], "now", words.mass(one["net_g"]), words.pressure(one["pa"]), words.temperature(one["mk"])])
             points: list[tuple[float, float]] = [(0.0, one["net_g"] / size)]
             for filled in self.told["fills"]:
@@ -162,12 +167,12 @@ class PlanWords:
                         ])  # fmt: skip
                         points.append((draw["until_s"] / 3600.0, draw["left_g"] / size))
             lines.append(Series(one["code"], sorted(points), kind="step"))
-        drawn = [line for line in lines if len(line.points) > 1]
-        chart = Chart("Supply bottles running down", Axis("Hours from now", "h"), Axis("Nitrous", unit, low=0.0), drawn)
+        chart = Chart("Supply bottles running down", Axis("Hours from now", "h"), Axis("Nitrous", unit, low=0.0), lines)
         return {
             "caption": "Supply bottles running down", "rows": rows,
             "head": ["Supply bottle", "When", "Holds", "Gauge", "Temperature"],
-            "svg": mark_safe(to_svg(chart, id="plan-chart")) if drawn else "",
+            "svg": mark_safe(to_svg(chart, id="plan-chart")) if lines else "",
+            "untouched": untouched,
         }  # fmt: skip
 
     def _empty(self, one: dict[str, Any]) -> dict[str, Any]:

@@ -113,7 +113,8 @@ class _Tree:
             short += self._short[number]
             if one.promised_s is not None:
                 broken += not self._able[number] or until > min(one.promised_s, day.closes_s)
-                late += max(0, min(free + day.fill_s, day.closes_s) - one.promised_s) // 60
+                ends_s = min(until, day.closes_s) if self._able[number] else day.closes_s
+                late += max(0, ends_s - one.promised_s) // 60
         # Each hose fills one bottle after another, whichever they are.
         turns = sorted(max(hose, free) + day.fill_s * (turn + 1) for hose in hoses for turn in range(len(ends)))
         minutes += sum(max(pair) // 60 for pair in zip(sorted(ends), turns, strict=False))

@@ -44,6 +44,12 @@ class Fills:
         self._after: dict[_Key, tuple[float, float]] = {}
         self._pace: dict[_Key, float] = {}
 
+    def alike(self, source: int, other: int) -> bool:
+        """Whether two supply bottles are of one kind and as warm."""
+        return self._kinds[source] == self._kinds[other] and (
+            self.day.sources[source].temperature_k == self.day.sources[other].temperature_k
+        )
+
     def free_kg(self, receiver: Receiver, source: int, net_kg: float, temperature_k: float) -> float:
         """Likely mass without the fill limit; where it's above the bottle's room it may be any figure above."""
         bottle, held, warm = receiver

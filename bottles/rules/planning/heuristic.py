@@ -15,8 +15,8 @@ from bottles.rules.planning.problem import Choice, Day, Plan, Score
 from bottles.rules.planning.schedule import Position, Rehearsal
 
 Watch = Callable[[int, int], None]  # how many partial plans were looked at, of how many at most
-LOOKED_AT = 6_000  # partial plans
-TRANSFERS = 2_000  # transfers worked out anew
+LOOKED_AT = 14_000  # partial plans
+TRANSFERS = 2_500  # transfers worked out anew
 _WATCHED_EVERY = 100
 _NEARLY_EMPTY = 1.5  # times what vapour alone holds
 
@@ -89,9 +89,13 @@ def _orders(rehearsal: Rehearsal) -> Iterator[list[int]]:
         when = day.bottles[one].promised_s
         return day.closes_s * 2 if when is None else when
 
-    yield sorted(every, key=lambda one: (promised(one), ready[one], one))
+    def need(one: int) -> float:
+        return rehearsal.good_kg[one] - day.bottles[one].net_kg
+
+    yield sorted(every, key=lambda one: (promised(one), need(one), one))
+    yield sorted(every, key=lambda one: (day.bottles[one].promised_s is None, need(one), one))
+    yield sorted(every, key=lambda one: (need(one), one))
     yield sorted(every, key=lambda one: (promised(one) - ready[one], one))
-    yield sorted(every, key=lambda one: (rehearsal.good_kg[one] - day.bottles[one].net_kg, one))
 
 
 def _greedy(search: Search, order: Sequence[int]) -> list[Choice]:

@@ -17,6 +17,7 @@ from bottles.rules.planning.problem import LEAST_DRAW_KG, MOST_DRAWS, Choice, Da
 from shop.physics.fluid import T_SATURATION_MAX, engine
 
 _NOBODY = -1
+_ALIKE_KG = 0.3  # full supply bottles of one delivery differ by as much
 _T = TypeVar("_T")
 
 
@@ -62,8 +63,11 @@ class Rehearsal:
         )  # fmt: skip
 
     def choices(self, at: Position, bottle: int) -> Iterator[Choice]:
-        """Every choice for a bottle: each start, and supply bottles in turn, the weaker first."""
-        weakest_first = sorted(range(len(at.net_kg)), key=lambda each: self._strength(at, each))
+        """Every choice for a bottle: each start, and supply bottles in turn, the weaker first.
+
+        Of several in store that are alike and untouched one is tried: another would do the same.
+        """
+        weakest_first = sorted(self._unlike(at), key=lambda each: self._strength(at, each))
         for start in range(len(self.day.bottles[bottle].starts)):
             for many in range(1, min(MOST_DRAWS, len(weakest_first)) + 1):
                 for sources in combinations(weakest_first, many):
@@ -129,6 +133,17 @@ class Rehearsal:
                 fills.append(filled)
         return at, tuple(fills)
 
+    def _unlike(self, at: Position) -> list[int]:
+        found: list[int] = []
+        for number, one in enumerate(self.day.sources):
+            twin = at.source_at[number] is None and any(
+                at.source_at[other] is None and abs(at.net_kg[other] - at.net_kg[number]) <= _ALIKE_KG
+                and self.fills.alike(other, number) for other in found
+            )  # fmt: skip
+            if not twin and one.net_kg > 0.0:
+                found.append(number)
+        return found
+
     def _strength(self, at: Position, source: int) -> tuple[float, int]:
         return at.net_kg[source] / self.day.sources[source].volume_m3, source
 
@@ -163,7 +178,8 @@ class Rehearsal:
         promised, enough = self.day.bottles[number].promised_s, filled.final_kg >= self.good_kg[number] - 1e-6
         if promised is not None:
             broken += until > promised or not enough
-            late += max(0, -((promised - until) // 60))
+            # What isn't good enough keeps no promise: it's as late as what isn't filled.
+            late += max(0, -((promised - until) // 60) if enough else (self.day.closes_s - promised) // 60)
         short += 0 if enough else hectograms(self.good_kg[number] - filled.final_kg)
         return (
             broken, late, good + enough, short, changes + sum(draw.changed for draw in filled.draws), minutes + until // 60,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from itertools import permutations, product
+from itertools import pairwise, permutations, product
 from typing import Any
 
 import pytest
@@ -114,13 +114,13 @@ def check(of: Day, plan: Plan) -> None:
     for name in ("station", "source"):
         for one in {getattr(draw, name) for draw, _ in draws}:
             taken = sorted((draw.from_s, draw.until_s) for draw, _ in draws if getattr(draw, name) == one)
-            assert all(before[1] <= after[0] for before, after in zip(taken, taken[1:], strict=False))
+            assert all(before[1] <= after[0] for before, after in pairwise(taken))
     for filled in plan.fills:
         one = of.bottles[filled.choice.bottle]
         start = one.starts[filled.choice.start]
         assert filled.final_kg <= one.target_kg + 1e-9
         assert filled.final_kg == pytest.approx(one.net_kg + sum(draw.moved_kg for draw in filled.draws))
-        assert 0 <= filled.draws[0].from_s and filled.until_s <= of.closes_s
+        assert filled.draws[0].from_s >= 0 and filled.until_s <= of.closes_s
         if start.place is not None:
             assert filled.chill_from_s is not None and filled.chill_until_s is not None
             assert filled.chill_until_s - filled.chill_from_s >= start.seconds
