@@ -68,7 +68,7 @@ class Gathered:
 
 def gather(shop: Shop, inputs: Mapping[str, Any]) -> Gathered:
     """Gather a day by what it's planned with; see `bottles.services.planning.Settings`."""
-    now, book = clock.now(), rulebook(shop)
+    now, book = clock.now().replace(microsecond=0), rulebook(shop)
     room_k = inputs["room_mk"] / 1000
     colds = _colds(inputs)
     stations = list(Station.objects.filter(active=True, scale__isnull=False).order_by("name"))
