@@ -17,7 +17,7 @@ from bottles.physics.withdrawal import Held
 from shop.physics.fluid import T_SATURATION_MAX, engine
 from shop.physics.roots import find_root, first_true
 
-PHYSICS_VERSION = "transfer 1"
+PHYSICS_VERSION = "transfer 2"
 FILL_LIMIT = "fill limit"
 EQUAL = "pressures equal"
 LIQUID_OUT = "source out of liquid"
