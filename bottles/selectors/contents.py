@@ -5,11 +5,13 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
+from typing import Any
 
-from django.db.models import Q
+from django.db.models import Q, QuerySet
 
 from bottles.models import Account, Bottle, Line, Standing, Weighing
 from bottles.physics.weighing import net_uncertainty
+from shop.base.composed import composed
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,7 +48,7 @@ def holdings(bottles: Sequence[Bottle], standings: Iterable[Standing] | None = N
     if standings is None:
         standings = Standing.objects.filter(pk__in=keys).select_related("weighing__scale")
     weighings = {one.pk: one.weighing for one in standings if one.weighing}
-    books = dict(Account.objects.filter(bottle__in=keys).values_list("bottle_id", "balance_g"))
+    books = dict(_books(keys))
     since = _since(weighings, keys)
     return {key: _holding(weighings.get(key), books.get(key), since.get(key, (0, 0))) for key in keys}
 
@@ -60,15 +62,8 @@ def _since(weighings: Mapping[int, Weighing], keys: list[int]) -> dict[int, tupl
     if not keys:
         return {}
     oldest = min((row.happened_at for row in weighings.values()), default=None)
-    lines = Line.objects.filter(Q(source__bottle__in=keys) | Q(target__bottle__in=keys))
-    if oldest is not None and len(weighings) == len(keys):
-        lines = lines.filter(movement__happened_at__gte=oldest)
+    rows = _moved_since(keys, oldest) if oldest is not None and len(weighings) == len(keys) else _moved(keys)
     found: dict[int, tuple[int, int]] = {}
-    rows = lines.values_list(
-        "source__bottle_id", "target__bottle_id", "grams", "error_g", "movement__happened_at", "movement__act_id",
-        "movement__weighing__act_id", "movement__reverses__weighing__act_id", "movement__reverses__act_id",
-        "movement__reversal__id", "movement__reverses_id",
-    )
     for source, target, grams, error, happened_at, act, weighing_act, undone_weighing, undone, reversed_by, reverses in rows:
         place = (happened_at, undone_weighing or undone or weighing_act or act)
         for bottle, sign in ((source, -1), (target, 1)):
@@ -79,6 +74,29 @@ def _since(weighings: Mapping[int, Weighing], keys: list[int]) -> dict[int, tupl
             spread = before[1] if reversed_by or reverses else net_uncertainty(before[1], error)
             found[bottle] = (before[0] + sign * grams, spread)
     return found
+
+
+@composed
+def _books(keys: Iterable[int]) -> QuerySet[Any]:
+    return Account.objects.filter(bottle__in=keys).values_list("bottle_id", "balance_g")
+
+
+@composed
+def _moved(keys: Iterable[int]) -> QuerySet[Any]:
+    return _lines(keys)
+
+
+@composed
+def _moved_since(keys: Iterable[int], moment: datetime) -> QuerySet[Any]:
+    return _lines(keys).filter(movement__happened_at__gte=moment)
+
+
+def _lines(keys: Iterable[int]) -> QuerySet[Any]:
+    return Line.objects.filter(Q(source__bottle__in=keys) | Q(target__bottle__in=keys)).values_list(
+        "source__bottle_id", "target__bottle_id", "grams", "error_g", "movement__happened_at", "movement__act_id",
+        "movement__weighing__act_id", "movement__reverses__weighing__act_id", "movement__reverses__act_id",
+        "movement__reversal__id", "movement__reverses_id",
+    )
 
 
 def _holding(weighing: Weighing | None, books: int | None, since: tuple[int, int]) -> Holding:

@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
-from django.db.models import Q
+from django.db.models import Q, QuerySet
 
 from bottles.models import Account, Bottle, Line, Weighing
+from shop.base.composed import composed
 
 MOST = 400  # lines and weighings that a chart takes, the latest of each
 
@@ -61,21 +62,8 @@ class Course:
 
 def course_over_time(bottle: Bottle) -> Course:
     """Return the course of a bottle's contents: two queries, three for a long one."""
-    weighings = [
-        Weighed(*row)
-        for row in Weighing.objects.filter(bottle=bottle, strike__isnull=True)
-        .order_by("-happened_at", "-id")
-        .values_list("id", "happened_at", "net_g", "error_g", "typed", "scale__name", "step", "wet", "act__person__name")[:MOST]
-    ][::-1]
-    lines = [
-        Moved(*row)
-        for row in Line.objects.filter(Q(source__bottle=bottle) | Q(target__bottle=bottle))
-        .order_by("-movement__happened_at", "-id")
-        .values_list(
-            "movement__happened_at", "grams", "origin", "source_id", "target_id", "target__bottle_id", "movement_id",
-            "movement__kind", "movement__note", "movement__reverses_id", "movement__reversal__id", "movement__act__person__name",
-        )[:MOST]
-    ][::-1]  # fmt: skip
+    weighings = [Weighed(*row) for row in reversed(_weighings(bottle.pk))]
+    lines = [Moved(*row) for row in reversed(_lines(bottle.pk))]
     level = _before(bottle, lines)
     levels: list[tuple[datetime, int]] = []
     for line in lines:
@@ -91,7 +79,29 @@ def course_over_time(bottle: Bottle) -> Course:
 def others_of(bottle: Bottle, lines: Sequence[Moved]) -> Mapping[int, Account]:
     """Return the accounts on the other side of some lines, by key: one query."""
     keys = {line.source if line.own == bottle.pk else line.target for line in lines}
-    return Account.objects.select_related("bottle", "customer", "car").in_bulk(keys)
+    return {account.pk: account for account in _accounts(keys)} if keys else {}
+
+
+@composed
+def _weighings(bottle: int) -> QuerySet[Any]:
+    rows = Weighing.objects.filter(bottle=bottle, strike__isnull=True).order_by("-happened_at", "-id")
+    return rows.values_list(
+        "id", "happened_at", "net_g", "error_g", "typed", "scale__name", "step", "wet", "act__person__name"
+    )[:MOST]
+
+
+@composed
+def _lines(bottle: int) -> QuerySet[Any]:
+    rows = Line.objects.filter(Q(source__bottle=bottle) | Q(target__bottle=bottle))
+    return rows.order_by("-movement__happened_at", "-id").values_list(
+        "movement__happened_at", "grams", "origin", "source_id", "target_id", "target__bottle_id", "movement_id",
+        "movement__kind", "movement__note", "movement__reverses_id", "movement__reversal__id", "movement__act__person__name",
+    )[:MOST]  # fmt: skip
+
+
+@composed
+def _accounts(keys: Iterable[int]) -> QuerySet[Account]:
+    return Account.objects.filter(pk__in=keys).select_related("bottle", "customer", "car")
 
 
 def _change(bottle: Bottle, line: Moved) -> int:

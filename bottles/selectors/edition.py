@@ -5,10 +5,13 @@ from __future__ import annotations
 import datetime
 from typing import Any
 
+from django.db.models import QuerySet
+
 from bottles.rules.edition import RuleEdition, entered_by_hand
 from bottles.rules.edition_files import edition_on
 from bottles.rules.policy import Overlay, Policy
 from shop.base import models
+from shop.base.composed import composed
 from shop.base.models import Shop
 
 LIKE = "ADR"  # whose look and wording a rule set entered by hand borrows
@@ -16,7 +19,12 @@ LIKE = "ADR"  # whose look and wording a rule set entered by hand borrows
 
 def policy_row(on: datetime.date) -> models.Policy | None:
     """Return the shop's policy in force on a day: the latest that had begun."""
-    return models.Policy.objects.filter(effective_from__lte=on).order_by("-effective_from", "-id").first()
+    return next(iter(_policies(on)), None)
+
+
+@composed
+def _policies(on: datetime.date) -> QuerySet[models.Policy]:
+    return models.Policy.objects.filter(effective_from__lte=on).order_by("-effective_from", "-id")[:1]
 
 
 def policy_of(row: models.Policy | None) -> Policy:

@@ -11,11 +11,14 @@ from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, NamedTuple
 
+from django.db.models import QuerySet
+
 from bottles.models import Bottle, Condition, Custody, Refill, RefillCheck, Stamp, Standing
 from bottles.rules.facts import Condition as Noted
 from bottles.rules.facts import Contents, Facts, Permit
 from bottles.rules.marks import read_mark
 from bottles.rules.stamps import DateStamp
+from shop.base.composed import composed
 from shop.people.models import Consent
 from shop.rules.month import Month
 
@@ -67,13 +70,11 @@ def facts_of(
 
 def _read(keys: list[int], standings: Mapping[int, Standing], star_items: Collection[str]) -> dict[int, _Rows]:
     found: dict[int, _Rows] = {key: _Rows(standings.get(key)) for key in keys}
-    stamps = Stamp.objects.filter(bottle__in=keys, strike__isnull=True).order_by("id")
-    for key, *columns in stamps.values_list("bottle_id", *_Stamped._fields):
+    for key, *columns in _stamps(keys):
         found[key].stamps.append(_Stamped(*columns))
-    conditions = Condition.objects.filter(bottle__in=keys, end__isnull=True).order_by("id")
-    for key, code, seen_on in conditions.values_list("bottle_id", "code", "seen_on"):
+    for key, code, seen_on in _conditions(keys):
         found[key].conditions.append(Noted(code, seen_on))
-    for key in Refill.objects.filter(bottle__in=keys, closed_at__isnull=True).values_list("bottle_id", flat=True):
+    for key in _open_refills(keys):
         found[key].open_refill = True
     _read_journeys(found)
     _read_consents(found)
@@ -81,11 +82,39 @@ def _read(keys: list[int], standings: Mapping[int, Standing], star_items: Collec
     return found
 
 
+@composed
+def _stamps(keys: Iterable[int]) -> QuerySet[Any]:
+    stamps = Stamp.objects.filter(bottle__in=keys, strike__isnull=True).order_by("id")
+    return stamps.values_list("bottle_id", *_Stamped._fields)
+
+
+@composed
+def _conditions(keys: Iterable[int]) -> QuerySet[Any]:
+    conditions = Condition.objects.filter(bottle__in=keys, end__isnull=True).order_by("id")
+    return conditions.values_list("bottle_id", "code", "seen_on")
+
+
+@composed
+def _open_refills(keys: Iterable[int]) -> QuerySet[Any]:
+    return Refill.objects.filter(bottle__in=keys, closed_at__isnull=True).values_list("bottle_id", flat=True)
+
+
+@composed
+def _journeys(keys: Iterable[int]) -> QuerySet[Any]:
+    journeys = Custody.objects.filter(bottle__in=keys).exclude(kind="moved").order_by("happened_at", "id")
+    return journeys.values_list("bottle_id", "kind", "happened_at")
+
+
+@composed
+def _consents(customers: Iterable[int]) -> QuerySet[Any]:
+    consents = Consent.objects.filter(customer__in=customers, purpose="fill").order_by("on", "id")
+    return consents.values_list("customer_id", "given")
+
+
 def _read_journeys(found: dict[int, _Rows]) -> None:
     """When each bottle last left, and last came back: a weight from before that is stale."""
-    journeys = Custody.objects.filter(bottle__in=found.keys()).exclude(kind="moved").order_by("happened_at", "id")
     out: set[int] = set()
-    for key, kind, at in journeys.values_list("bottle_id", "kind", "happened_at"):
+    for key, kind, at in _journeys(found.keys()):
         if kind == "in":
             if key in out:
                 found[key].came_back = at
@@ -101,8 +130,7 @@ def _read_consents(found: dict[int, _Rows]) -> None:
         ownership = rows.standing.ownership if rows.standing else None
         if ownership and ownership.customer_id:
             owners[ownership.customer_id].append(rows)
-    consents = Consent.objects.filter(customer__in=owners.keys(), purpose="fill").order_by("on", "id")
-    for customer, given in consents.values_list("customer_id", "given"):
+    for customer, given in _consents(owners.keys()) if owners else ():
         for rows in owners[customer]:
             rows.consent = given
 

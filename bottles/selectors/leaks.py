@@ -11,12 +11,14 @@ from collections import defaultdict
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from datetime import datetime, timedelta
+from typing import Any
 from uuid import UUID
 
 from django.db.models import Exists, F, Max, Min, OuterRef, Q, QuerySet
 
 from bottles.models import Bottle, Custody, Draw, Line, Refill, Standing, Weighing
 from bottles.rules.leaks import Drift, Noise, Reading, drift_of
+from shop.base.composed import composed
 from shop.base.models import Act
 
 WEEK = timedelta(weeks=1)
@@ -49,12 +51,12 @@ class Watch:
 
 def watch_of(bottle: Bottle) -> Watch | None:
     """Return what the leak watch knows of one bottle, or None where no weighing of it counts: one query."""
-    return next(iter(_watched(_stored().filter(bottle=bottle))), None)
+    return next(iter(_watched(_of_one(bottle.pk))), None)
 
 
 def watches() -> list[Watch]:
     """Return every stored bottle with a weighing that counts, by code: one query."""
-    return sorted(_watched(_stored()), key=lambda watch: watch.code)
+    return sorted(_watched(_columns(_stored())), key=lambda watch: watch.code)
 
 
 def not_watched(watched: int) -> int:
@@ -69,7 +71,7 @@ def leaking() -> tuple[str, ...]:
     those fitted whose readings differ by more than their scale can lie. One query where nothing was.
     """
     global _known
-    latest = Act.objects.order_by("-id").values_list("key", flat=True).first()
+    latest = next(iter(_latest_act()), None)
     kept = _known
     if kept is not None and latest is not None and kept[0] == latest:
         return kept[1]
@@ -81,7 +83,7 @@ def leaking() -> tuple[str, ...]:
         .filter(apart__gt=F("scale__resolution_g") + F("scale__error_g"))
     )
     bottles = {row["bottle"] for row in wide}
-    found = _watched(_stored().filter(bottle__in=bottles)) if bottles else []
+    found = _watched(_columns(_stored().filter(bottle__in=bottles))) if bottles else []
     codes = tuple(sorted(watch.code for watch in found if watch.drift and watch.drift.verdict == "leaks"))
     if latest is not None:
         _known = (latest, codes)
@@ -89,6 +91,22 @@ def leaking() -> tuple[str, ...]:
 
 
 _known: tuple[UUID, tuple[str, ...]] | None = None  # as of an act, by its key
+
+
+@composed
+def _latest_act() -> QuerySet[Any]:
+    return Act.objects.order_by("-id").values_list("key", flat=True)[:1]
+
+
+@composed
+def _of_one(bottle: int) -> QuerySet[Any]:
+    return _columns(_stored().filter(bottle=bottle))
+
+
+def _columns(weighings: QuerySet[Weighing]) -> QuerySet[Any]:
+    return weighings.order_by("bottle", "happened_at", "id").values_list(
+        "bottle", "bottle__code", "scale", "tare", "scale__name", "scale__resolution_g", "scale__error_g", "happened_at", "net_g"
+    )
 
 
 def _stored() -> QuerySet[Weighing]:
@@ -111,11 +129,8 @@ def _stored() -> QuerySet[Weighing]:
     )
 
 
-def _watched(weighings: QuerySet[Weighing]) -> Iterable[Watch]:
+def _watched(rows: Iterable[tuple[Any, ...]]) -> Iterable[Watch]:
     """Fit each bottle's readings, scale by scale; the one that is raised speaks, else the one that tells most."""
-    rows = weighings.order_by("bottle", "happened_at", "id").values_list(
-        "bottle", "bottle__code", "scale", "tare", "scale__name", "scale__resolution_g", "scale__error_g", "happened_at", "net_g"
-    )
     bottles: dict[int, dict[tuple[int, int], list[tuple[datetime, int]]]] = defaultdict(lambda: defaultdict(list))
     codes: dict[int, str] = {}
     scales: dict[int, tuple[str, Noise]] = {}

@@ -7,8 +7,12 @@ from collections.abc import Iterable
 from django.db.models import QuerySet
 
 from bottles.models import Bottle, Draw, Refill, Weighing
+from shop.base.composed import composed
+
+LISTED = 5  # refills on a bottle's own page
 
 
+@composed
 def open_refills() -> QuerySet[Refill]:
     """Return the open refills, the oldest first."""
     return _listed().filter(closed_at__isnull=True).order_by("opened_at", "id")
@@ -19,17 +23,19 @@ def closed_refills() -> QuerySet[Refill]:
     return _listed().filter(closed_at__isnull=False).order_by("-closed_at", "-id")
 
 
-def refills_of(bottle: Bottle) -> QuerySet[Refill]:
-    """Return a bottle's refills, the latest first."""
-    return bottle.refills.select_related("station__scale").order_by("-opened_at", "-id")
+def latest_refills_of(bottle: Bottle) -> list[Refill]:
+    """Return as many of a bottle's refills as its page lists and one more, the latest first."""
+    found = _refills(bottle.pk)
+    for refill in found:
+        refill.bottle = bottle
+    return found
 
 
 def last_weighings(refills: Iterable[Refill]) -> dict[int, Weighing]:
     """Return each refill's last weighing of the bottle being filled, by the refill's key: one query."""
     found: dict[int, Weighing] = {}
     keys = {refill.pk: refill.bottle_id for refill in refills}
-    rows = Weighing.objects.filter(refill__in=keys, strike__isnull=True).order_by("happened_at", "act_id", "id")
-    for row in rows:
+    for row in _weighings(keys):
         if row.refill_id and keys[row.refill_id] == row.bottle_id:
             found[row.refill_id] = row
     return found
@@ -37,8 +43,22 @@ def last_weighings(refills: Iterable[Refill]) -> dict[int, Weighing]:
 
 def last_sources(refills: Iterable[Refill]) -> dict[int, Bottle]:
     """Return the supply bottle in force of each refill: one query."""
-    rows = Draw.objects.filter(refill__in=[refill.pk for refill in refills]).select_related("source").order_by("id")
-    return {row.refill_id: row.source for row in rows}
+    return {row.refill_id: row.source for row in _draws([refill.pk for refill in refills])}
+
+
+@composed
+def _refills(bottle: int) -> QuerySet[Refill]:
+    return Refill.objects.filter(bottle=bottle).select_related("station__scale").order_by("-opened_at", "-id")[: LISTED + 1]
+
+
+@composed
+def _weighings(refills: Iterable[int]) -> QuerySet[Weighing]:
+    return Weighing.objects.filter(refill__in=refills, strike__isnull=True).order_by("happened_at", "act_id", "id")
+
+
+@composed
+def _draws(refills: Iterable[int]) -> QuerySet[Draw]:
+    return Draw.objects.filter(refill__in=refills).select_related("source").order_by("id")
 
 
 def _listed() -> QuerySet[Refill]:

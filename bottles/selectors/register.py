@@ -5,6 +5,7 @@ from __future__ import annotations
 from django.db.models import Exists, OuterRef, Q, QuerySet
 
 from bottles.models import Bottle, Condition, Custody, Ownership, Stamp, Standing, Tare
+from shop.base.composed import composed
 from shop.base.models import Place
 
 STATES = [
@@ -20,19 +21,31 @@ STATES = [
 
 def standing_of(bottle: Bottle) -> Standing:
     """The bottle's standing with all that its page shows; empty where nothing was told yet."""
-    found = (
-        Standing.objects.filter(bottle=bottle)
-        .select_related("ownership__customer", "custody__place", "custody__car", "tare", "weighing__scale")
-        .first()
-    )
-    return found or Standing(bottle=bottle)
+    found: Standing = next(iter(_standing(bottle.pk)), None) or Standing(bottle=bottle)
+    return found
 
 
 def stamps_of(bottle: Bottle) -> list[Stamp]:
     """Every stamp ever read off it by kind, the latest first, struck ones among them."""
     order = [kind for kind, _ in Stamp.KINDS]
-    found = Stamp.objects.filter(bottle=bottle).select_related("strike__act").order_by("-year", "-month", "-id")
-    return sorted(found, key=lambda stamp: order.index(stamp.kind))
+    return sorted(_stamps(bottle.pk), key=lambda stamp: order.index(stamp.kind))
+
+
+@composed
+def _standing(bottle: int) -> QuerySet[Standing]:
+    return Standing.objects.filter(bottle=bottle).select_related(
+        "ownership__customer", "custody__place", "custody__car", "tare", "weighing__scale"
+    )
+
+
+@composed
+def _stamps(bottle: int) -> QuerySet[Stamp]:
+    return Stamp.objects.filter(bottle=bottle).select_related("strike__act").order_by("-year", "-month", "-id")
+
+
+@composed
+def _conditions(bottle: int) -> QuerySet[Condition]:
+    return Condition.objects.filter(bottle=bottle).select_related("end").order_by("end", "-seen_on", "-id")
 
 
 def tares_of(bottle: Bottle) -> QuerySet[Tare]:
@@ -40,9 +53,9 @@ def tares_of(bottle: Bottle) -> QuerySet[Tare]:
     return Tare.objects.filter(bottle=bottle).prefetch_related("parts").order_by("-since", "-id")
 
 
-def conditions_of(bottle: Bottle) -> QuerySet[Condition]:
+def conditions_of(bottle: Bottle) -> list[Condition]:
     """What was noted on it, open ones first, then the latest."""
-    return Condition.objects.filter(bottle=bottle).select_related("end").order_by("end", "-seen_on", "-id")
+    return _conditions(bottle.pk)
 
 
 def owners_of(bottle: Bottle) -> QuerySet[Ownership]:

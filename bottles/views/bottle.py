@@ -25,6 +25,7 @@ from bottles.views.of_bottle import bottle_or_404
 from bottles.views.sections import ACTIONS, ANSWERS, SECTIONS, drawn
 from bottles.views.wording import Words, words_for
 from shop.base import clock
+from shop.base.composed import composed
 from shop.base.models import Act, Place, Shop
 from shop.base.paging import page_of
 from shop.base.permissions import EVERYONE, Role, allow
@@ -44,8 +45,7 @@ def bottle(request: HttpRequest, code: str) -> HttpResponse:
     standing = standing_of(found)
     words = words_for(request, shop)
     told = drawn(request, found, standing, shop)
-    acts = acts_on(found)[: LATEST + 1]
-    rows = history_rows(list(acts), words, shop)
+    rows = history_rows(_latest_acts(subject_of(found)), words, shop)
     context = {
         "bottle": found,
         "line": " · ".join(_line(found, standing, words)),
@@ -99,7 +99,21 @@ def bottles(request: HttpRequest) -> HttpResponse:
 
 def acts_on(bottle: Bottle) -> Any:
     """The acts on a bottle with who did each, the latest first."""
-    return Act.objects.filter(subject=f"bottle:{bottle.code}").annotate(who=F("person__name")).order_by("-id")
+    return _acts(subject_of(bottle))
+
+
+def subject_of(bottle: Bottle) -> str:
+    """The bottle as acts name it."""
+    return f"bottle:{bottle.code}"
+
+
+def _acts(subject: str) -> Any:
+    return Act.objects.filter(subject=subject).annotate(who=F("person__name")).order_by("-id")
+
+
+@composed
+def _latest_acts(subject: str) -> Any:
+    return _acts(subject)[: LATEST + 1]
 
 
 def history_rows(acts: list[Any], words: Words, shop: Shop) -> list[dict[str, Any]]:

@@ -15,7 +15,7 @@ from django.utils.functional import cached_property
 from bottles.forms.refills import AnotherSupplyForm, CloseForm, WaitForm, WeighForm
 from bottles.models import Bottle, Refill, Supply
 from bottles.selectors.filling_offers import Offered, readings_offered
-from bottles.selectors.refill_lists import closed_refills, open_refills, refills_of
+from bottles.selectors.refill_lists import LISTED, closed_refills, latest_refills_of, open_refills
 from bottles.selectors.refills import draws_of, in_force
 from bottles.services import refill_steps as steps
 from bottles.services.forecast_details import forecast_by
@@ -33,8 +33,6 @@ from shop.base.permissions import EVERYONE, allow
 from shop.people.acting import ActView
 from shop.people.models import User
 
-LATEST = 5
-
 
 @allow(EVERYONE, room="counter")
 def refills(request: HttpRequest) -> HttpResponse:
@@ -42,7 +40,7 @@ def refills(request: HttpRequest) -> HttpResponse:
     shop = Shop.objects.get()
     words = refill_words(request, shop)
     page = page_of(request, closed_refills())
-    now = refill_rows(list(open_refills()), words, shop)
+    now = refill_rows(open_refills(), words, shop)
     context = {"open": now, "closed": refill_rows(list(page), words, shop), "page": page}
     return render(request, "bottles/refills.html", context)
 
@@ -250,5 +248,5 @@ def receipt(request: HttpRequest, pk: int) -> HttpResponse:
 def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
     """The bottle's last refills, forecast against what came."""
     words = refill_words(request, seen.shop)
-    found = list(refills_of(seen.bottle)[: LATEST + 1])
-    return {"refills": section_rows(found[:LATEST], words, seen.shop), "more_refills": len(found) > LATEST}
+    found = latest_refills_of(seen.bottle)
+    return {"refills": section_rows(found[:LISTED], words, seen.shop), "more_refills": len(found) > LISTED}

@@ -30,7 +30,7 @@ def counter(request: HttpRequest) -> HttpResponse:
     shop = Shop.objects.get()
     request.shop = shop  # type: ignore[attr-defined]
     words = refill_words(request, shop)
-    refills = list(open_refills())
+    refills = open_refills()
     waiting, standing_here = selected.waiting(), selected.at_the_counter()
     standings = {one.pk: one for one in (*waiting, *standing_here)}
     supplies = selected.supplies()

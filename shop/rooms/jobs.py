@@ -6,12 +6,14 @@ import uuid
 from typing import Any
 
 from django.core.exceptions import PermissionDenied
+from django.db.models import QuerySet
 from django.http import HttpRequest, HttpResponse, HttpResponseRedirect
 from django.shortcuts import get_object_or_404, render
 from django.urls import reverse
 from django.views.decorators.http import require_POST, require_safe
 
 from shop.base import acts, clock, jobs
+from shop.base.composed import composed
 from shop.base.models import Job, Shop
 from shop.base.permissions import DESK, EVERYONE, MANAGERS, allow
 from shop.people.acting import ActForm, ActView
@@ -108,8 +110,13 @@ def may_stop(request: HttpRequest, found: Job) -> bool:
 
 def going_on(request: HttpRequest) -> dict[str, Any] | None:
     """The first piece of long work that a person waits for, for the head of a room; or None."""
-    found = Job.objects.filter(kind="demo.fill", state__in=RUNNING).order_by("id").first()
+    found = next(iter(_going_on()), None)
     return progress(request, found) if found else None
+
+
+@composed
+def _going_on() -> QuerySet[Job]:
+    return Job.objects.filter(kind="demo.fill", state__in=RUNNING).order_by("id")[:1]
 
 
 def what(found: Job) -> str:
