@@ -41,6 +41,9 @@ class _Tree:
         self.rehearsal, self.most, self.watch = rehearsal, most, watch
         self.best: tuple[Choice, ...] = tuple(filled.choice for filled in good.fills)
         self.score = good.score
+        nothing = rehearsal.score(rehearsal.beginning())
+        if nothing < self.score:
+            self.best, self.score = (), nothing
         self.nodes = 0
         day = rehearsal.day
         self._ready = earliest(rehearsal)

@@ -87,11 +87,13 @@ class Rehearsal:
             ready = chill_from + start.seconds
         person, *others = sorted(at.person_free_s)
         ready, held, warm = max(ready, person), bottle.net_kg, start.temperature_k
-        now, draws = at, []
+        now = at
+        draws: list[Drawn] = []
         for source in choice.sources:
             if bottle.target_kg - held < LEAST_DRAW_KG:
                 return None  # full before: the shorter choice is the one to look at
-            drawn = self._draw(now, (choice.bottle, held, warm), source, ready)
+            hose = draws[0].station if draws else None  # a refill stays at its station
+            drawn = self._draw(now, (choice.bottle, held, warm), source, ready, hose)
             if drawn is None or drawn.until_s > day.closes_s:
                 return None
             if source != choice.sources[-1]:
@@ -147,10 +149,16 @@ class Rehearsal:
     def _strength(self, at: Position, source: int) -> tuple[float, int]:
         return at.net_kg[source] / self.day.sources[source].volume_m3, source
 
-    def _draw(self, at: Position, receiver: tuple[int, float, float], source: int, ready: int) -> Drawn | None:
-        """One draw from a supply bottle, as early as it can be; None where nothing goes over."""
+    def _draw(
+        self, at: Position, receiver: tuple[int, float, float], source: int, ready: int, hose: int | None
+    ) -> Drawn | None:  # fmt: skip
+        """One draw from a supply bottle, as early as it can be; None where nothing goes over, or it hangs on another hose."""
         day = self.day
         station = at.source_at[source]
+        if station is None:
+            station = hose
+        elif hose is not None and station != hose:
+            return None
         if station is None:
             if not at.station_free_s:
                 return None

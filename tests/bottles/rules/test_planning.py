@@ -121,6 +121,7 @@ def check(of: Day, plan: Plan) -> None:
         assert filled.final_kg <= one.target_kg + 1e-9
         assert filled.final_kg == pytest.approx(one.net_kg + sum(draw.moved_kg for draw in filled.draws))
         assert filled.draws[0].from_s >= 0 and filled.until_s <= of.closes_s
+        assert len({draw.station for draw in filled.draws}) == 1  # a refill stays at its station
         if start.place is not None:
             assert filled.chill_from_s is not None and filled.chill_until_s is not None
             assert filled.chill_until_s - filled.chill_from_s >= start.seconds
