@@ -19,7 +19,7 @@ STARTS = {
     WEIGHED: "As it weighs now",
 }
 START_HEAD = ["How it starts", "Goes over", "Then holds", "Beside now"]
-FILLS_HEAD = ["Full fills, the supply bottle", "Likely", "If quick", "Heel left", "Next gets"]
+FILLS_HEAD = ["Full fills, the supply bottle", "Likely", "If quick", "Then left", "Next gets"]
 HIDDEN = {"condensation_prior", "near_critical"}  # said with the forecast
 UNKNOWN = "The supply bottle's weight isn't known: weigh it, then its course and its fills can be worked out."
 

@@ -21,7 +21,7 @@ from shop.physics.errors import PhysicsError
 from shop.physics.weights import format_mass
 
 REACHES = {
-    "in every case": ("yes", "The limit is reached in every case"),
+    "in every case": ("yes", "The limit is reached, by the lowest figure too"),
     "likely": ("yes", "The limit is likely reached"),
     "at best": ("after", "The limit is reached at best"),
     "no": ("after", "A short fill: the limit isn't reached"),
@@ -55,18 +55,18 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
     reading = [sentence for code, sentence in (answer.contents.warnings if answer.contents else ())]
     said = {
         "stop": stop_figure(asked.bottle, supply, answer.target_g, words),
-        "danger": reading if answer.danger else [],
+        "danger": [sentence.removeprefix("Danger sign. ") for sentence in reading] if answer.danger else [],
         "blocked": answer.blocked,
         "contradiction": bool(answer.contents and answer.contents.agrees is False and not answer.danger),
-        "span": words.span(answer.low_g, answer.high_g),
-        "likely": words.mass(answer.likely_g) if answer.likely_g is not None else "",
+        "span": words.span(answer.low_g, answer.high_g) if answer.high_g else "nothing",
+        "likely": words.mass(answer.likely_g) if answer.likely_g is not None and not _alike(answer, words) else "",
         "inputs": _inputs(asked, answer, words),
         "method": _method(answer),
         "kind": kind,
         "reached": reached,
         "already": found.reaches_limit == "already",
         "limits": _limits(answer, words),
-        "cold": "" if helps and helps["chills"] else _cold(answer, words), "helps": helps,
+        "cold": "" if helps else _cold(answer, words), "helps": helps,
         "left": _left(answer, supply, words),
         "line": words.small(answer.line_g),
         "line_origin": "entered" if supply.station.line_loss_g is not None else "computed",
@@ -140,7 +140,8 @@ def _method(answer: Answer) -> str:
         known = "How much condenses is midway between the two until the shop's own refills tell (common practice, no source)."
     return (
         "Two bottles, each a volume with its wall; mass and energy conserved; between the transfer that mixes at once (quick) "
-        f"and the one in which vapour condenses on the wall alone (slow to condense). {known}"
+        f"and the one in which vapour condenses on the wall alone (slow to condense). {known} "
+        "Kept at temperature is what would go over if both bottles stayed as warm as they were read, for as long as it takes."
     )
 
 
@@ -160,10 +161,8 @@ def _limits(answer: Answer, words: RefillWords) -> list[tuple[str, str, str]]:
 
 def _cold(answer: Answer, words: RefillWords) -> str:
     found = answer.transferred
-    if found.reaches_limit == "already":
+    if found.reaches_limit == "already" or answer.likely_g is None:
         return ""
-    if answer.likely_g is None:
-        return "How cold it must be for a full fill can't be said before the supply bottle is weighed."
     if found.warmest_receiver_k is None:
         if found.held and found.held.stopped_by == "fill limit":
             return (
@@ -185,11 +184,11 @@ def _cold(answer: Answer, words: RefillWords) -> str:
 
 def _left(answer: Answer, supply: Supply, words: RefillWords) -> str:
     if answer.source_left_g is None:
-        return f"What {supply.bottle.code} will have left isn't known: weigh it."
+        return f"What would help, and what {supply.bottle.code} will have left, can't be said before it's weighed."
     left = f"{supply.bottle.code} will have {words.mass(answer.source_left_g)} left"
     fills = answer.transferred.full_fills
     if fills is not None and fills > 1:
-        return f"{left}; from here it gives {fills} full fills like this one, warmed up again between them."
+        return f"{left}. At best it gives {fills} full fills like this one: done quickly, warmed up again between them."
     return f"{left}."
 
 
@@ -202,14 +201,20 @@ def _reading(answer: Answer, words: RefillWords) -> list[tuple[str, str]]:
         rows.append(("Vapour pressure at that temperature", words.pressure(contents.saturation_pa)))
     if contents.expected_pa is not None:
         rows.append(("By its weight the gauge should show", words.pressure(contents.expected_pa)))
-    if answer.source is None:
-        rows.append(("So it holds anything from", words.span(round(contents.least_kg * 1000), round(contents.most_kg * 1000))))
-    else:
+    if answer.source is not None:
         origin = "weight" if answer.source.origin != BOOKS else "books"
         agrees = {True: f"reading and {origin} agree", False: f"reading and {origin} contradict each other", None: ""}
         rows.append((f"Holds, {answer.source.origin}", f"{words.mass(answer.source.grams, plus_minus_g=answer.source.error_g)}: "
                      f"{agrees[contents.agrees]}"))  # fmt: skip
+    allowed = answer.pair.source_range_kg
+    if allowed is not None:
+        rows.append(("So it may hold", words.span(*(round(kilograms * 1000) for kilograms in allowed))))
     return rows
+
+
+def _alike(answer: Answer, words: RefillWords) -> bool:
+    """Whether lowest and highest are written alike."""
+    return words.mass(answer.low_g) == words.mass(answer.high_g)
 
 
 def _band(answer: Answer, words: RefillWords) -> dict[str, Any]:
@@ -226,4 +231,5 @@ def _band(answer: Answer, words: RefillWords) -> dict[str, Any]:
         "low": low, "width": max(2.0, round(high - low, 1)), "limit": place(free), "limit_words": words.mass(free),
         "likely": place(answer.likely_g) if answer.likely_g is not None else None, "low_words": words.mass(answer.low_g),
         "likely_words": words.mass(answer.likely_g) if answer.likely_g is not None else "", "high_words": words.mass(answer.high_g),
+        "alike": _alike(answer, words),
     }  # fmt: skip

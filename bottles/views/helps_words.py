@@ -38,7 +38,7 @@ def helps_context(found: Helps, words: RefillWords) -> dict[str, Any] | None:
     """Everything that *would help* shows; None where nothing is needed."""
     remedies = found.found.remedies
     codes = {code for code, _ in found.found.warnings}
-    if "full_anyway" in codes or "receiver_full" in codes:
+    if codes & {"full_anyway", "receiver_full", "source_unknown"}:
         return None
     chill = [each for each in remedies if each.kind == CHILL]
     rows = [_chill(chill, found, words)] if chill else []
@@ -50,14 +50,14 @@ def helps_context(found: Helps, words: RefillWords) -> dict[str, Any] | None:
     return {
         "rows": rows, "said": [sentence for _, sentence in found.found.warnings],
         "assumed": NOT_WRITTEN.format(freezer=colder(found.places[0].coldest_k, words)) if assumed else "",
-        "chills": any(each.fills for each in chill),
     }  # fmt: skip
 
 
 def colder(kelvin: float, words: RefillWords) -> str:
     """A temperature that must not be passed upwards: rounded down to the degree."""
     unit = words.units.temperature
-    return f"{floor(value_in(round(kelvin * 1000), unit))} {unit}".replace("-", "\N{MINUS SIGN}")
+    # As much is the rounding of what was entered: 0 °F is kept as 255,372 mK.
+    return f"{floor(value_in(round(kelvin * 1000), unit) + 0.001)} {unit}".replace("-", "\N{MINUS SIGN}")
 
 
 def span_of_time(found: Chilling) -> str:
@@ -66,7 +66,9 @@ def span_of_time(found: Chilling) -> str:
     if found.slow_s < 60.0:
         return "at once"
     quick, slow = _time(found.quick_s), _time(found.slow_s)
-    return quick if quick == slow else f"{quick} to {slow}"
+    if quick == slow:
+        return quick
+    return f"{quick.removesuffix(' min') if slow.endswith(' min') else quick} to {slow}"
 
 
 def _chill(chill: list[Remedy], found: Helps, words: RefillWords) -> dict[str, Any]:
@@ -81,16 +83,17 @@ def _chill(chill: list[Remedy], found: Helps, words: RefillWords) -> dict[str, A
     row = {"what": what + ".", "caution": chill[0].caution, "times": []}
     if found.chill_k is not None and found.times:
         to = colder(found.chill_k, words)
-        row["times"] = [f"To {to} in {name}: {span_of_time(time)}" for name, time in found.times if time.quick_s is not None]
+        times = [f"in {name}: {span_of_time(time)}" for name, time in found.times if time.quick_s is not None]
+        row["times"] = [f"To {to} {times[0]}", *times[1:]] if times else []
     return row
 
 
 def _row(same: list[Remedy], words: RefillWords) -> dict[str, Any]:
     first = same[0]
     if first.kind == VENT_FILLING:
-        parts = [f"{_up(each.mass_kg, words)}: {FULL[each.case]}" if each.fills else f"{_up(each.mass_kg, words)}: "
+        parts = [f"{_up(each.mass_kg, words)}, {FULL[each.case]}" if each.fills else f"{_up(each.mass_kg, words)}: "
                  f"{_more(each, words)}" for each in _apart(same, words)]  # fmt: skip
-        what = f"Let vapour out while it fills, {'; '.join(parts)}: so much nitrous is lost"
+        what = f"Let vapour out while it fills: {'; '.join(parts)}. That nitrous is lost"
     elif first.kind == FULLER:
         least = _up(first.mass_kg, words)
         what = f"Take a fuller supply bottle: with {least} or more in it, as warm as this one, {FULL[first.case]}"

@@ -23,7 +23,7 @@ METHOD = (
     "source) stays in the liquid; between a quick refill and one with both bottles kept at their temperatures. The span is what "
     "the supply bottle's weight leaves open."
 )
-REACHES = (("yes", "The limit is reached in every case"), ("yes", "The limit is likely reached"),
+REACHES = (("yes", "The limit is reached, by the lowest figure too"), ("yes", "The limit is likely reached"),
            ("after", "The limit is reached at best"), ("after", "A short fill: the limit isn't reached"))  # fmt: skip
 
 

@@ -103,4 +103,5 @@ def test_chilling_times_are_told_for_what_fills_it_and_only_where_it_gets_there(
 def test_a_temperature_not_to_be_passed_is_rounded_down() -> None:
     assert colder(273.15 - 0.2, WORDS) == "−1 °C"
     assert colder(325.15, AMERICAN) == "125 °F"
+    assert colder(255.372, AMERICAN) == "0 °F"  # as it's kept when 0 °F was entered
     assert colder(273.15 + 14.99, WORDS) == "14 °C"

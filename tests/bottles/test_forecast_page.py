@@ -75,14 +75,26 @@ def test_a_supply_known_by_its_gauge_alone_is_worth_weighing(client: Client, wor
     page = live(client, works)
     assert re.search(r"Weigh the supply bottle: it would narrow the span by about [\d.]+ k?g\.", page)
     assert "the supply bottle's weight" in page and "between what its readings allow" in page
-    assert "weigh it first, then this can say what would help" in page
+    assert "What would help, and what S-09 will have left, can't be said before it's weighed." in page
+    assert re.search(r"So it may hold [\d.]+ kg – [\d.]+ kg", page) and "Would help" not in page
     assert "Weigh the supply bottle" not in details(client, works) and "weigh it, then its course" in details(client, works)
 
 
 def test_a_fill_that_is_full_in_every_case_has_no_width_and_needs_no_help(client: Client, works: Works) -> None:
     page = live(client, works, bottle_temperature="-30 °C")
-    assert "The limit is reached in every case" in page
+    assert "The limit is reached, by the lowest figure too" in page
     assert "What makes the span" not in page and "Would help" not in page and "narrow" not in page
+    assert "Lowest" not in page and "Highest" not in page  # one figure, said once
+
+
+def test_where_nothing_goes_over_it_says_so_in_a_word(client: Client, works: Works) -> None:
+    page = live(client, works, bottle_temperature="45 °C", bottle_weight=f"{TARE_G + 1_500} g")
+    assert "Goes over: nothing" in page and "likely 0" not in page
+
+
+def test_a_danger_sign_is_named_once(client: Client, works: Works) -> None:
+    page = live(client, works, gauge="90 bar")
+    assert page.count("Danger sign") == 1 and "Nothing is filled from it until this is settled" in page
 
 
 # --- what would help ------------------------------------------------------------------------------------
@@ -92,7 +104,7 @@ def test_a_short_fill_says_what_would_help_with_its_cautions(client: Client, wor
     page = live(client, works)
     assert "A short fill" in page and "Would help" in page
     assert re.search(r"Chill it to −?\d+ °C: full if vapour condenses quickly; to −?\d+ °C: full, likely", page)
-    assert re.search(r"Let vapour out while it fills, \d+ g: full", page) and "never breathe it" in page
+    assert re.search(r"Let vapour out while it fills: \d+ g, full", page) and "never breathe it" in page
     assert "by a listed device, where local code permits it" in page and "Never above 52 °C on any part" in page
     assert "Dry it before the weighing" in page
 
@@ -101,7 +113,7 @@ def test_the_shops_own_freezer_says_how_cold_and_how_long(client: Client, works:
     assert "No freezer or bath of the shop says how cold it gets" in live(client, works)
     factories.PlaceFactory(code="COLD", name="the chest freezer", kind="freezer", coldest_mk=248_150)
     page = live(client, works)
-    assert re.search(r"in the chest freezer: [\d.]+ (min|h) to [\d.]+ (min|h)", page)
+    assert re.search(r"in the chest freezer: [\d.]+( h)? to [\d.]+ (min|h)", page)
     assert "the heat passed is common practice" in page and "No freezer or bath of the shop" not in page
 
 
@@ -204,7 +216,7 @@ def test_a_pumped_refill_is_forecast_by_its_own_stops_and_kept(client: Client, w
     pumping(works)
     page = live(client, works, method="pumped")
     assert "pumped quickly" in page and "pumped, kept at temperature" in page and "slow to condense" not in page
-    assert "The limit is reached in every case" in page and "Would help" not in page
+    assert "The limit is reached, by the lowest figure too" in page and "Would help" not in page
     assert "highest delivery pressure 119.0 bar" in page and "Never run the pump dry" in page and "oil" in page
     assert "A pump sets its own pace" in details(client, works, method="pumped")
     assert client.post(reverse("bottles:fill", args=["T-0412"]), typed(works, method="pumped")).status_code == 302

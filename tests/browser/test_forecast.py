@@ -60,7 +60,7 @@ def test_the_band_its_explanation_and_what_would_help_are_seen(new_page: Callabl
     read(page)
     forecast = page.locator("#forecast")
     expect(forecast.locator("svg.band")).to_be_visible()
-    for word in ("Lowest", "Likely (dot)", "Highest", "Room to the target (bar)"):
+    for word in ("Lowest", "Likely (dot)", "Highest", "Room to the target (thick line)"):
         expect(forecast.get_by_text(word, exact=True)).to_be_visible()
     low, mark = forecast.locator("svg.band rect").bounding_box(), forecast.locator("svg.band circle").bounding_box()
     assert low and mark and low["x"] <= mark["x"] <= low["x"] + low["width"]
