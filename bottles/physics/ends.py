@@ -22,8 +22,9 @@ def limits_free_kg(source: Vessel, receiver: Vessel, line_volume_m3: float = 0.0
 
     Assumptions
     -----------
-    As the two limits say. A supply that gives no liquid has no cautious limit: its figure is
-    the quick one's then, so that no condensation figure changes it.
+    As the two limits say. The cautious one ends with the supply's liquid: nothing without any.
+    Where vapour is drawn on purpose it is the quick one, so that no condensation figure
+    changes it.
 
     Valid for
     ---------
@@ -39,9 +40,7 @@ def limits_free_kg(source: Vessel, receiver: Vessel, line_volume_m3: float = 0.0
     This project's own model.
     """
     transfer = Transfer(source, receiver, line_volume_m3)
-    mixed = transfer.mixed_free_kg()
-    wall = transfer.slow_free_kg() if transfer.path.gives_liquid else mixed
-    return wall, mixed
+    return transfer.cautious_free_kg(), transfer.mixed_free_kg()
 
 
 def likely_kg(

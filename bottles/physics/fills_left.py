@@ -131,9 +131,7 @@ def fills_left(
 
     def likely(transfer: Transfer) -> float:
         free = transfer.mixed_free_kg()
-        if not transfer.path.after(0.0).liquid:
-            return min(free, room)
-        return min(between(transfer.slow_free_kg(), free, condensation.figure), room)
+        return min(between(transfer.cautious_free_kg(), free, condensation.figure), room)
 
     warmed, straight = _Row(source, room, line_volume_m3), _Straight(source, room, line_volume_m3)
 

@@ -100,8 +100,9 @@ def band_of(
     Assumptions
     -----------
     The condensation figure's two deviations and each reading's tolerance, taken from the mixed
-    limit's slope, join by the root of the sum of squares. Without liquid nothing enters
-    under the vapour: then it's the mixed limit and the held one that bound.
+    limit's slope, join by the root of the sum of squares. The cautious end goes no further than
+    the supply's liquid. Where vapour is drawn on purpose nothing enters under the vapour:
+    then it's the mixed limit and the held one that bound.
 
     Valid for
     ---------
@@ -120,9 +121,8 @@ def band_of(
     if quick <= 0.0 or room <= 0.0:
         return Band(0.0, 0.0, 0.0, (), None)
     parts = _reading_parts(transfer, quick, room, tolerances, unsure)
-    enters = transfer.path.gives_liquid
-    if enters:
-        slow = transfer.slow_free_kg()
+    if transfer.source.liquid_pickup:
+        slow = transfer.cautious_free_kg()
         likely = between(slow, quick, condensation.figure)
         below, above = band(slow, quick, condensation)
     else:
@@ -139,8 +139,8 @@ def band_of(
     for name, part in width:
         if name == CONDENSATION:
             left = _edges(likely, 0.0, 0.0, readings, room)
-            # More refills don't tell how much heat comes in while vapour trickles over.
-            measurement = MORE_REFILLS if enters else None
+            # A refill with vapour alone tells nothing of how vapour condenses beside liquid.
+            measurement = MORE_REFILLS if transfer.path.gives_liquid else None
         else:
             known = tolerances.scale_kg * part / unsure[1] if name == "receiver start" else 0.0
             left = _edges(likely, below, above, readings - part * part + min(known, part) ** 2, room)

@@ -19,7 +19,7 @@ SENTENCES: Mapping[str, str] = {
     "liquid_runs_out": ("The supply bottle's liquid runs out before the end; what follows is vapour, slowly."),
     "no_source_liquid": (
         "No liquid leaves the supply bottle: either none is left, or it has no dip tube and "
-        "stands upright. Vapour alone goes over, slowly."
+        "stands upright. Vapour alone goes over, slowly, until pressures are equal; a cautious figure doesn't count on it."
     ),
     "left_below_tube": (
         "The supply bottle's dip tube doesn't reach its last liquid: that stays behind, and what "

@@ -105,6 +105,14 @@ class Transfer:
         """What goes over in the cautious limit without a fill limit."""
         return _end_of(self.slow_marks())
 
+    def cautious_free_kg(self) -> float:
+        """The cautious end that a condensation figure counts from.
+
+        It ends with the liquid, so that a supply that has none left counts for nothing, as one
+        with its last drop does. Where vapour is drawn on purpose no liquid enters: the mixed limit.
+        """
+        return self.slow_free_kg() if self.source.liquid_pickup else self.mixed_free_kg()
+
     def _equal_mixed(self) -> float:
         """Where both pressures meet."""
         most = self.capacity_kg

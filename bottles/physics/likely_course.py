@@ -38,7 +38,8 @@ def likely_course(
     pressure, as a share of the supply's, and the receiver's temperature lie between the two
     limits' own at that share, in proportion to the figure; the supply follows its own path
     without heat from outside.
-    A supply without liquid follows the mixed limit. The flow is `line_flow`.
+    A supply without liquid follows the mixed limit as far as the likely mass. The flow is
+    `line_flow`.
 
     Valid for
     ---------
@@ -62,15 +63,17 @@ def likely_course(
     room = limit_kg - transfer.receiver.net_kg
     quick = transfer.mixed_free_kg()
     wet = transfer.path.after(transfer.line_kg).liquid
+    likely = between(transfer.cautious_free_kg(), quick, figure) if figure < 1.0 else quick
     figure = figure if wet else 1.0
     slow = transfer.slow_free_kg() if figure < 1.0 else quick
-    most = between(slow, quick, figure)
-    if room <= 0.0 or most <= 0.0:
-        return _still(transfer, FILL_LIMIT if room <= 0.0 else NO_DIFFERENCE)
+    most = likely if wet else quick
+    if room <= 0.0 or likely <= 0.0:
+        flows = LIQUID_OUT if quick > 0.0 else NO_DIFFERENCE
+        return _still(transfer, FILL_LIMIT if room <= 0.0 else flows)
     # Close together at the end, where flow dies away like a root.
     way = 1.0 - (1.0 - np.linspace(0.0, 1.0, points)) ** 2
-    if room < most:
-        way = np.linspace(0.0, 1.0, points) * (room / most)
+    if min(room, likely) < most:
+        way = np.linspace(0.0, 1.0, points) * (min(room, likely) / most)
     dry = (transfer.path.dry_out() - transfer.line_kg) / most if wet else 0.0
     if 0.0 < dry < way[-1]:
         way = np.union1d(way, [dry])
@@ -96,7 +99,7 @@ def likely_course(
         if ahead and share == dry:
             vapour = _enters(0.0, given.temperature_k, liquid=False)
             flow = line_flow(cd_area_m2, vapour, given.temperature_k, pressure)
-    stopped = FILL_LIMIT if room <= most else EQUAL
+    stopped = FILL_LIMIT if room <= likely else EQUAL
     if stopped == EQUAL and rows[-1][3] - rows[-1][4] > 1e3:
         stopped = LIQUID_OUT
     return _course(rows, stopped, spread, liquid_out=not given.liquid)

@@ -213,8 +213,8 @@ class _Asked:
         pair = transfer or self.transfer
         quick = pair.mixed_free_kg()
         free = quick
-        if case != QUICK and pair.path.after(0.0).liquid:
-            slow = pair.slow_free_kg()
+        if case != QUICK:
+            slow = pair.cautious_free_kg()
             free = min(slow, quick) if case == EVERY else between(slow, quick, self.figure)
         beyond = free - (self.limit - pair.receiver.net_kg)
         return 0.0 if abs(beyond) < 1e-9 else beyond

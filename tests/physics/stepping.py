@@ -47,12 +47,15 @@ def step_mixed(source, receiver, moved, steps):
     v1, v2, c1, c2 = source.volume_m3, receiver.volume_m3, source.wall_j_k, receiver.wall_j_k
     e1 = m1 * state_by_density_temperature(m1 / v1, t1).energy + c1 * t1
     e2 = m2 * state_by_density_temperature(m2 / v2, t2).energy + c2 * t2
-    total, share, latched = e1 + e2, moved / steps, False
+    total, share, latched, wet = e1 + e2, moved / steps, False, False
     one = state_by_density_temperature(m1 / v1, t1)
     for _ in range(steps):
         h, _ = outlet(v1, m1, one, latched=latched, below=source.below_tube_m3)
         _, half = settled(v1, c1, m1 - share / 2, e1 - h * share / 2, t1)
-        h, latched = outlet(v1, m1 - share / 2, half, latched=latched, below=source.below_tube_m3)
+        h, dry = outlet(v1, m1 - share / 2, half, latched=latched, below=source.below_tube_m3)
+        # A step may pass over the moment at which liquid is out: mist that comes later isn't drawn.
+        latched = dry or (wet and half.quality is None)
+        wet = half.quality is not None
         m1, m2, e1, e2 = m1 - share, m2 + share, e1 - h * share, e2 + h * share
         t1, one = settled(v1, c1, m1, e1, t1)
     t2, two = settled(v2, c2, m2, e2, t2)

@@ -46,8 +46,14 @@ def test_the_limits_without_the_fill_limit_are_the_transfers():
         )
 
 
-def test_vapour_alone_has_one_end_whatever_the_figure():
+def test_the_cautious_end_counts_no_vapour_that_comes_without_liquid():
     wall, mixed = limits_free_kg(supply(3.0), vented(0.0))
+    assert wall == 0.0 and mixed > 0.1
+    assert likely_kg(supply(3.0), vented(0.0), LIMIT, figure=0.4) == pytest.approx(0.4 * mixed)
+
+
+def test_vapour_drawn_on_purpose_has_one_end_whatever_the_figure():
+    wall, mixed = limits_free_kg(supply(19.0, liquid_pickup=False), vented(0.0))
     assert wall == mixed > 0.1
 
 

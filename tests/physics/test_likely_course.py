@@ -17,8 +17,7 @@ from tests.physics.courses import ABOVE, CASES, LIMIT, QUICK, SLOW, bottle, supp
 @pytest.mark.parametrize("name", CASES)
 def test_the_likely_course_ends_at_the_likely_mass(name, figure):
     transfer = Transfer(*CASES[name])
-    quick, slow = transfer.mixed_free_kg(), transfer.slow_free_kg()
-    ends = quick if not transfer.path.after(0.0).liquid else between(slow, quick, figure)
+    ends = between(transfer.cautious_free_kg(), transfer.mixed_free_kg(), figure)
     room = ABOVE - transfer.receiver.net_kg
     course = likely_course(transfer, ABOVE, figure, effective_area())
     assert course.moved_kg[-1] == pytest.approx(min(ends, room), rel=1e-9)

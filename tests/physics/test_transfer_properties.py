@@ -13,6 +13,7 @@ import pytest
 from hypothesis import assume, given, reject, settings
 from hypothesis import strategies as st
 
+from bottles.physics.condensation import Condensation
 from bottles.physics.forecast import forecast
 from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, WEIGHED, Start, start_vessel
 from bottles.physics.transfer import NO_DIFFERENCE, Transfer, held, mixed, wall_condensing
@@ -203,14 +204,13 @@ def test_kept_at_one_temperature_is_no_upper_bound(net, celsius):
 
 @settings(max_examples=40, deadline=None)
 @given(st.floats(-20.0, 28.0), st.floats(-30.0, 20.0), st.floats(0.0, 1.0), st.floats(0.3, 1.0))
-def test_a_reading_alone_spans_every_weight_that_keeps_liquid_to_the_end(source_c, celsius, share, most):
-    """Where liquid is about to run out the slow limit is shorter than vapour's alone: not promised there."""
+def test_a_reading_alone_spans_every_weight_that_it_allows(source_c, celsius, share, most):
     vapour = saturation_at_temperature(source_c + 273.15).vapour_density * 0.029
     top = most * 19.72
     net = vapour + share * (top - vapour)
     asked = into_of(celsius)
     weighed = forecast(source=supply(net, source_c), **asked)
-    assume(weighed.wall_condensing.stopped_by != "source out of liquid" and top > net)
+    assume(top > net)
     span = forecast(source=supply(0.0, source_c), source_range_kg=(vapour, top), **asked)
     assert span.low_kg <= weighed.low_kg + 1e-3 * LIMIT
     assert weighed.high_kg <= span.high_kg + 1e-3 * LIMIT
@@ -268,3 +268,18 @@ def test_the_same_fill_at_one_temperature_moves_nothing(name, celsius):
         told = LIMITS[name](Transfer(source, into(celsius, 6.8 * fill)), 1.5 * 6.8 * fill)
         assert (told.moved_kg, told.stopped_by) == (0.0, NO_DIFFERENCE)
         assert math.isfinite(told.receiver_final_pa)
+
+
+@settings(max_examples=40, deadline=None)
+@given(st.floats(-20.0, 30.0), st.floats(-30.0, 20.0), st.floats(0.0, 1.0), st.floats(-0.02, 0.05))
+def test_the_last_hair_of_liquid_in_the_supply_makes_no_leap(source_c, celsius, figure, beyond):
+    """Less in the supply never promises more, through the mass at which its liquid is out."""
+    hair = saturation_at_temperature(source_c + 273.15).vapour_density * 0.029 * (1.0 + beyond)
+    known = Condensation(figure, 0.1, "measured")
+    less, more = (
+        forecast(source=supply(net, source_c), condensation=known, **into_of(celsius)) for net in (hair, hair * 1.0002)
+    )
+    slack = 3e-4 * LIMIT
+    assert less.low_kg <= more.low_kg + slack
+    assert less.likely_kg - 1e-6 <= more.likely_kg <= less.likely_kg + slack
+    assert less.high_kg <= more.high_kg + slack

@@ -164,9 +164,7 @@ class Fills:
         quick = transfer.mixed_free_kg()
         if quick <= 0.0:
             return 0.0
-        if not transfer.path.after(0.0).liquid:
-            return quick
-        return max(0.0, between(transfer.slow_free_kg(), quick, self.day.bottles[receiver[0]].figure))
+        return max(0.0, between(transfer.cautious_free_kg(), quick, self.day.bottles[receiver[0]].figure))
 
     def _transfer(self, receiver: Receiver, source: int, net_kg: float, temperature_k: float) -> Transfer:
         bottle, held, warm = receiver
