@@ -7,8 +7,8 @@ is a row of them. A fixed number of queries, however many bottles.
 
 from __future__ import annotations
 
-from collections import defaultdict
-from collections.abc import Iterable, Sequence
+from collections import Counter, defaultdict
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime, timedelta
 from typing import Any
@@ -22,6 +22,7 @@ from shop.base.composed import composed
 from shop.base.models import Act
 
 WEEK = timedelta(weeks=1)
+_MOST_G = F("scale__resolution_g") + F("scale__error_g")  # as Noise.most_g
 MOVES = ("delivery", "returned", "refill", "use", "vent")  # the others only bring the books to the scale
 
 
@@ -49,14 +50,45 @@ class Watch:
         return self.drift is not None and self.drift.verdict != "steady"
 
 
+@dataclass(frozen=True, slots=True)
+class Overview:
+    """The stored bottles with a weighing that counts, both by code; and how many each scale can tell of."""
+
+    raised: Sequence[Watch]
+    others: Sequence[int]  # keys
+    looked: Mapping[str, int]
+
+
 def watch_of(bottle: Bottle) -> Watch | None:
     """Return what the leak watch knows of one bottle, or None where no weighing of it counts: one query."""
     return next(iter(_watched(_of_one(bottle.pk))), None)
 
 
-def watches() -> list[Watch]:
-    """Return every stored bottle with a weighing that counts, by code: one query."""
-    return sorted(_watched(_columns(_stored())), key=lambda watch: watch.code)
+def overview() -> Overview:
+    """Return what the leak watch knows of all stored bottles: two queries.
+
+    Fitted are only those that may be raised, or that several scales tell of.
+    """
+    codes: dict[int, str] = {}
+    scales: dict[int, list[str]] = defaultdict(list)  # those that tell anything, of each bottle
+    doubtful: set[int] = set()
+    for bottle, code, scale, first, last, apart, most in _series():
+        codes[bottle] = code
+        if last > first:
+            scales[bottle].append(scale)
+            if apart > most or len(scales[bottle]) > 1:
+                doubtful.add(bottle)
+    looked = Counter(found[0] for bottle, found in scales.items() if bottle not in doubtful)
+    fitted = _fitted(doubtful)
+    looked.update(watch.scale for watch in fitted if watch.drift)
+    raised = sorted((watch for watch in fitted if watch.raised), key=lambda watch: watch.code)
+    others = codes.keys() - {watch.bottle for watch in raised}
+    return Overview(raised, sorted(others, key=lambda bottle: codes[bottle]), looked)
+
+
+def watches_of(bottles: Collection[int]) -> list[Watch]:
+    """Return what the leak watch knows of bottles, by code: one query."""
+    return sorted(_fitted(bottles), key=lambda watch: watch.code)
 
 
 def not_watched(watched: int) -> int:
@@ -75,15 +107,7 @@ def leaking() -> tuple[str, ...]:
     kept = _known
     if kept is not None and latest is not None and kept[0] == latest:
         return kept[1]
-    wide = (
-        _stored()
-        .order_by()
-        .values("bottle", "scale", "tare")
-        .annotate(apart=Max("net_g") - Min("net_g"))
-        .filter(apart__gt=F("scale__resolution_g") + F("scale__error_g"))
-    )
-    bottles = {row["bottle"] for row in wide}
-    found = _watched(_columns(_stored().filter(bottle__in=bottles))) if bottles else []
+    found = _fitted(set(_may_be_raised()))
     codes = tuple(sorted(watch.code for watch in found if watch.drift and watch.drift.verdict == "leaks"))
     if latest is not None:
         _known = (latest, codes)
@@ -118,15 +142,48 @@ def _stored() -> QuerySet[Weighing]:
     moved = Line.objects.filter(later, movement__kind__in=MOVES, movement__reversal__isnull=True)
     # With the line on, the hose pulls at the reading; a supply bottle is weighed with it on.
     line_off = Q(refill__isnull=True) | Q(refill__bottle=F("bottle"), step__in=("before", "disconnected"))
-    return Weighing.objects.filter(
-        line_off, bottle__standing__is_in=True, bottle__retired_at__isnull=True, strike__isnull=True, wet=False
-    ).exclude(
+    return _dry().filter(line_off).exclude(
         Exists(Refill.objects.filter(bottle=of_it, closed_at__isnull=True))
         | Exists(Draw.objects.filter(source=of_it, refill__closed_at__isnull=True))
         | Exists(Custody.objects.filter(bottle=of_it, happened_at__gt=OuterRef("happened_at")).exclude(kind="moved"))
         | Exists(moved.filter(source__bottle=of_it))
         | Exists(moved.filter(target__bottle=of_it))
     )
+
+
+def _dry() -> QuerySet[Weighing]:
+    """Dry weighings of bottles that are in, since they last came: more than count, but found at once."""
+    came = Q(happened_at__gte=F("bottle__standing__custody__happened_at")) | Q(bottle__standing__custody__kind="moved")
+    return Weighing.objects.filter(
+        came, bottle__standing__is_in=True, bottle__retired_at__isnull=True, strike__isnull=True, wet=False
+    )
+
+
+def _wide(weighings: QuerySet[Weighing]) -> QuerySet[Any]:
+    """Bottles whose readings on one scale with one tare differ by more than the scale can lie."""
+    series = weighings.order_by().values("bottle", "scale", "tare").annotate(apart=Max("net_g") - Min("net_g"))
+    return series.filter(apart__gt=_MOST_G).values_list("bottle", flat=True)
+
+
+@composed
+def _may_be_raised() -> QuerySet[Any]:
+    return _wide(_stored().filter(bottle__in=_wide(_dry())))
+
+
+@composed
+def _of_these(bottles: Iterable[int]) -> QuerySet[Any]:
+    return _columns(_stored().filter(bottle__in=bottles))
+
+
+@composed
+def _series() -> QuerySet[Any]:
+    series = _stored().order_by().values("bottle", "bottle__code", "scale", "tare", "scale__name")
+    found = series.annotate(first=Min("happened_at"), last=Max("happened_at"), apart=Max("net_g") - Min("net_g"))
+    return found.values_list("bottle", "bottle__code", "scale__name", "first", "last", "apart", _MOST_G)
+
+
+def _fitted(bottles: Collection[int]) -> list[Watch]:
+    return list(_watched(_of_these(bottles))) if bottles else []
 
 
 def _watched(rows: Iterable[tuple[Any, ...]]) -> Iterable[Watch]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable
 from datetime import timedelta
 from typing import Any
 
@@ -14,7 +14,7 @@ from django.urls import reverse
 from bottles.forms.leaks import USUAL_G, LeakForm
 from bottles.models import Bottle, Condition
 from bottles.rules.leaks import Drift, Noise, certainty_words, lasts, weeks_to_show
-from bottles.selectors.leaks import WEEK, Watch, not_watched, watch_of, watches
+from bottles.selectors.leaks import WEEK, Overview, Watch, not_watched, overview, watch_of, watches_of
 from bottles.selectors.scales import checked_scales
 from bottles.views.refill_words import RefillWords, refill_words
 from bottles.views.sections import Seen
@@ -44,11 +44,14 @@ def leaks(request: HttpRequest) -> HttpResponse:
     leak_g = form.grams()
     if not form.is_bound:
         form = LeakForm(initial={"leak": _small(leak_g, words)}, system=words.units.name)
-    found = watches()
-    noted = _noted(found)
-    losing, grew = ([watch for watch in found if watch.drift and watch.drift.verdict == which] for which in ("leaks", "grew"))
+    found = overview()
+    noted = _noted(found.raised)
+    losing, grew = (
+        [watch for watch in found.raised if watch.drift and watch.drift.verdict == which] for which in ("leaks", "grew")
+    )
+    watched = len(found.raised) + len(found.others)
     losing.sort(key=lambda watch: watch.drift.rate_g if watch.drift else 0.0)
-    page = page_of(request, [watch for watch in found if not watch.raised])
+    page = page_of(request, found.others)
     context = {
         "form": form,
         "leak": _small(leak_g, words),
@@ -57,9 +60,9 @@ def leaks(request: HttpRequest) -> HttpResponse:
         "cautions": CAUTIONS if losing else (),
         "alike": _alike(found),
         "page": page,
-        "rows": [_row(watch, leak_g, words, shop) for watch in page],
-        "watched": len(found),
-        "not_watched": not_watched(len(found)),
+        "rows": [_row(watch, leak_g, words, shop) for watch in watches_of(list(page))],
+        "watched": watched,
+        "not_watched": not_watched(watched),
         "scales": _scales(leak_g, words, shop),
         "scales_head": ["Scale", "Step", "Error", "Shows after"],
         "scales_caption": f"When two dry weighings show a leak of {_small(leak_g, words)} a week",
@@ -80,6 +83,16 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
 def told(watch: Watch, leak_g: int, words: RefillWords, shop: Shop) -> dict[str, Any]:
     """One bottle of the leak watch, in words."""
     drift = watch.drift
+    return _brief(watch, leak_g, words, shop) | {
+        "note_url": f"{reverse('bottles:condition', args=[watch.code])}?code=leak",
+        "verdict": drift.verdict if drift else "once",
+        "certainty": certainty_words(drift.certainty) if drift else "",
+        "lasts": _lasts_words(watch, words) if drift and drift.verdict == "leaks" else "",
+        "inputs": _inputs(watch, words),
+    }
+
+
+def _brief(watch: Watch, leak_g: int, words: RefillWords, shop: Shop) -> dict[str, Any]:
     count = len(watch.readings)
     first, last = (f"{clock.day_of(at, shop)}" for at in (watch.first_at, watch.last_at))
     weighed = f"weighed once on {watch.scale}, {last}"
@@ -89,14 +102,9 @@ def told(watch: Watch, leak_g: int, words: RefillWords, shop: Shop) -> dict[str,
         "code": watch.code,
         "url": reverse("bottles:bottle", args=[watch.code]),
         "weigh_url": reverse("bottles:weigh", args=[watch.code]),
-        "note_url": f"{reverse('bottles:condition', args=[watch.code])}?code=leak",
-        "verdict": drift.verdict if drift else "once",
-        "figure": _figure(drift, words) if drift else "",
-        "certainty": certainty_words(drift.certainty) if drift else "",
+        "figure": _figure(watch.drift, words) if watch.drift else "",
         "weighed": weighed,
-        "lasts": _lasts_words(watch, words) if drift and drift.verdict == "leaks" else "",
         "shows": _shows(watch, leak_g, words, shop),
-        "inputs": _inputs(watch, words),
     }
 
 
@@ -147,7 +155,7 @@ def _inputs(watch: Watch, words: RefillWords) -> list[dict[str, str]]:
 
 
 def _row(watch: Watch, leak_g: int, words: RefillWords, shop: Shop) -> dict[str, Any]:
-    row = told(watch, leak_g, words, shop)
+    row = _brief(watch, leak_g, words, shop)
     return row | {"figure": row["figure"] or "one weighing can't tell"}
 
 
@@ -161,18 +169,10 @@ def _scales(leak_g: int, words: RefillWords, shop: Shop) -> list[list[str]]:
     return rows
 
 
-def _alike(found: Sequence[Watch]) -> list[str]:
+def _alike(found: Overview) -> list[str]:
     """Scales on which most bottles drift to one side: rather the scale than so many leaks."""
-    looked, raised = Counter[str](), Counter[tuple[str, str]]()
-    for watch in found:
-        if watch.drift is not None:
-            looked[watch.scale] += 1
-            raised[watch.scale, watch.drift.verdict] += 1
-    return [
-        scale
-        for (scale, verdict), count in sorted(raised.items())
-        if verdict != "steady" and count >= MANY and 2 * count > looked[scale]
-    ]
+    raised = Counter((watch.scale, watch.drift.verdict) for watch in found.raised if watch.drift)
+    return [scale for (scale, _), count in sorted(raised.items()) if count >= MANY and 2 * count > found.looked[scale]]
 
 
 def _noted(found: Iterable[Watch]) -> set[int]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Callable, Iterator
 
 import pytest
@@ -10,7 +11,7 @@ from django.test import Client
 from django.test.utils import CaptureQueriesContext
 
 from bottles.models import Bottle, Movement, Scale
-from bottles.selectors.leaks import leaking, watch_of, watches
+from bottles.selectors.leaks import leaking, overview, watch_of, watches_of
 from bottles.services import conditions, moving, weighing
 from shop.base import clock
 from shop.base.models import Shop
@@ -139,7 +140,7 @@ def test_bottles_that_are_out_or_retired_are_not_watched() -> None:
     out, gone = leaky("T-0001", scale), leaky("T-0002", scale)
     b.go_out(out, b.after(9 * WEEK))
     conditions.retire(key=b.key(), person=None, bottle=gone, reason="scrapped")
-    assert watches() == []
+    assert overview().raised == overview().others == []
     assert leaking() == ()
 
 
@@ -224,6 +225,23 @@ def test_a_leak_that_cant_be_read_has_its_sentence_and_the_page_still_answers(de
     response = desk.get("/nitrous/leaks", {"leak": typed})
     assert response.status_code == 200
     assert response.context["form"].errors["leak"]
+
+
+def test_all_bottles_together_are_told_of_as_each_alone() -> None:
+    one, other = b.scale("A"), b.scale("B")
+    made = [leaky(f"T-00{number:02}", one, weeks=1 + number % 3, a_week=(0, 20, 60, -60)[number % 4]) for number in range(8)]
+    made.append(leaky("T-0090", other))
+    for bottle, net in ((made[0], 4_000), (made[3], 3_900), (made[5], 3_000)):  # some on a second scale as well
+        for week in (4, 6):
+            b.weigh(bottle, other, net - 15 * week, b.after(WEEK * week), reason="on the other scale")
+    alone = [watch for bottle in made if (watch := watch_of(bottle))]
+    told = overview()
+    assert list(told.raised) == [watch for watch in alone if watch.raised]
+    assert list(told.others) == [watch.bottle for watch in alone if not watch.raised]
+    assert watches_of(told.others) == [watch for watch in alone if not watch.raised]
+    assert told.looked == Counter(watch.scale for watch in alone if watch.drift)
+    assert set(leaking()) == {watch.code for watch in alone if watch.drift and watch.drift.verdict == "leaks"} != set()
+    assert {watch.scale for watch in alone if watch.raised} == {one.name, other.name}
 
 
 def test_an_empty_shop_is_told_what_to_do_first(desk: Client) -> None:
