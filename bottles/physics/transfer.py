@@ -198,7 +198,7 @@ def held(transfer: Transfer, limit_kg: float) -> Outcome:
         return first_true(even, low, high, tolerance=tolerance)
 
     moved, stopped = _stop(transfer, limit_kg, free)
-    given = moved + line if moved > 0.0 else 0.0
+    given = moved + line
     return Outcome(
         moved,
         receiver.net_kg + moved,
@@ -239,8 +239,8 @@ def _stop(transfer: Transfer, limit_kg: float, free: Callable[[], float]) -> tup
 
 
 def _outcome(transfer: Transfer, moved: float, stopped: str, t2: float, p2: float, *, dry: bool = False) -> Outcome:
-    """Put the supply's end beside the receiver's; nothing moved leaves the line empty."""
-    given = moved + transfer.line_kg if moved > 0.0 else 0.0
+    """Put the supply's end beside the receiver's; the line was filled on opening, whatever followed."""
+    given = moved + transfer.line_kg
     source = transfer.path.after(given)
     return Outcome(
         moved,
