@@ -14,7 +14,7 @@ ENTRY = 1.5  # velocity heads lost on entering and leaving (common practice)
 SEAT_M = 0.003  # m: free way through an open bottle valve (common practice, no source)
 SEAT_COEFFICIENT = 0.6  # sharp-edged opening (common practice)
 VALVES = 2  # the supply's and the other bottle's
-# Two metres of 4.8 mm hose with both valves half open: 1.2 mm2 (common practice, no source).
+# Two metres of 4.8 mm hose with both valves half open: 1.4 mm2 (common practice, no source).
 HALF_OPEN = 0.5
 LEAST_FLOW, MOST_FLOW = 0.9, 1.3  # of the model's flow: how measured openings scatter (common practice)
 COMMON_LENGTH_M, COMMON_BORE_M = 2.0, 0.0048
