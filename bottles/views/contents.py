@@ -16,6 +16,7 @@ from bottles.selectors.course import Course, Moved, Weighed, course_over_time, o
 from bottles.views.holding_words import account_words, at, pressure_rows, tell
 from bottles.views.refill_words import RefillWords, refill_words
 from bottles.views.sections import Seen
+from bottles.views.warming_chart import warming_chart
 from shop.base import clock
 from shop.base.models import Shop
 from shop.base.permissions import MANAGERS
@@ -43,6 +44,7 @@ def section(request: HttpRequest, seen: Seen) -> dict[str, Any]:
         "told": tell(holding, limit, words, shop),
         "pressure_head": ["Temperature", "Gauge"],
         "pressures": pressure_rows(holding, bottle, words),
+        "warming": warming_chart(holding, bottle, words),
         "weighings": [_weighing(row, words, shop) for row in course.weighings[: -LATEST - 1 : -1]],
         "moves": [_move(line, bottle, others, words, shop, linked=manager) for line in moved],
         "acts": list(_acts(bottle, standing, manager)),

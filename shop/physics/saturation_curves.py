@@ -1,7 +1,7 @@
 """Saturated states for many temperatures or pressures at once, in arrays.
 
-The same cubic pieces as `saturation_table`, which answers for one state: courses, plans and
-fits ask for thousands together. Against the equation of state each figure is met to a
+The same cubic pieces as `saturation_table`, which answers for one state: a curve asks for
+many together. Against the equation of state each figure is met to a
 relative 1e-8 (an enthalpy to that of the latent heat at 0 °C), up to the critical point;
 a temperature from a pressure to 1e-7 K.
 """

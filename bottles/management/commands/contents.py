@@ -24,21 +24,24 @@ class Command(ScriptCommand):
 
     def answer(self, given: Values) -> dict[str, Any]:
         limit = given["limit"]
-        told = contents_from_reading(
-            capacity_m3=given["capacity"],
-            temperature_k=given["temperature"],
-            pressure_pa=given["pressure"],
-            net_kg=given["net"],
-            limit_kg=FILLING_RATIO * given["capacity"] if limit is None else limit,
-            gauge_tolerance_pa=given["gauge_tolerance"],
-            thermometer_tolerance_k=given["thermometer_tolerance"],
-            scale_tolerance_kg=given["scale_tolerance"],
-        )
+        reading: dict[str, Any] = {
+            "capacity_m3": given["capacity"],
+            "temperature_k": given["temperature"],
+            "pressure_pa": given["pressure"],
+            "limit_kg": FILLING_RATIO * given["capacity"] if limit is None else limit,
+            "gauge_tolerance_pa": given["gauge_tolerance"],
+            "thermometer_tolerance_k": given["thermometer_tolerance"],
+        }
+        alone = contents_from_reading(**reading)
+        # A weight says whether the reading agrees and how much of it is liquid; the range stays the reading's own.
+        told = alone
+        if given["net"] is not None:
+            told = contents_from_reading(**reading, net_kg=given["net"], scale_tolerance_kg=given["scale_tolerance"])
         answer = {
             "region": told.region,
-            "least_kg": told.least_kg,
-            "most_kg": told.most_kg,
-            "most_if_overfilled_kg": told.most_if_overfilled_kg,
+            "least_kg": alone.least_kg,
+            "most_kg": alone.most_kg,
+            "most_if_overfilled_kg": alone.most_if_overfilled_kg,
             "saturation_bar": _bar(told.saturation_pa),
             "liquid_kg": told.liquid_kg,
             "vapour_kg": told.vapour_kg,
