@@ -12,7 +12,7 @@ from django.urls import reverse
 from django.utils.functional import cached_property
 
 from bottles.forms.filling import FillForm, ReadingsForm
-from bottles.models import Bottle, Refill, Supply
+from bottles.models import Bottle, Refill, Station, Supply
 from bottles.rules.conditions import label_of
 from bottles.rules.fitness import Judgement
 from bottles.selectors.filling_offers import Offered, readings_offered
@@ -83,6 +83,7 @@ class Fill(BottleActView):
         return fill_form_kwargs(self.request, self.bottle, self.judged, self.offered)
 
     def act(self, form: FillForm, person: User, key: uuid.UUID) -> str:
+        self._same_scale(form.cleaned_data["supply"])
         self._check(form, person, key)
         asked = self.asked(form)
         readings = form.readings()
@@ -104,6 +105,19 @@ class Fill(BottleActView):
             messages.error(self.request, f"Not filled. Noted on the bottle: {what}. Keep it apart and tell its owner.")
             return self.bottle.get_absolute_url()
         return reverse("bottles:refill", args=[found.refill.pk])
+
+    def _same_scale(self, supply: Supply) -> None:
+        """Refuse readings that were asked for on another station's scale: its check and weights would be taken for this one's."""
+        station = drawn_at(self.request)
+        if station in (None, supply.station_id):
+            return
+        drawn = Station.objects.filter(pk=station).first()
+        if drawn is not None and drawn.scale_id != supply.station.scale_id:
+            raise Refusal(
+                f"{supply.bottle.code} hangs on {supply.station}: weigh on {supply.station.scale or 'its scale'}, "
+                "and read again what is asked for now.",
+                code="another scale", field="supply",
+            )  # fmt: skip
 
     def _check(self, form: FillForm, person: User, key: uuid.UUID) -> None:
         """Record the scale's check that came with the form: an act of its own, whatever follows."""
@@ -143,6 +157,7 @@ class Fill(BottleActView):
                 reason_rows(reasons, self.bottle, standing_of(self.bottle), words_for(self.request, self.shop)) if reasons else []
             ),
             "refused": judgement.may_be_filled in ("no", "unknown"), "has_supplies": self.supply is not None,
+            "drawn_at": self.supply.station_id if self.supply else "",
         }  # fmt: skip
 
     def show(self, form: Any, *, status: int = 200) -> HttpResponse:
@@ -161,7 +176,10 @@ def forecast_live(request: HttpRequest, code: str) -> HttpResponse:
     form, bottle, judged = _typed(request, code)
     words = refill_words(request, judged.shop)
     part = forecast_part(worked(form, bottle, judged), form, bottle, judged, words)
-    return render(request, "bottles/_forecast.html", {"bottle": bottle} | part)
+    station = judged.supply.station_id if judged.supply else None
+    if drawn_at(request) not in (None, station):
+        part |= {"groups": form.groups(), "drawn_at": station}
+    return render(request, "bottles/_forecast_live.html", {"bottle": bottle} | part)
 
 
 @allow(EVERYONE, room="counter")
@@ -170,6 +188,12 @@ def course_live(request: HttpRequest, code: str) -> HttpResponse:
     form, bottle, judged = _typed(request, code)
     part = details_part(worked(form, bottle, judged), refill_words(request, judged.shop))
     return render(request, "bottles/_forecast_details.html", {"bottle": bottle} | part)
+
+
+def drawn_at(request: HttpRequest) -> int | None:
+    """The station that the page's fields were drawn for, where the page says so."""
+    said = request.POST.get("drawn_at", "")
+    return int(said) if said.isascii() and said.isdigit() and len(said) < 18 else None
 
 
 def _typed(request: HttpRequest, code: str) -> tuple[FillForm, Bottle, Judged]:
