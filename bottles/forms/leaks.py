@@ -21,7 +21,9 @@ class SmallMassField(MassField):
 class LeakForm(forms.Form):
     """A leak, as weight a week."""
 
-    leak = SmallMassField(label="A leak of, a week", required=False, help_text="10 g, 1/2 oz: how soon each scale would show it.")
+    leak = SmallMassField(
+        label="A leak of so much a week", required=False, help_text="10 g, 1/2 oz: how soon each scale would show it."
+    )
 
     def __init__(self, *args: Any, system: str, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)

@@ -47,7 +47,7 @@ class ParticularsForm(RegisterForm):
     dip_tube = forms.ChoiceField(label="Dip (siphon) tube", choices=Bottle.DIP_TUBES, initial="unknown", required=False)
     below_tube = VolumeField(
         label="Liquid below the dip tube's end (left behind)", required=False,
-        help_text="60 mL, if it was measured or the maker says so. It never comes out with the bottle upright.",
+        help_text="60 mL, if it was measured or the maker says so. With the bottle upright it comes out as vapour alone.",
     )
     outlet = text("Outlet", 60, help_text="Thread or standard of the valve's outlet.")
     disc = text("Safety disc", 60, help_text="Its pressure as marked, such as 3000 psi.")

@@ -80,7 +80,7 @@ def _drawn(chart: Chart, name: str) -> dict[str, Any]:
 def _lasts(course: Course) -> str:
     if course.seconds_to_90 is None:
         return "Nothing goes over."
-    said = f"Nine tenths of what goes over are there after {_minutes(course.seconds_to_90)}"
+    said = f"Nine tenths of what goes over is there after {_minutes(course.seconds_to_90)}"
     if course.seconds_to_limit is not None:
         return f"{said}, the limit after {_minutes(course.seconds_to_limit)}: close by the scale."
     return f"{said}; then it slows down."

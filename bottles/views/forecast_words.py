@@ -66,7 +66,7 @@ def forecast_context(asked: Asked, answer: Answer, words: RefillWords) -> dict[s
         "reached": reached,
         "already": found.reaches_limit == "already",
         "limits": _limits(answer, words),
-        "cold": "" if helps else _cold(answer, words), "helps": helps,
+        "cold": "" if _cold_said(helps, answer) else _cold(answer, words), "helps": helps,
         "left": _left(answer, supply, words),
         "line": words.small(answer.line_g),
         "line_origin": "entered" if supply.station.line_loss_g is not None else "computed",
@@ -157,6 +157,11 @@ def _limits(answer: Answer, words: RefillWords) -> list[tuple[str, str, str]]:
     found = answer.transferred
     named = (("quick", found.mixed), ("slow to condense", found.wall_condensing), ("kept at temperature", found.held))
     return [(name, words.mass(round(one.moved_kg * 1000)), STOPPED[one.stopped_by]) for name, one in named if one]
+
+
+def _cold_said(helps: dict[str, Any] | None, answer: Answer) -> bool:
+    """Whether what would help says how cold it must be, or that no cold will do."""
+    return helps is not None and (helps["chills"] or answer.transferred.warmest_receiver_k is None)
 
 
 def _cold(answer: Answer, words: RefillWords) -> str:

@@ -50,6 +50,7 @@ def helps_context(found: Helps, words: RefillWords) -> dict[str, Any] | None:
     return {
         "rows": rows, "said": [sentence for _, sentence in found.found.warnings],
         "assumed": NOT_WRITTEN.format(freezer=colder(found.places[0].coldest_k, words)) if assumed else "",
+        "chills": any(each.fills for each in chill),
     }  # fmt: skip
 
 
@@ -107,7 +108,8 @@ def _row(same: list[Remedy], words: RefillWords) -> dict[str, Any]:
         what = f"{DO[first.kind]}: {full if first.fills else _more(first, words)}"
         if first.cost_kg > 0.0:
             what += f"; {words.small(ceil(first.cost_kg * 1000))} of nitrous is lost"
-    return {"what": what + ".", "caution": first.caution, "times": []}
+    # What a fuller supply bottle is to hold stands in its row already.
+    return {"what": what + ".", "caution": "" if first.kind == FULLER else first.caution, "times": []}
 
 
 def _apart(same: list[Remedy], words: RefillWords) -> list[Remedy]:

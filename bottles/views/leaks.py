@@ -156,7 +156,9 @@ def _inputs(watch: Watch, words: RefillWords) -> list[dict[str, str]]:
 
 def _row(watch: Watch, leak_g: int, words: RefillWords, shop: Shop) -> dict[str, Any]:
     row = _brief(watch, leak_g, words, shop)
-    return row | {"figure": row["figure"] or "one weighing can't tell"}
+    # The column's head says which leak.
+    shows = row["shows"].removeprefix(f"a leak of {_small(leak_g, words)} a week ")
+    return row | {"figure": row["figure"] or "one weighing can't tell", "shows": shows}
 
 
 def _scales(leak_g: int, words: RefillWords, shop: Shop) -> list[list[str]]:

@@ -38,6 +38,7 @@ def decide_policy(
 
 
 COLDEST_MK, WARMEST_MK = 233_150, 313_150  # −40 and 40 °C
+FREEZER_MK = 288_150  # 15 °C: no freezer that runs is warmer
 DRY_ICE_MK = 213_150  # −60 °C: colder than any freezer for bottles
 CHILLS = ("freezer", "bath")
 
@@ -74,6 +75,8 @@ def _refuse_cold(values: dict[str, Any]) -> None:
             "That is the cold of dry ice. Valves, seals and safety discs aren't made for it, and a bottle filled so cold may be "
             "full of liquid before it's warm: chill in a freezer or in iced water."
         )
+    elif coldest is not None and values.get("kind") == "freezer" and coldest > FREEZER_MK:
+        odd = "coldest", "A freezer is colder than that: read a thermometer that stood in it. Check the figure and its unit."
     elif coldest is not None and not COLDEST_MK <= coldest <= WARMEST_MK:
         odd = "coldest", "A freezer or bath for bottles is between -40 and 40 °C. Check the figure and its unit."
     if odd:

@@ -136,7 +136,7 @@ def test_the_details_show_the_course_as_curves_with_the_same_numbers(client: Cli
     answer = client.post(reverse("bottles:course_live", args=["T-0412"]), typed(works))
     page, raw = said(answer), answer.content.decode()
     assert raw.count("<svg") == 2 and raw.count("<table") >= 3 and "<html" not in raw
-    assert re.search(r"Nine tenths of what goes over are there after (about \d+ min|less than a minute)", page)
+    assert re.search(r"Nine tenths of what goes over is there after (about \d+ min|less than a minute)", page)
     assert "Gauge (bar)" in page and "In the bottle (kg)" in page and "common practice, no source" in page
 
 
