@@ -89,9 +89,9 @@ def _supply(supply: Any, fills: selected.FillsLeft | None, words: RefillWords, s
 
 
 def _fills(fills: selected.FillsLeft, words: RefillWords, shop: Shop) -> str:
-    """What a kept forecast says, less what left since."""
+    """What a kept forecast says for quick fills, less what left since."""
     at = fills.forecast_at.astimezone(clock.zone(shop))
     when = f"{at:%H:%M}" if at.date() == clock.today(shop) else f"{at:%a %d %b}"
-    count = f"about {fills.count}" if fills.count else "no"
+    count = f"at best {fills.count}" if fills.count else "no"
     into = f"{words.mass(fills.target_g)} into a bottle at {words.temperature(fills.bottle_mk)}"
-    return f"{count} full fill{'' if fills.count == 1 else 's'} of {into} left, by the forecast of {when}"
+    return f"{count} full fill{'s' if fills.count > 1 else ''} of {into} left, by the forecast of {when}"

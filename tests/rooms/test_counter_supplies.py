@@ -43,12 +43,12 @@ def test_a_kept_forecast_tells_the_fills_left_less_what_left_since(
     fills = Forecast.objects.get().result["full_fills"]
     assert fills >= 2
     said = supplies()[0]["fills"]
-    assert said.startswith(f"about {fills} full fills of ")
+    assert said.startswith(f"at best {fills} full fills of ")
     assert " left, by the forecast of " in said
     refill = works.bottle.refills.get()
     weigh_refill(key=key(), person=works.person, refill=refill, weight=works.weight(4_600), ended_by="by hand")
     left = supplies()[0]["fills"]
-    assert left.startswith(f"about {fills - 1} full fill")
+    assert left.startswith(f"at best {fills - 1} full fill")
 
 
 def test_an_old_forecast_is_not_told(works: Works, supplies: Callable[[], list[dict[str, Any]]]) -> None:
