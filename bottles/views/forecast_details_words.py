@@ -20,6 +20,7 @@ STARTS = {
 }
 START_HEAD = ["How it starts", "Goes over", "Then holds", "Beside now"]
 FILLS_HEAD = ["Full fills, the supply bottle", "Likely", "If quick", "Then left", "Next gets"]
+COLDER_GIVES_MORE = "Without time to warm up it gives more here: a colder supply bottle keeps less of its nitrous back as vapour."
 HIDDEN = {"condensation_prior", "near_critical"}  # said with the forecast
 UNKNOWN = "The supply bottle's weight isn't known: weigh it, then its course and its fills can be worked out."
 
@@ -47,7 +48,7 @@ def _details(asked: Asked, answer: Answer, words: RefillWords) -> dict[str, Any]
         "pumped": answer.pumped is not None,
         "starts": [] if answer.pumped else _starts(starts_compared(pair), words), "start_head": START_HEAD,
         "fills": _fills(fills, words) if fills and fills.warmed_quick.count else [], "fills_head": FILLS_HEAD,
-        "fills_said": [sentence for code, sentence in fills.warnings if code not in HIDDEN] if fills else [],
+        "fills_said": fills_said(fills) if fills else [],
         "fills_next": words.mass(round(fills.warmed_likely.then_kg * 1000)) if fills and not fills.warmed_quick.count else "",
         "below": _below(asked, answer, words),
     }  # fmt: skip
@@ -73,6 +74,14 @@ def _fills(found: FillsLeft, words: RefillWords) -> list[list[str]]:
         row("warming up again between them", found.warmed_likely, found.warmed_quick),
         row("without time to warm up", found.straight_likely, found.straight_quick),
     ]
+
+
+def fills_said(found: FillsLeft) -> list[str]:
+    """Sentences beside the count of fills."""
+    said = [sentence for code, sentence in found.warnings if code not in HIDDEN]
+    if found.straight_likely.count > found.warmed_likely.count:
+        said.append(COLDER_GIVES_MORE)
+    return said
 
 
 def _below(asked: Asked, answer: Answer, words: RefillWords) -> str:

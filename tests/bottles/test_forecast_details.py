@@ -21,6 +21,7 @@ from bottles.services import forecast_details
 from bottles.services.forecast_details import course_over_time, fills_ahead, starts_compared, would_help
 from bottles.services.forecasting import Pair
 from bottles.views.course_chart import course_context
+from bottles.views.forecast_details_words import COLDER_GIVES_MORE, fills_said
 from bottles.views.helps_words import colder, helps_context
 from bottles.views.refill_words import RefillWords
 from shop.physics.errors import PhysicsError
@@ -90,6 +91,12 @@ def test_equal_bottles_have_a_course_of_one_moment() -> None:
 def test_a_supply_known_by_its_gauge_alone_has_neither_course_nor_count() -> None:
     two = pair(source_range_kg=(5.0, 15.0))
     assert course_over_time(two, STATION) is None and fills_ahead(two) is None and starts_compared(two) == []
+
+
+def test_where_a_supply_gives_more_without_warming_up_it_says_why() -> None:
+    more, fewer = fills_ahead(pair(16.0, 20.0, -40.0)), fills_ahead(pair(15.0, 20.0, -40.0))
+    assert more and more.straight_likely.count > more.warmed_likely.count and COLDER_GIVES_MORE in fills_said(more)
+    assert fewer and fewer.straight_likely.count <= fewer.warmed_likely.count and COLDER_GIVES_MORE not in fills_said(fewer)
 
 
 def test_chilling_times_are_told_for_what_fills_it_and_only_where_it_gets_there() -> None:
