@@ -21,6 +21,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
+from functools import lru_cache
 from typing import Literal
 
 from bottles.rules.specifications import Specification, specifications
@@ -93,6 +94,7 @@ _WORDS = {
 }
 
 
+@lru_cache(maxsize=4096)
 def read_mark(typed: str) -> SpecMark:
     """The mark typed, as a specification with its pressure; unknown stays unknown."""
     # Python's upper() turns the small pi and rho of the mark into the capital ones.

@@ -70,7 +70,8 @@ def latest_figures(shop: Shop) -> Figures:
 def closed_window(many: int = WINDOW) -> QuerySet[Refill]:
     """Return the latest closed refills, the latest first."""
     found = Refill.objects.filter(closed_at__isnull=False).order_by("-closed_at", "-id")
-    return found.select_related("bottle", "station__scale", "person")[:many]
+    # Hundreds of refills share a few stations, scales and people: those are read once.
+    return found.select_related("bottle").prefetch_related("station__scale", "person")[:many]
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 from django.http import HttpRequest
 
@@ -10,6 +11,8 @@ from bottles.models import Bottle, Tare
 from shop.base.models import Shop
 from shop.people.models import User
 from shop.physics.formatting import UnitSystem, format_mass, format_volume, unit_system
+
+_written = lru_cache(maxsize=8192)(format_mass)  # lists say the same weights again and again
 
 
 @dataclass(frozen=True, slots=True)
@@ -20,7 +23,7 @@ class Words:
 
     def mass(self, grams: int, *, plus_minus_g: int | None = None) -> str:
         """A weight, with its ± where it has one."""
-        return format_mass(grams, self.units.mass, self._step(plus_minus_g), plus_minus_g=plus_minus_g)
+        return _written(grams, self.units.mass, self._step(plus_minus_g), plus_minus_g=plus_minus_g)
 
     def capacity(self, bottle: Bottle) -> str:
         """The water capacity, in litres beside cubic inches where those are read."""

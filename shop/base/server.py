@@ -1,8 +1,9 @@
 """Gunicorn's settings: `gunicorn -c python:shop.base.server shop.wsgi`.
 
 The app is loaded once and forked, so that workers share its memory. CoolProp takes seconds to
-load: the first workers answer without it while the parent loads it, then the parent puts workers
-that share it in their place, each old one finishing what it has in hand.
+load: the first workers answer without it while the parent loads it, with the table of saturation
+and every page, then the parent puts workers that share all that in their place, each old one
+finishing what it has in hand.
 """
 
 from __future__ import annotations
@@ -42,9 +43,14 @@ def _warm(server: Any) -> None:
     while len(server.WORKERS) < server.num_workers:
         threading.Event().wait(0.2)
     threading.Event().wait(1.0)  # let the first page out before two cores are busy
+    from django.urls import get_resolver
+
     from shop.physics.fluid import load
+    from shop.physics.saturation_table import saturation_table
 
     load()
+    saturation_table()
+    get_resolver().url_patterns  # noqa: B018 reading them imports the pages
     for pid in list(server.WORKERS):
         with suppress(ProcessLookupError):
             os.kill(pid, signal.SIGTERM)

@@ -59,7 +59,7 @@ def _bottle(one: Any, judgement: Judgement, words: Words, shop: Shop) -> dict[st
     owner = one.ownership
     of_limit = f" of {words.mass(judgement.limit.grams)}" if judgement.limit.grams else ""
     return {
-        "url": one.bottle.get_absolute_url(),
+        "url": f"/b/{one.bottle.code}",
         "code": one.bottle.code,
         "owner": (one.customer or "erased customer") if owner and owner.customer_id
         else "the shop" if owner and owner.kind == "shop" else "the supplier",

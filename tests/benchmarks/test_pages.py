@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from datetime import timedelta
 from typing import Any
 
 import pytest
@@ -11,12 +12,14 @@ from django.test import Client
 from django.test.utils import CaptureQueriesContext
 from django.urls import reverse
 
+from bottles.models import Weighing
+from bottles.services import refill_steps
 from shop.base import clock
 from tests import factories
 from tests.benchmarks.bare import Visitor, lay, lay_filled, lay_list
 from tests.benchmarks.conftest import Told
 from tests.benchmarks.measuring import in_turn
-from tests.bottles.of_refill import TARE_G, Works
+from tests.bottles.of_refill import TARE_G, Works, degrees, key
 
 pytestmark = [pytest.mark.benchmark, pytest.mark.django_db, pytest.mark.urls("tests.benchmarks.bare")]
 
@@ -116,6 +119,42 @@ def test_a_page_of_one_thing_beside_its_template_filled_at_once(name: str, world
     )
     tell(name, measured, "page", beside="its text")
     tell(name, measured, "page", beside="bare", goal=3)
+
+
+LEARNED_FROM, STORED = 25, 500
+
+
+def test_what_was_learned_and_what_leaks_beside_the_bare_page(world: World, tell: Told) -> None:
+    works = world.works
+    for number in range(LEARNED_FROM):
+        bottle, supply = works.bottle_to_fill(f"T-{7000 + number}"), works.connected(f"S-{7000 + number}")
+        refill, weight = works.open(bottle, supply, bottle_temperature=degrees("5 °C")), works.weight(2_000 + number)
+        refill_steps.weigh_refill(key=key(), person=works.person, refill=refill, weight=weight, ended_by="flow ceased")
+    weeks_stored(works.scale)
+    ask = world.visitor.ask
+    pages = {"learning, 25 refills": ("learning", "T-7001"), "leak watch, 500 bottles": ("leaks", "Z-0001")}
+    for name, (url, row) in pages.items():
+        address = reverse(f"bottles:{url}")
+        page = ask(address).content.decode()
+        assert row in page
+        bare = lay_filled("page", world.client.get(address))
+        assert 0.9 * len(page) < len(ask(bare).content)
+        measured = in_turn({"page": lambda a=address: ask(a), "bare": lambda b=bare: ask(b)}, rounds=ROUNDS, calls=CALLS)
+        tell(name, measured, "page", beside="bare")
+
+
+def weeks_stored(scale: Any) -> None:
+    """Many bottles that were only weighed, once a week."""
+    place, times = factories.PlaceFactory(), [factories.THEN + timedelta(weeks=week) for week in range(4)]
+    for number in range(STORED):
+        bottle = factories.BottleFactory(code=f"Z-{number:04}")
+        tare = factories.weighed(bottle, gross_g=TARE_G + 4_000, tare_g=TARE_G, scale=scale).tare
+        Weighing.objects.bulk_create([
+            Weighing(act=bottle.act, bottle=bottle, scale=scale, tare=tare, step="stored", gross_g=TARE_G + 4_000 - number % 3,
+                     typed="as read", net_g=4_000 - number % 3, error_g=28, happened_at=at)
+            for at in times[1:]
+        ])  # fmt: skip
+        factories.placed(bottle, "in", place=place)
 
 
 SHORT = {"bottle_temperature": "15 °C", "method": "pressure"}  # pressure alone doesn't fill it: what would help is worked out
