@@ -160,8 +160,9 @@ def _limits(answer: Answer, words: RefillWords) -> list[tuple[str, str, str]]:
 
 
 def _cold_said(helps: dict[str, Any] | None, answer: Answer) -> bool:
-    """Whether what would help says how cold it must be, or that no cold will do."""
-    return helps is not None and (helps["chills"] or answer.transferred.warmest_receiver_k is None)
+    """Whether what would help says how cold it must be, or that no cold will do; or it's colder than that now."""
+    warmest = answer.transferred.warmest_receiver_k
+    return helps is not None and (helps["chills"] or warmest is None or warmest >= answer.pair.receiver_temperature_k)
 
 
 def _cold(answer: Answer, words: RefillWords) -> str:

@@ -24,6 +24,9 @@ from bottles.views.refill_words import RefillWords
 from shop.physics.units import value_in
 
 FULL = {QUICK: "full if vapour condenses quickly", LIKELY: "full, likely", EVERY: "full in every case"}
+SHORT = {
+    QUICK: "still a short fill", LIKELY: "likely still a short fill", EVERY: "still a short fill if vapour is slow to condense",
+}  # fmt: skip
 DO = {
     VENT_FIRST: "Vent it to the room before filling",
     PURGE: "Purge the air out of it first",
@@ -119,7 +122,7 @@ def _apart(same: list[Remedy], words: RefillWords) -> list[Remedy]:
 
 
 def _more(remedy: Remedy, words: RefillWords) -> str:
-    return f"{words.small(floor(remedy.gain_kg * 1000))} more goes over, still a short fill"
+    return f"{words.small(floor(remedy.gain_kg * 1000))} more goes over, {SHORT[remedy.case]}"
 
 
 def _up(kilograms: float | None, words: RefillWords) -> str:

@@ -122,6 +122,19 @@ def test_a_freezer_that_is_not_cold_enough_is_told_as_that(client: Client, works
     page = live(client, works)
     assert "Chill it to 7 °C, as cold as it gets here" in page and "more goes over, still a short fill" in page
     assert "in the drinks cooler:" not in page  # no time to a temperature that it doesn't reach
+    assert "For a full fill it must be at" in page
+
+
+def test_a_cold_that_the_bottle_has_already_is_not_asked_for(client: Client, works: Works) -> None:
+    factories.PlaceFactory(code="COOL", name="the drinks cooler", kind="freezer", coldest_mk=280_150)
+    page = live(client, works, bottle_temperature="0 °C")  # full if it's quick, and colder than any place here
+    assert "The limit is reached at best" in page and "For a full fill it must be at" not in page
+
+
+def test_more_for_the_cautious_case_alone_is_told_as_that(client: Client, works: Works) -> None:
+    page = live(client, works, bottle_temperature="-4 °C")
+    assert "The limit is likely reached" in page
+    assert re.search(r"as cold as it gets here: .+ more goes over, still a short fill if vapour is slow to condense\.", page)
 
 
 def test_venting_first_and_purging_belong_to_their_starts(client: Client, works: Works) -> None:

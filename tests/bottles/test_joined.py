@@ -112,6 +112,7 @@ def test_what_cant_be_computed_has_its_sentence(desk: Client, works: Works, fiel
     response = page(desk, works, **asked)
     assert response.status_code == 200
     assert response.context["form"].errors[field or "__all__"]
+    assert "Not saved" not in response.content.decode()  # the page saves nothing
     assert response.context["told"] is None
 
 

@@ -222,7 +222,7 @@ def test_the_limit_the_cold_and_what_is_left_are_said(client: Client, works: Wor
         "quick",
         "slow to condense",
         "kept at temperature",
-        "For a full fill it must be at",
+        "Chill it to",
         "S-07 will have",
         "The line keeps",
     ):
