@@ -12,6 +12,7 @@ from bottles.physics.chilling import FREEZER, ICED_WATER, Surroundings, temperat
 from bottles.physics.heating import room_loss, seconds_to_reach
 from bottles.physics.vessel import COLDEST, Vessel
 from bottles.rules.planning.problem import Start
+from bottles.rules.planning.told import TOLD
 from bottles.selectors.books import STANDS, day_start
 from shop.base import clock
 from shop.base.models import Job, Place, Shop
@@ -32,6 +33,10 @@ class Cold:
     coldest_k: float
     takes: int
     place_id: int | None = None
+
+    def holds(self, place_id: int | None) -> bool:
+        """Whether a bottle that stands at a place stands in it."""
+        return self.place_id is not None and self.place_id == place_id
 
     @property
     def surroundings(self) -> Surroundings | None:
@@ -55,7 +60,7 @@ def latest_question() -> DayPlan | None:
 
 def latest_result(plan: DayPlan) -> DayPlanResult | None:
     """Return the latest working out of today's plan: of this question, or of one before it until this one is done."""
-    return DayPlanResult.objects.filter(plan__day=plan.day).select_related("plan").order_by("-id").first()
+    return DayPlanResult.objects.filter(plan__day=plan.day, result__told=TOLD).select_related("plan").order_by("-id").first()
 
 
 def making(plan: DayPlan) -> Job | None:
@@ -78,7 +83,7 @@ def temperature_now(vessel: Vessel, custody: Custody | None, colds: list[Cold], 
     """Return how cold a bottle is by where it stands since when: the room's, or on its way to a freezer's [K]."""
     for cold in colds:
         surroundings = cold.surroundings
-        if custody is not None and custody.place_id is not None and custody.place_id == cold.place_id and surroundings:
+        if custody is not None and cold.holds(custody.place_id) and surroundings:
             return temperature_after(vessel, max(0.0, (now - custody.happened_at).total_seconds()), surroundings)[1]
     return vessel.temperature_k
 

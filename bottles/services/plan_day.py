@@ -7,7 +7,7 @@ listed with its reason. Nothing is written.
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date, datetime, time, timedelta
 from typing import Any
 
@@ -36,6 +36,7 @@ from shop.physics.errors import PhysicsError
 DONE_BEFORE_FILLING = frozenset(
     {"look-owed", "star-check-owed", "pressure-kept-not-given", "dry-and-purge", "net-not-given"}
 )
+IN_REFILL = "in-open-refill"
 FULL = frozenset({"at-its-limit", "within-plus-minus"})
 GOOD_PER_MILLE = 950  # where the shop set none (common practice, no source)
 
@@ -54,13 +55,19 @@ class Gathered:
     pumped: tuple[str, ...]  # stations, planned as by pressure
     is_prior: bool  # whether no refill of the shop's own stands behind the figures
     after_act: int
+    rooms_taken: tuple[int, ...]  # in each freezer or bath, by what the plan doesn't fill
+    being_filled: tuple[tuple[str, str], ...]  # bottle and station
 
     def beside(self, shop: Shop, inputs: Mapping[str, Any]) -> dict[str, Any]:
         """Everything but the plan itself, ready to be kept."""
         return {
             "zero": self.now.isoformat(), "stations": list(self.stations), "not_weighed": list(self.not_weighed),
-            "colds": [{"name": cold.name, "mk": round(cold.coldest_k * 1000), "takes": cold.takes} for cold in self.colds],
+            "colds": [
+                {"name": cold.name, "mk": round(cold.coldest_k * 1000), "takes": cold.takes, "taken": others}
+                for cold, others in zip(self.colds, self.rooms_taken, strict=True)
+            ],
             "left_out": list(self.left_out), "not_counted": list(self.not_counted), "pumped": list(self.pumped),
+            "being_filled": [{"bottle": bottle, "station": station} for bottle, station in self.being_filled],
             "is_prior": self.is_prior, "closes_s": self.day.closes_s, "room_mk": round(self.day.room_k * 1000),
             "order": _order(self.day, shop, int(inputs["lead_days"])),
         }  # fmt: skip
@@ -74,17 +81,22 @@ def gather(shop: Shop, inputs: Mapping[str, Any]) -> Gathered:
     stations = list(Station.objects.filter(active=True, scale__isnull=False).order_by("name"))
     known = _Register(shop, book, now, room_k, colds, latest_figures(shop))
     sources, not_counted = known.sources(stations, inputs["supply_mk"] / 1000)
-    bottles, left_out, not_weighed = known.waiting({source.code for source in sources})
+    bottles, left_out, not_weighed = known.waiting({source.code for source in sources}, stations)
+    taken = known.rooms_taken({bottle.code for bottle in bottles})
+    stood = [sum(bottle.stands_in == number for bottle in bottles) for number in range(len(colds))]
     opens, closes = (_seconds_to(inputs[name], book.on, shop, now) for name in ("opens", "closes"))
     day = Day(
         tuple(bottles), tuple(sources), known.stations_free(stations, inputs), max(closes, 0), opens_s=max(opens, 0),
         people=inputs["people"], fill_s=inputs["fill_minutes"] * 60, change_s=inputs["change_minutes"] * 60,
-        slots=tuple(cold.takes for cold in colds), good_per_mille=_good_enough(book), room_k=room_k,
+        # Where more stand than it should take, it does take them.
+        slots=tuple(max(cold.takes - others, inside) for cold, others, inside in zip(colds, taken, stood, strict=True)),
+        good_per_mille=_good_enough(book), room_k=room_k,
     )  # fmt: skip
     latest = Act.objects.aggregate(latest=Max("pk"))["latest"] or 0
     return Gathered(
         day, now, tuple(station.name for station in stations), tuple(colds), tuple(not_weighed), tuple(left_out),
-        tuple(not_counted), tuple(station.name for station in stations if station.pumped), known.is_prior, latest,
+        tuple(not_counted), tuple(station.name for station in stations if station.pumped), known.is_prior, latest, taken,
+        tuple((refill.bottle.code, refill.station.name) for refill in known.open),
     )  # fmt: skip
 
 
@@ -94,20 +106,26 @@ class _Register:
     def __init__(self, shop: Shop, book: Rulebook, now: datetime, room_k: float, colds: list[Cold], figures: Figures) -> None:
         self.shop, self.book, self.now, self.room_k, self.colds, self.figures = shop, book, now, room_k, colds, figures
         self.is_prior = False
-        self._open = list(Refill.objects.filter(closed_at__isnull=True))
+        opened = list(Refill.objects.filter(closed_at__isnull=True).select_related("bottle", "station"))
+        # One that waits, to be chilled, holds no hose and goes on in the plan.
+        self._waits = {refill.bottle_id: refill for refill in opened if refill.wait_until is not None}
+        self.open = [refill for refill in opened if refill.wait_until is None]
 
     def stations_free(self, stations: Sequence[Station], inputs: Mapping[str, Any]) -> tuple[int, ...]:
-        """When each hose is free: a refill that is open holds it as long as a fill takes."""
+        """When each hose is free: a refill that goes on holds it as long as a fill takes."""
         fill = timedelta(minutes=inputs["fill_minutes"])
         busy: dict[int, int] = {}
-        for refill in self._open:
+        for refill in self.open:
             until = max(int((refill.opened_at + fill - self.now).total_seconds()), 0)
             busy[refill.station_id] = max(busy.get(refill.station_id, 0), until)
         return tuple(busy.get(station.pk, 0) for station in stations)
 
-    def waiting(self, supplies: set[str]) -> tuple[list[Waiting], list[dict[str, Any]], list[str]]:
+    def waiting(
+        self, supplies: set[str], stations: Sequence[Station]
+    ) -> tuple[list[Waiting], list[dict[str, Any]], list[str]]:  # fmt: skip
         """Bottles to fill; those that wait for it and may not have it; those not weighed since they came."""
-        filling = {refill.bottle_id for refill in self._open}
+        filling = {refill.bottle_id for refill in self.open}
+        hoses = {station.pk: number for number, station in enumerate(stations)}
         standings = [
             one for one in counter.waiting()
             if wants_filling(one.wanted or "") and one.pk not in filling and one.bottle.code not in supplies  # type: ignore[attr-defined]
@@ -118,9 +136,10 @@ class _Register:
         found, left_out, not_weighed = [], [], []
         for one in standings:
             judgement, holding = judged[one.pk], held[one.pk]
-            if _is_done(one, judgement):
+            paused = self._waits.get(one.pk)
+            if _is_done(one, judgement, goes_on=paused is not None):
                 continue
-            why = _why_not(judgement)
+            why = _why_not(judgement, goes_on=paused is not None)
             if why is not None:
                 left_out.append({"bottle": one.bottle.code, **why})
                 continue
@@ -128,7 +147,7 @@ class _Register:
             bottle = self._bottle(full.get(one.pk, one), judgement, None if unweighed else holding)
             if bottle is None:
                 continue
-            found.append(bottle)
+            found.append(bottle if paused is None else replace(bottle, hose=hoses.get(paused.station_id)))
             if unweighed:
                 not_weighed.append(one.bottle.code)
         return found, left_out, not_weighed
@@ -149,12 +168,21 @@ class _Register:
         now_k = temperature_now(vessel, standing.custody, self.colds, self.now)
         vessel = Vessel(volume, wall, vessel.net_kg, now_k)
         figure = self.figures.of(bottle).condensation
+        unsure = vessel.net_kg if holding is None else holding.error_g / 1000
         self.is_prior = self.is_prior or figure.is_prior
         custody = standing.custody
         return Waiting(
             bottle.code, volume, wall, vessel.net_kg, limit / 1000, starts_of(vessel, self.colds),
-            self._promised(custody.promised_at if custody else None), figure.figure,
+            self._promised(custody.promised_at if custody else None), figure.figure, figure.deviation, unsure,
+            next((number for number, cold in enumerate(self.colds) if custody and cold.holds(custody.place_id)), None),
         )  # fmt: skip
+
+    def rooms_taken(self, planned: set[str]) -> tuple[int, ...]:
+        """How many rooms of each freezer or bath are taken by bottles that the plan doesn't fill."""
+        filling = [refill.bottle_id for refill in self.open]
+        rows = Standing.objects.filter(is_in=True, custody__place__in=[cold.place_id for cold in self.colds if cold.place_id])
+        places = list(rows.exclude(pk__in=filling).exclude(bottle__code__in=planned).values_list("custody__place", flat=True))
+        return tuple(sum(cold.holds(place) for place in places) for cold in self.colds)
 
     def _promised(self, promised_at: datetime | None) -> int | None:
         """Seconds to a promise of today or before; one for another day presses nobody yet."""
@@ -223,26 +251,28 @@ def _supplies(connected: Sequence[int]) -> QuerySet[Standing]:
     )
 
 
-def _is_done(standing: Any, judgement: Judgement) -> bool:
+def _is_done(standing: Any, judgement: Judgement, *, goes_on: bool) -> bool:
     """Whether its refill is closed already, or it holds its limit: it waits for its owner."""
     weighed_now = standing.weighing is not None and "net" not in judgement.not_judged
-    if weighed_now and standing.weighing.step == "disconnected":
+    if weighed_now and not goes_on and standing.weighing.step == "disconnected":
         return True
     return any(reason.code in FULL for reason in judgement.reasons if "filling" in reason.about)
 
 
-def _why_not(judgement: Judgement) -> dict[str, Any] | None:
-    """The first reason that stands in the way of a fill; None where nothing does but what is done before any."""
-    if judgement.limit.grams and judgement.may_be_filled in ("yes", "only after"):
-        against = [
-            reason for reason in judgement.reasons
-            if "filling" in reason.about and reason.severity == "first" and reason.code not in DONE_BEFORE_FILLING
-        ]  # fmt: skip
-        if not against:
-            return None
-    else:
-        stops = ("refuses", "unknown", "first")
-        against = [reason for reason in judgement.reasons if "filling" in reason.about and reason.severity in stops]
+def _why_not(judgement: Judgement, *, goes_on: bool) -> dict[str, Any] | None:
+    """The first reason that stands in the way of a fill; None where nothing does but what is done before any.
+
+    A refill that is open and waits is no reason: it goes on.
+    """
+    passed = DONE_BEFORE_FILLING | ({IN_REFILL} if goes_on else set())
+    stops = ("refuses", "unknown", "first")
+    against = [
+        reason for reason in judgement.reasons
+        if "filling" in reason.about and reason.severity in stops and reason.code not in passed
+    ]  # fmt: skip
+    able = judgement.may_be_filled in ("yes", "only after") or (goes_on and judgement.may_be_filled == "no")
+    if judgement.limit.grams and able and not against:
+        return None
     kind = {"no": "no", "unknown": "unknown"}.get(judgement.may_be_filled, "after")
     if not against:
         return {"kind": "unknown", "sentence": "Its fill limit isn't known.", "next_step": "Complete its record."}

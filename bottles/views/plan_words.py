@@ -46,12 +46,15 @@ class PlanWords:
         self.told: dict[str, Any] = kept.result
         self.zone = clock.zone(shop)
         self.zero = datetime.fromisoformat(self.told["zero"])
+        began = self.zero.astimezone(self.zone)
+        self._zero_h = began.hour + began.minute / 60.0
 
     def page(self) -> dict[str, Any]:
         """Everything that the page shows of it."""
         told = self.told
         return {
             "made": f"{self.kept.made_at.astimezone(self.zone):%H:%M}", "after": self._cause(), "counted": self._counted(),
+            "broken": self._broken(), "being_filled": told.get("being_filled", []),
             "proven": self._proven(), "promises": self._promises(), "fills": [self._fill(one) for one in told["fills"]],
             "unfilled": [self._unfilled(one) for one in told["unfilled"]],
             "left_out": [
@@ -60,14 +63,16 @@ class PlanWords:
             "not_weighed": told["not_weighed"], "not_counted": [one | {"url": _of(one["code"])} for one in told["not_counted"]],
             "sources": self._sources(), "empties": [self._empty(one) for one in told["empties"]], "order": self._order(),
             "pumped": told["pumped"], "is_prior": told["is_prior"], "room": self.words.temperature(told["room_mk"]),
-            "colds": [
-                f"{cold['name']} at {self.words.temperature(cold['mk'])}, {cold['takes']} at once" for cold in told["colds"]
-            ],
+            "colds": [self._cold(cold) for cold in told["colds"]],
             "good_enough": f"{told['good_per_mille'] / 10:g} %", "warming": self._warming(),
         }  # fmt: skip
 
     def _at(self, seconds: int) -> str:
         return f"{(self.zero + timedelta(seconds=seconds)).astimezone(self.zone):%H:%M}"
+
+    def _hours(self, seconds: int) -> float:
+        """Hours since midnight, for an axis; past the next one they count on."""
+        return self._zero_h + seconds / 3600.0
 
     def _cause(self) -> str:
         cause = self.told.get("cause", {})
@@ -83,8 +88,22 @@ class PlanWords:
             return f"{said}; no plan can do more." if told["good"] < told["count"] else f"{said}."
         return f"{said}; this is the best plan." if told["exact"] else f"{said}; no plan can do more than {most}."
 
+    def _broken(self) -> str:
+        told = self.told
+        promised = sum(one["promised_s"] is not None for one in (*told["fills"], *told["unfilled"]))
+        if not promised or not told["broken"]:
+            return "Every promise is kept." if promised else ""
+        many = "The only promise will break" if promised == 1 else f"{told['broken']} of {promised} promises will break"
+        return f"{many}; no plan can keep more." if told["broken"] == told["least_broken"] else f"{many}."
+
+    def _cold(self, cold: dict[str, Any]) -> str:
+        said = f"{cold['name']} at {self.words.temperature(cold['mk'])}, {cold['takes']} at once"
+        return f"{said} ({cold['taken']} of them not in this plan)" if cold.get("taken") else said
+
     def _proven(self) -> str:
         told = self.told
+        if not told["looked_at"]:
+            return ""
         if told["exact"]:
             return f"Every order and every way of filling was looked at ({told['looked_at']} partial plans): no plan is better."
         least = told["least_broken"]
@@ -109,29 +128,26 @@ class PlanWords:
         if not filled:
             breaks.insert(0, "not filled today")
         done = f"done {self._at(one['draws'][-1]['until_s'])}" if filled else ""
+        unsure = one.get("low_short_g", 0) if filled and not breaks else 0
+        if unsure:
+            done = f"{done}, may end {self.words.small(unsure)} short of good enough"
         return {
             "code": one["bottle"], "url": _of(one["bottle"]), "promised_s": one["promised_s"],
-            "promised": self._at(one["promised_s"]), "kind": "no" if breaks else "yes",
-            "word": "Will break" if breaks else "Kept", "how": ", ".join([part for part in (done, *breaks) if part]),
+            "promised": self._at(one["promised_s"]), "kind": "no" if breaks else "after" if unsure else "yes",
+            "word": ("Late already" if one["promised_s"] < 0 else "Will break") if breaks else "Likely kept" if unsure else "Kept",
+            "how": ", ".join([part for part in (done, *breaks) if part]),
         }  # fmt: skip
 
     def _fill(self, one: dict[str, Any]) -> dict[str, Any]:
         words, draws = self.words, one["draws"]
         percent = round(100 * one["final_g"] / one["target_g"])
-        chill = ""
-        if one["chill_from_s"] is not None:
-            cold = self.told["colds"][one["place"]]
-            chill = (
-                f"Chill in {cold['name']} from {self._at(one['chill_from_s'])} to {self._at(one['chill_until_s'])}, "
-                f"to {words.temperature(one['start_mk'])}"
-            )
-        elif one["start_mk"] < self.told["room_mk"] - 2_000:
-            chill = f"Cold already, {words.temperature(one['start_mk'])}"
+        span, likely = words.span(one["low_g"], one["high_g"]), words.mass(one["final_g"])
         return {
             "code": one["bottle"], "url": _of(one["bottle"]), "at": self._at(draws[0]["from_s"]),
-            "until": self._at(draws[-1]["until_s"]), "chill": chill,
+            "until": self._at(draws[-1]["until_s"]), "chill": self._chill(one),
+            "goes_on": one["goes_on"], "why": [self._why(one, draw) for draw in one["draws"] if draw["quick_g"] is not None],
             "kind": "yes" if one["good"] else "after", "word": f"{percent} % of target",
-            "holds": f"{words.mass(one['final_g'])} of {words.mass(one['target_g'])}",
+            "holds": f"{likely}{'' if span == likely else f' ({span})'} of {words.mass(one['target_g'])}",
             "draws": [
                 {
                     "at": self._at(draw["from_s"]), "source": draw["source"], "station": self.told["stations"][draw["station"]],
@@ -140,6 +156,31 @@ class PlanWords:
                 for draw in draws
             ],
         }  # fmt: skip
+
+    def _chill(self, one: dict[str, Any]) -> str:
+        """Where a bottle is chilled, from when to when, and to what."""
+        cold_as = self.words.temperature(one["start_mk"])
+        if one["chill_from_s"] is None:
+            return f"Cold already, {cold_as}" if one["start_mk"] < self.told["room_mk"] - 2_000 else ""
+        name, until = self.told["colds"][one["place"]]["name"], self._at(one["chill_until_s"])
+        if one["stands_in"] == one["place"]:
+            return f"Leave in {name} until {until}, to {cold_as}"
+        return f"Chill in {name} from {self._at(one['chill_from_s'])} to {until}, to {cold_as}"
+
+    def _why(self, one: dict[str, Any], draw: dict[str, Any]) -> str:
+        """How a draw's mass came: both ends of it, its limits, and where between them it's expected."""
+        words, slow, quick = self.words, draw["slow_g"], draw["quick_g"]
+        begins = (
+            f"{draw['source']} holds {words.mass(draw['there_g'])} then, at {words.temperature(draw['there_mk'])}; "
+            f"the bottle {words.small(draw['held_g'])}, at {words.temperature(draw['bottle_mk'])}."
+        )
+        likely = round(slow + (quick - slow) * one["figure_milli"] / 1000)
+        limits = (
+            f"Without a fill limit {words.small(slow)} would go over if it's slow to condense, {words.small(quick)} if it's quick; "
+            f"with the condensation figure {one['figure_milli'] / 1000:.2f}, {words.small(likely)}."
+        )
+        ends = f"Its fill limit ends it at {words.small(draw['moved_g'])}." if likely > draw["moved_g"] + 20 else ""
+        return f"{begins} {limits} {ends}".strip()
 
     def _unfilled(self, one: dict[str, Any]) -> dict[str, Any]:
         best = ""
@@ -157,7 +198,7 @@ class PlanWords:
                 untouched.append(f"{one['code']} ({words.mass(one['net_g'])})")
                 continue
             rows.append([one["code"], "now", words.mass(one["net_g"]), words.pressure(one["pa"]), words.temperature(one["mk"])])
-            points: list[tuple[float, float]] = [(0.0, one["net_g"] / size)]
+            points: list[tuple[float, float]] = [(self._hours(0), one["net_g"] / size)]
             for filled in self.told["fills"]:
                 for draw in filled["draws"]:
                     if draw["source"] == one["code"]:
@@ -165,9 +206,9 @@ class PlanWords:
                             one["code"], f"{self._at(draw['until_s'])}, after {filled['bottle']}", words.mass(draw["left_g"]),
                             words.pressure(draw["left_pa"]), words.temperature(draw["left_mk"]),
                         ])  # fmt: skip
-                        points.append((draw["until_s"] / 3600.0, draw["left_g"] / size))
+                        points.append((self._hours(draw["until_s"]), draw["left_g"] / size))
             lines.append(Series(one["code"], sorted(points), kind="step"))
-        chart = Chart("Supply bottles running down", Axis("Hours from now", "h"), Axis("Nitrous", unit, low=0.0), lines)
+        chart = Chart("Supply bottles running down", Axis("Time of day", "h"), Axis("Nitrous", unit, low=0.0), lines)
         return {
             "caption": "Supply bottles running down", "rows": rows,
             "head": ["Supply bottle", "When", "Holds", "Gauge", "Temperature"],
@@ -179,14 +220,16 @@ class PlanWords:
         words = self.words
         return {
             "code": one["code"], "url": _of(one["code"]), "holds": words.mass(one["holds_g"]), "gauge": words.pressure(one["pa"]),
-            "could": [
-                f"{each['bottle']} at {words.temperature(each['mk'])} could draw {words.small(each['g'])}" for each in one["could"]
-            ],
+            "below": words.temperature(one["below_mk"]) if one["below_mk"] else "",
+            "could": [f"{each['bottle']} at {words.temperature(each['mk'])}: {words.small(each['g'])}" for each in one["could"]],
+            "filled": bool(one["could"]) and all(each["filled"] for each in one["could"]),
         }  # fmt: skip
 
     def _order(self) -> dict[str, str]:
         words, order = self.words, self.told["order"]
-        usable = f"{words.mass(order['usable_g'])} can still be drawn as liquid from the supply bottles on hand"
+        if not order["usable_g"]:
+            return {"head": "Order today", "how": "Nothing can be drawn as liquid from the supply bottles that can be counted on."}
+        usable = f"About {words.mass(order['usable_g'])} can still be drawn as liquid from the supply bottles on hand"
         pace = order["pace"]
         if pace is None:
             return {"head": "No order day can be given", "how": f"{usable}. Too little was filled in recent weeks to tell a pace."}

@@ -178,6 +178,72 @@ def test_checking_a_bottle_in_makes_the_plan_anew(works: Works, run_jobs: Any) -
     assert "T-0414" in {fill["bottle"] for fill in told(DayPlan.objects.get())["fills"]}
 
 
+def test_a_refill_that_waits_to_be_chilled_is_planned_where_it_is_open(works: Works, client_of: Any) -> None:
+    refill = works.open()
+    wants(works.bottle, NOW + timedelta(hours=3))
+    until = NOW + timedelta(hours=1)
+    refill_steps.wait(key=key(), person=works.person, refill=refill, version=refill.version, until=until, note="chill")
+    result = told(plan(works))
+    assert [(fill["bottle"], fill["goes_on"]) for fill in result["fills"]] == [("T-0412", True)]
+    assert result["being_filled"] == [] and gather(works.shop, INPUTS).day.stations_free_s[0] == 0
+    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
+    assert "Its refill is open and goes on." in html and "Every promise is kept." in html
+
+
+def test_a_refill_that_goes_on_now_is_named_beside_the_plan(works: Works, client_of: Any) -> None:
+    works.open()
+    assert [one["bottle"] for one in told(plan(works))["being_filled"]] == ["T-0412"]
+    assert "Being filled now" in client_of(works.person).get(reverse("bottles:plan")).content.decode()
+
+
+def test_bottles_that_stand_in_the_freezer_take_its_room(works: Works) -> None:
+    freezer = Place.objects.get(code="FREEZER")
+    inside = works.bottle_to_fill("T-0413")
+    factories.placed(inside, "moved", wanted="refill", place=freezer, happened_at=NOW - timedelta(hours=9))
+    other = works.bottle_to_fill("T-0414")
+    factories.placed(other, "moved", place=freezer, happened_at=NOW - timedelta(hours=9))
+    from bottles.models import Standing
+
+    Standing.objects.filter(bottle=inside).update(waits=True)
+    gathered = gather(works.shop, INPUTS)
+    assert gathered.rooms_taken == (1,) and gathered.day.slots == (2,)
+    cold = next(one for one in gathered.day.bottles if one.code == "T-0413")
+    assert cold.stands_in == 0 and cold.starts[0].temperature_k < 260
+
+
+def test_a_fill_tells_its_span_and_why_so_much(works: Works, client_of: Any) -> None:
+    Place.objects.filter(kind="freezer").update(active=False)
+    fill = told(plan(works))["fills"][0]
+    assert fill["low_g"] <= fill["final_g"] <= fill["high_g"]
+    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
+    assert "Why so much" in html and "slow to condense" in html and "condensation figure" in html
+
+
+def test_a_day_without_a_supply_bottle_says_so_and_to_order(works: Works, client_of: Any) -> None:
+    from bottles.models import Standing, Supply
+
+    Supply.objects.all().delete()
+    Standing.objects.filter(bottle__use="supply").update(is_in=False)
+    plan(works)
+    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
+    assert "There is no supply bottle that can be counted on." in html and "Order today" in html
+    assert "time constant" not in html and "condensation figure" not in html
+
+
+def test_a_promise_that_was_late_before_the_plan_is_told_apart(works: Works, client_of: Any) -> None:
+    wants(works.bottle, NOW - timedelta(minutes=10))
+    plan(works)
+    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
+    assert "Late already" in html and "The only promise will break; no plan can keep more." in html
+
+
+def test_a_result_told_in_another_form_is_not_shown(works: Works, client_of: Any) -> None:
+    plan(works)
+    DayPlanResult.objects.update(result={"fills": []})
+    answer = client_of(works.person).get(reverse("bottles:plan"))
+    assert answer.status_code == 200 and "Plan anew" in answer.content.decode()
+
+
 def test_without_a_plan_for_today_nothing_is_asked_for(works: Works) -> None:
     with clock.pretend(NOW - timedelta(days=1)):
         plan(works)

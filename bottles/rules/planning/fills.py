@@ -106,7 +106,7 @@ class Fills:
         found = self._direct.get(key)
         if found is None:
             try:
-                found = self._transfer(receiver, source, net_kg, temperature_k).mixed_receiver(moved_kg)[0]
+                found = self.transfer(receiver, source, net_kg, temperature_k).mixed_receiver(moved_kg)[0]
             except PhysicsError:
                 found = receiver[2]
             self._direct[key] = found
@@ -160,13 +160,16 @@ class Fills:
 
     def _likely(self, receiver: Receiver, source: int, net_kg: float, temperature_k: float) -> float:
         self.calls += 1
-        transfer = self._transfer(receiver, source, net_kg, temperature_k)
+        transfer = self.transfer(receiver, source, net_kg, temperature_k)
         quick = transfer.mixed_free_kg()
         if quick <= 0.0:
             return 0.0
+        if not transfer.source.liquid_pickup:
+            return quick  # as the forecast takes it where vapour is drawn on purpose
         return max(0.0, between(transfer.cautious_free_kg(), quick, self.day.bottles[receiver[0]].figure))
 
-    def _transfer(self, receiver: Receiver, source: int, net_kg: float, temperature_k: float) -> Transfer:
+    def transfer(self, receiver: Receiver, source: int, net_kg: float, temperature_k: float) -> Transfer:
+        """Return a draw as the physics takes it."""
         bottle, held, warm = receiver
         one = self.day.bottles[bottle]
         return Transfer(

@@ -35,6 +35,10 @@ class Waiting:
     starts: tuple[Start, ...]
     promised_s: int | None = None
     figure: float = 0.5  # condensation, between 0 and 1
+    deviation: float = 0.0  # of that figure
+    unsure_kg: float = 0.0  # how far what it holds may be off
+    stands_in: int | None = None  # number of the freezer or bath in which it stands already
+    hose: int | None = None  # where its refill is open already, and goes on
 
     def good_kg(self, per_mille: int) -> float:
         """What it must hold to be good enough [kg]."""
@@ -80,6 +84,14 @@ class Day:
             raise OutOfRange("good_enough", "Good enough is a share of the target, up to 100 %. Check the figure.")
         if any(start.place is not None and not 0 <= start.place < len(self.slots) for one in self.bottles for start in one.starts):
             raise OutOfRange("slots", "A bottle is chilled in a place that isn't there. Check the freezers and baths.")
+        if any(one.stands_in is not None and not 0 <= one.stands_in < len(self.slots) for one in self.bottles):
+            raise OutOfRange("slots", "A bottle stands in a freezer or bath that isn't there. Check the freezers and baths.")
+        if any(self.standing_in(place) > takes for place, takes in enumerate(self.slots)):
+            raise OutOfRange("slots", "More bottles stand in a freezer or bath than it takes. Check what it takes at once.")
+
+    def standing_in(self, place: int) -> int:
+        """How many of the bottles stand in a freezer or bath already."""
+        return sum(one.stands_in == place for one in self.bottles)
 
 
 @dataclass(frozen=True, slots=True)
@@ -104,6 +116,7 @@ class Drawn:
     left_kg: float
     left_k: float
     changed: bool  # another supply bottle had to be connected
+    source_k: float  # its temperature before
 
 
 @dataclass(frozen=True, slots=True)

@@ -59,7 +59,10 @@ class Rehearsal:
             tuple(one.net_kg for one in day.sources), tuple(one.temperature_k for one in day.sources),
             (day.opens_s,) * len(day.sources), tuple(one.station for one in day.sources),
             tuple(max(free, day.opens_s) for free in day.stations_free_s), tuple(connected), (day.opens_s,) * day.people,
-            tuple((day.opens_s,) * slots for slots in day.slots), 0, frozenset(), (0, 0, 0, 0, 0, 0),
+            tuple(
+                (day.opens_s,) * (takes - day.standing_in(place)) + (day.closes_s,) * day.standing_in(place)
+                for place, takes in enumerate(day.slots)
+            ), 0, frozenset(), (0, 0, 0, 0, 0, 0),
         )  # fmt: skip
 
     def choices(self, at: Position, bottle: int) -> Iterator[Choice]:
@@ -83,7 +86,7 @@ class Rehearsal:
         if start.place is not None:
             if not slots[start.place]:
                 return None
-            chill_from = min(slots[start.place])
+            chill_from = day.opens_s if start.place == bottle.stands_in else min(slots[start.place])
             ready = chill_from + start.seconds
         person, *others = sorted(at.person_free_s)
         ready, held, warm = max(ready, person), bottle.net_kg, start.temperature_k
@@ -92,7 +95,7 @@ class Rehearsal:
         for source in choice.sources:
             if bottle.target_kg - held < LEAST_DRAW_KG:
                 return None  # full before: the shorter choice is the one to look at
-            hose = draws[0].station if draws else None  # a refill stays at its station
+            hose = draws[0].station if draws else bottle.hose  # a refill stays at its station
             drawn = self._draw(now, (choice.bottle, held, warm), source, ready, hose)
             if drawn is None or drawn.until_s > day.closes_s:
                 return None
@@ -104,10 +107,7 @@ class Rehearsal:
             held += drawn.moved_kg
             ready = drawn.until_s
         filled = Filled(choice, tuple(draws), held, chill_from, draws[0].from_s if chill_from is not None else None)
-        if start.place is not None:
-            row = sorted(slots[start.place])
-            row[0] = draws[0].from_s
-            slots = (*slots[: start.place], tuple(sorted(row)), *slots[start.place + 1 :])
+        slots = _rooms(at.slot_free_s, bottle.stands_in, start.place, chill_from, draws[0].from_s)
         return replace(
             now, person_free_s=tuple(sorted((*others, ready))), slot_free_s=slots, done=at.done | {choice.bottle},
             sums=self._sums(at, filled),
@@ -174,7 +174,7 @@ class Rehearsal:
         left = net - moved - line
         return Drawn(
             source, station, begins, begins + day.fill_s, moved, line, left,
-            self.fills.source_after(source, net, warm, moved + line), changed,
+            self.fills.source_after(source, net, warm, moved + line), changed, warm,
         )  # fmt: skip
 
     def _warmed(self, at: Position, source: int, when: int) -> float:
@@ -207,6 +207,22 @@ def _after(at: Position, drawn: Drawn, day: Day) -> Position:
         connected=_put(at.connected, station, source),
         broached=at.broached | (1 << source if fresh else 0),
     )
+
+
+def _rooms(
+    slots: tuple[tuple[int, ...], ...], stands_in: int | None, place: int | None, chill_from: int | None, filled_from: int
+) -> tuple[tuple[int, ...], ...]:
+    """When each freezer's rooms are free after a bottle: it leaves where it stood, and where it was chilled.
+
+    A room held by a bottle that stands there is free when that one leaves: until then, at the day's end.
+    """
+    rows = [list(row) for row in slots]
+    if stands_in is not None:
+        moves = place is not None and place != stands_in and chill_from is not None
+        rows[stands_in][-1] = chill_from if moves and chill_from is not None else filled_from
+    if place is not None and place != stands_in:
+        rows[place][0] = filled_from
+    return tuple(tuple(sorted(row)) for row in rows)
 
 
 def _put(row: tuple[_T, ...], place: int, value: _T) -> tuple[_T, ...]:

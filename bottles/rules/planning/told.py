@@ -12,8 +12,11 @@ from bottles.rules.planning.fills import warming_time
 from bottles.rules.planning.heuristic import Watch, good_plan
 from bottles.rules.planning.problem import LEAST_DRAW_KG, MOST_DRAWS, Choice, Day, Filled, Plan
 from bottles.rules.planning.schedule import Position, Rehearsal
+from bottles.rules.planning.spans import Before, span_of
 from shop.physics.errors import PhysicsError
+from shop.physics.fluid import engine
 
+TOLD = 2  # the form in which a plan is told; one kept in another form isn't shown
 _AT_ONCE = 3_000  # partial plans, while somebody waits for the page
 _EMPTY = 1.02  # of what vapour alone holds
 _A_WEEK = 7 * 86_400
@@ -39,7 +42,7 @@ def tell(day: Day, plan: Plan) -> dict[str, Any]:
         "empties": [_empty(rehearsal, end, number) for number in range(len(day.sources)) if _is_empty(rehearsal, end, number)],
         "count": len(day.bottles), "good": plan.good, "most_good": plan.bound.good, "broken": plan.score[0],
         "least_broken": plan.bound.broken, "exact": plan.exact, "looked_at": plan.looked_at, "changes": plan.score[5],
-        "good_per_mille": day.good_per_mille,
+        "good_per_mille": day.good_per_mille, "told": TOLD,
     }  # fmt: skip
 
 
@@ -49,22 +52,34 @@ def _fill(rehearsal: Rehearsal, filled: Filled) -> dict[str, Any]:
     start = bottle.starts[filled.choice.start]
     enough = filled.final_kg >= rehearsal.good_kg[filled.choice.bottle] - 1e-6
     late = max(0, filled.until_s - bottle.promised_s) if bottle.promised_s is not None else 0
+    span, good = span_of(rehearsal, filled), rehearsal.good_kg[filled.choice.bottle]
     return {
         "bottle": bottle.code, "promised_s": bottle.promised_s, "late_s": late, "good": enough,
-        "short_g": 0 if enough else _grams(rehearsal.good_kg[filled.choice.bottle] - filled.final_kg),
+        "short_g": 0 if enough else _grams(good - filled.final_kg),
+        "low_g": _grams(span.low_kg), "high_g": _grams(span.high_kg), "low_short_g": _grams(max(0.0, good - span.low_kg)),
         "start_g": _grams(bottle.net_kg), "final_g": _grams(filled.final_kg), "target_g": _grams(bottle.target_kg),
-        "start_mk": round(start.temperature_k * 1000), "place": start.place,
+        "start_mk": round(start.temperature_k * 1000), "place": start.place, "stands_in": bottle.stands_in,
+        "figure_milli": round(bottle.figure * 1000), "goes_on": bottle.hose is not None,
         "chill_from_s": filled.chill_from_s, "chill_until_s": filled.chill_until_s,
         "draws": [
             {
                 "source": day.sources[draw.source].code, "station": draw.station, "from_s": draw.from_s, "until_s": draw.until_s,
                 "moved_g": _grams(draw.moved_kg), "line_g": _grams(draw.line_kg), "left_g": _grams(draw.left_kg),
                 "left_mk": round(draw.left_k * 1000), "left_pa": _pressure(day, draw.source, draw.left_kg, draw.left_k),
-                "changed": draw.changed,
+                "changed": draw.changed, "last": draw.left_kg <= _EMPTY * rehearsal.heel_kg[draw.source],
             }
-            for draw in filled.draws
+            | _before(before)
+            for draw, before in zip(filled.draws, span.draws, strict=True)
         ],
     }  # fmt: skip
+
+
+def _before(before: Before) -> dict[str, int | None]:
+    limits = {"slow_g": before.slow_kg, "quick_g": before.quick_kg}
+    return {
+        "held_g": _grams(before.held_kg), "bottle_mk": round(before.receiver_k * 1000),
+        "there_g": _grams(before.source_kg), "there_mk": round(before.source_k * 1000),
+    } | {name: None if mass is None else _grams(mass) for name, mass in limits.items()}  # fmt: skip
 
 
 def _unfilled(rehearsal: Rehearsal, end: Position, number: int) -> dict[str, Any]:
@@ -116,19 +131,25 @@ def _is_empty(rehearsal: Rehearsal, end: Position, number: int) -> bool:
 
 
 def _empty(rehearsal: Rehearsal, end: Position, number: int) -> dict[str, Any]:
-    """What a supply bottle out of liquid holds, and what each bottle, as cold as it gets, could draw from it."""
+    """What a supply bottle out of liquid holds, how cold a bottle must be to draw from it, and what each waiting one could.
+
+    As each waits now, as cold as it gets; those that the plan leaves out come first.
+    """
     day, warm = rehearsal.day, rehearsal.day.room_k
-    could: list[tuple[int, str, int, int | None]] = []
+    could: list[tuple[bool, int, str, int]] = []
+    pressure = _pressure(day, number, end.net_kg[number], warm)
     for index, bottle in enumerate(day.bottles):
         start = min(bottle.starts, key=lambda each: each.temperature_k)
         receiver = (index, bottle.net_kg, start.temperature_k)
         moved = min(rehearsal.fills.free_kg(receiver, number, end.net_kg[number], warm), bottle.target_kg - bottle.net_kg)
         if moved >= LEAST_DRAW_KG:
-            could.append((-_grams(moved), bottle.code, round(start.temperature_k * 1000), start.place))
+            could.append((index in end.done, -_grams(moved), bottle.code, round(start.temperature_k * 1000)))
     return {
         "code": day.sources[number].code, "holds_g": _grams(end.net_kg[number]),
-        "pa": _pressure(day, number, end.net_kg[number], warm),
-        "could": [{"bottle": code, "g": -grams, "mk": mk, "place": place} for grams, code, mk, place in sorted(could)[:MOST_DRAWS]],
+        "pa": pressure, "below_mk": _boils_at(pressure),
+        "could": [
+            {"bottle": code, "g": -grams, "mk": mk, "filled": filled} for filled, grams, code, mk in sorted(could)[:MOST_DRAWS]
+        ],
     }  # fmt: skip
 
 
@@ -137,6 +158,13 @@ def _pressure(day: Day, source: int, net_kg: float, temperature_k: float) -> int
         return round(pressure_and_energy(day.sources[source].volume_m3, max(net_kg, 0.0), temperature_k)[0])
     except PhysicsError:
         return 0
+
+
+def _boils_at(pressure_pa: int) -> int | None:
+    try:
+        return round(engine().boiling_temperature(pressure_pa) * 1000)
+    except PhysicsError:
+        return None
 
 
 def _grams(kilograms: float) -> int:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from itertools import pairwise, permutations, product
 from typing import Any
 
@@ -12,9 +13,11 @@ from hypothesis import strategies as st
 from bottles.rules.planning.bound import bound_of
 from bottles.rules.planning.exact import best_plan
 from bottles.rules.planning.heuristic import first_come_first_served, good_plan
-from bottles.rules.planning.problem import Day, Plan, Score, Source, Start, Waiting
+from bottles.rules.planning.problem import Choice, Day, Plan, Score, Source, Start, Waiting
 from bottles.rules.planning.schedule import Rehearsal
+from bottles.rules.planning.spans import span_of
 from bottles.rules.planning.told import tell
+from shop.physics.errors import OutOfRange
 
 SIZES = ((3.4e-3, 2_700.0), (6.8e-3, 5_300.0), (10e-3, 7_300.0))  # m3, J/K: aluminium
 STEEL = 15_000.0
@@ -215,3 +218,89 @@ def test_two_bottles_are_filled_side_by_side_where_there_are_hoses_and_people(ma
     starts = sorted(filled.draws[0].from_s for filled in plan.fills)
     if len(starts) == 2:
         assert (starts[0] == starts[1]) == (many == people == 2)
+
+
+def in_the_freezer(code: str) -> Waiting:
+    return replace(bottle(code), starts=(Start(258.15),), stands_in=0)
+
+
+def test_a_bottle_that_stands_in_the_freezer_holds_its_room_until_it_is_filled() -> None:
+    warm = replace(bottle("T-9"), starts=(Start(258.15, 0, 1_800),))
+    with_room = day([in_the_freezer("T-0"), in_the_freezer("T-1"), warm], [supply("S-1", 19.0)], slots=(3,))
+    without = replace(with_room, slots=(2,))
+
+    def chilled_from(one: Day) -> int | None:
+        rehearsal = Rehearsal(one)
+        _, fills = rehearsal.follow([Choice(0, 0, (0,)), Choice(1, 0, (0,)), Choice(2, 0, (0,))])
+        assert len(fills) == 3
+        return fills[2].chill_from_s
+
+    assert chilled_from(with_room) == 0
+    # The first that leaves makes room: when its hose opens.
+    assert chilled_from(without) == Rehearsal(without).follow([Choice(0, 0, (0,))])[1][0].draws[0].from_s
+    rehearsal = Rehearsal(without)
+    assert rehearsal.place(rehearsal.beginning(), Choice(2, 0, (0,))) is None  # no room at all before one leaves
+
+
+def test_a_bottle_that_stands_in_a_freezer_is_chilled_on_without_another_room() -> None:
+    one = replace(bottle("T-0"), starts=(Start(270.0), Start(258.15, 0, 1_800)), stands_in=0)
+    _, fills = Rehearsal(day([one], [supply("S-1", 19.0)], slots=(1,))).follow([Choice(0, 1, (0,))])
+    assert (fills[0].chill_from_s, fills[0].chill_until_s) == (0, 1_800)
+
+
+def test_more_bottles_in_a_freezer_than_it_takes_are_refused() -> None:
+    with pytest.raises(OutOfRange, match="than it takes"):
+        day([in_the_freezer("T-0"), in_the_freezer("T-1")], [supply("S-1", 19.0)], slots=(1,))
+
+
+def test_an_open_refill_goes_on_at_its_own_hose() -> None:
+    one = replace(bottle("T-0"), hose=1)
+    of = day([one], [supply("S-1", 19.0, 0), supply("S-2", 19.0, 1), supply("S-3", 19.0, None)], stations_free_s=(0, 0))
+    rehearsal = Rehearsal(of)
+    at = rehearsal.beginning()
+    assert rehearsal.place(at, Choice(0, 1, (0,))) is None
+    for source in (1, 2):
+        placed = rehearsal.place(at, Choice(0, 1, (source,)))
+        assert placed is not None and placed[1].draws[0].station == 1
+
+
+@settings(max_examples=15, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@given(days())
+def test_each_fill_is_told_with_a_span_around_what_is_likely(of: Day) -> None:
+    unsure = replace(of, bottles=tuple(replace(one, deviation=0.25, unsure_kg=0.05) for one in of.bottles))
+    for fill in tell(unsure, best_plan(unsure, nodes=600))["fills"]:
+        assert fill["start_g"] <= fill["low_g"] <= fill["final_g"] <= fill["high_g"] <= fill["target_g"]
+        for draw in fill["draws"]:
+            assert draw["quick_g"] >= draw["slow_g"] - 1
+            assert draw["there_g"] >= draw["left_g"]
+
+
+def test_a_surer_figure_makes_a_narrower_span() -> None:
+    weak = day([bottle("T-0", chilled=False)], [supply("S-1", 12.0)])
+
+    def width(deviation: float) -> int:
+        one = replace(weak, bottles=(replace(weak.bottles[0], deviation=deviation),))
+        fill = tell(one, best_plan(one))["fills"][0]
+        return fill["high_g"] - fill["low_g"]
+
+    assert 0 < width(0.0) < width(0.1) < width(0.25)
+
+
+def test_what_an_empty_supply_bottle_could_still_give_names_how_cold_a_bottle_must_be() -> None:
+    of = day([bottle("T-0")], [supply("S-1", 4.0), supply("S-2", 19.0)])
+    told = tell(of, best_plan(of))
+    empty = next(one for one in told["empties"] if one["code"] == "S-1")
+    assert 258_150 < empty["below_mk"] < 293_150
+    assert all(each["mk"] < empty["below_mk"] for each in empty["could"])
+
+
+def test_a_sure_second_draw_makes_up_for_what_the_first_may_lack() -> None:
+    one = replace(bottle("T-0"), deviation=0.25)
+    of = day([one], [supply("S-1", 8.0), supply("S-2", 19.0)])
+    rehearsal = Rehearsal(of)
+
+    def missing(*sources: int) -> float:
+        filled = rehearsal.follow([Choice(0, 1, sources)])[1][0]
+        return filled.final_kg - span_of(rehearsal, filled).low_kg
+
+    assert missing(0) > 0.2 > missing(0, 1)
