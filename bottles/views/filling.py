@@ -178,6 +178,10 @@ def forecast_live(request: HttpRequest, code: str) -> HttpResponse:
     part = forecast_part(worked(form, bottle, judged), form, bottle, judged, words)
     station = judged.supply.station_id if judged.supply else None
     if drawn_at(request) not in (None, station):
+        # The check of one scale says nothing of another's: it isn't carried over.
+        form.data = request.POST.copy()
+        for name in ("check_known", "check_read"):
+            form.data.pop(name, None)
         part |= {"groups": form.groups(), "drawn_at": station}
     return render(request, "bottles/_forecast_live.html", {"bottle": bottle} | part)
 

@@ -89,7 +89,10 @@ def _below(asked: Asked, answer: Answer, words: RefillWords) -> str:
     bottle = asked.supply.bottle
     grams = below_tube_g(answer.pair)
     if grams:
-        return f"Of that heel {words.small(grams)} is liquid below the end of the dip (siphon) tube: it comes as vapour alone."
+        return (
+            f"Of what it leaves behind (heel) {words.small(grams)} is liquid below the end of the dip (siphon) tube: "
+            "it comes as vapour alone."
+        )
     if bottle.dip_tube == "dip" and bottle.below_tube_ml is None:
         return f"How much liquid the dip (siphon) tube of {bottle.code} doesn't reach isn't written down: none is taken off."
     return ""

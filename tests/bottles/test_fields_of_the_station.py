@@ -52,6 +52,7 @@ def test_the_live_answer_brings_the_fields_of_another_station(client: Client, wo
     assert '<div id="readings" hx-swap-oob="innerHTML">' in brought
     assert "As scale C writes it" in brought and "The day&#x27;s first fill on scale C" in brought
     assert f'name="drawn_at" value="{other.station.pk}"' in brought and f'value="{TARE_G + 300} g"' in brought
+    assert 'value="10 kg"' not in brought  # the check of the one scale isn't the other's
     assert "hx-swap-oob" not in live(client, typed(works, other, other.station))
 
 

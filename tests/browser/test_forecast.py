@@ -7,8 +7,9 @@ from collections.abc import Callable
 from typing import Any
 
 import pytest
-from playwright.sync_api import Page, expect
+from playwright.sync_api import Page, Route, expect
 
+from tests import factories
 from tests.bottles.of_refill import TARE_G
 from tests.browser import steps
 from tests.browser.desk import Desk
@@ -162,3 +163,26 @@ def test_after_the_refill_its_place_on_the_forecast_is_drawn(new_page: Callable[
     page.goto(f"/refills/{refill.pk}/receipt")
     expect(page.locator(".place-row svg.band")).to_be_visible()
     assert steps.overflow(page) == 0 and steps.violations(page) == []
+
+
+def test_fields_follow_another_station_and_keep_what_is_typed_meanwhile(new_page: Callable[..., Page], desk: Desk) -> None:
+    desk.bottle_to_fill("T-0421")
+    other = desk.connected("S-08")
+    other.station = desk.make_station(code="ST2", name="Station 2", scale=factories.ScaleFactory(name="scale C"))
+    other.save()
+    page = new_page(width=1440, height=1000)
+    read(page)
+    held: list[Route] = []
+    page.route("**/fill/forecast", lambda route: route.continue_() if held else held.append(route))
+    with page.expect_request("**/fill/forecast"):
+        steps.field(page, "From").select_option(str(other.pk))
+    steps.field(page, "Gauge of the supply bottle").fill("48 bar")
+    steps.field(page, "It's wet or frosted").check()
+    held[0].continue_()
+    expect(page.get_by_text("As scale C writes it").first).to_be_visible()
+    expect(steps.field(page, "Known weight put on the scale")).to_have_value("")
+    expect(steps.field(page, "From")).to_have_value(str(other.pk))
+    expect(steps.field(page, "Gauge of the supply bottle")).to_have_value("48 bar")
+    expect(steps.field(page, "It's wet or frosted")).to_be_checked()
+    expect(page.locator("#forecast")).to_contain_text("on scale C")
+    fine(page)

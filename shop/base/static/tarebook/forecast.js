@@ -26,6 +26,23 @@
     for (const id of open) document.getElementById(id)?.setAttribute("open", "");
   });
 
+  // Fields that follow another station keep what was typed while the answer came; its scale's check begins anew.
+  const FIELDS = "input:not([type=hidden]):not([name^=check_]), select";
+  const ticks = (field) => field.type === "checkbox" || field.type === "radio";
+  let typed = new Map();
+  document.addEventListener("htmx:oobBeforeSwap", (event) => {
+    const fields = [...event.target.querySelectorAll(FIELDS)];
+    typed = new Map(fields.map((field) => [field.id, ticks(field) ? field.checked : field.value]));
+  });
+  document.addEventListener("htmx:oobAfterSwap", () => {
+    for (const [id, value] of typed) {
+      const field = document.getElementById(id);
+      if (field && ticks(field)) field.checked = value;
+      else if (field) field.value = value;
+    }
+    typed = new Map();
+  });
+
   // A fold that is dear to fill is asked for when it's opened, and again once the readings rest.
   const RESTS = 700;
   let resting = 0;
