@@ -66,7 +66,7 @@ class SpecMark:
 
     def each(self) -> Iterator[SpecMark]:
         """This mark and the others on the same bottle."""
-        yield replace(self, also=())
+        yield replace(self, also=()) if self.also else self
         yield from self.also
 
 
