@@ -11,7 +11,7 @@ from dataclasses import replace
 from bottles.rules.planning.bound import NEVER, best_kg, bound_of, earliest, slack_kg, thinnest
 from bottles.rules.planning.heuristic import Watch, good_plan
 from bottles.rules.planning.problem import MOST_DRAWS, Choice, Day, Plan, Score
-from bottles.rules.planning.schedule import Position, Rehearsal, half_kilos, hectograms
+from bottles.rules.planning.schedule import Position, Rehearsal, half_kilos, hectograms, lateness
 
 SMALL_BOTTLES, SMALL_SOURCES = 7, 3
 NODES = 30_000  # partial plans looked at before it's given up
@@ -117,7 +117,7 @@ class _Tree:
             if one.promised_s is not None:
                 broken += not self._able[number] or until > min(one.promised_s, day.closes_s)
                 ends_s = min(until, day.closes_s) if self._able[number] else day.closes_s
-                late += max(0, ends_s - one.promised_s) // 60
+                late += lateness(ends_s - one.promised_s)
         # Each hose fills one bottle after another, whichever they are.
         turns = sorted(max(hose, free) + day.fill_s * (turn + 1) for hose in hoses for turn in range(len(ends)))
         minutes += sum(max(pair) // 60 for pair in zip(sorted(ends), turns, strict=False))

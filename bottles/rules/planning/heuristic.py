@@ -92,7 +92,12 @@ def _orders(rehearsal: Rehearsal) -> Iterator[list[int]]:
     def need(one: int) -> float:
         return rehearsal.good_kg[one] - day.bottles[one].net_kg
 
+    def lost(one: int) -> bool:
+        return ready[one] + day.fill_s > promised(one)
+
     yield sorted(every, key=lambda one: (promised(one), need(one), one))
+    # A promise that can't be kept any more gives way to those that can.
+    yield sorted(every, key=lambda one: (lost(one), promised(one), need(one), one))
     yield sorted(every, key=lambda one: (day.bottles[one].promised_s is None, need(one), one))
     yield sorted(every, key=lambda one: (need(one), one))
     yield sorted(every, key=lambda one: (promised(one) - ready[one], one))

@@ -135,7 +135,7 @@ class Filled:
         return self.draws[-1].until_s
 
 
-# Compared as tuples, the least is best: promises broken, minutes late, minus how many are good
+# Compared as tuples, the least is best: promises broken, minutes late squared, minus how many are good
 # enough, hectograms that the others lack, half kilograms left behind as vapour, changes of supply,
 # supply bottles broached, minutes at which the bottles are done, added up.
 Score = tuple[int, int, int, int, int, int, int, int]

@@ -35,7 +35,7 @@ class Position:
     slot_free_s: tuple[tuple[int, ...], ...]
     broached: int
     done: frozenset[int]
-    sums: tuple[int, int, int, int, int, int]  # broken, late, good, short, changes, minutes
+    sums: tuple[int, int, int, int, int, int]  # broken, lateness, good, short, changes, minutes
 
 
 class Rehearsal:
@@ -121,7 +121,7 @@ class Rehearsal:
                 short += hectograms(self.good_kg[number] - one.net_kg)
                 if one.promised_s is not None:
                     broken += 1
-                    late += max(0, self.day.closes_s - one.promised_s) // 60
+                    late += lateness(self.day.closes_s - one.promised_s)
         left = sum(min(net, heel) for net, heel in zip(at.net_kg, self.heel_kg, strict=True))
         return (broken, late, -good, short, half_kilos(left), changes, at.broached.bit_count(), minutes)
 
@@ -187,7 +187,7 @@ class Rehearsal:
         if promised is not None:
             broken += until > promised or not enough
             # What isn't good enough keeps no promise: it's as late as what isn't filled.
-            late += max(0, -((promised - until) // 60) if enough else (self.day.closes_s - promised) // 60)
+            late += lateness((until if enough else self.day.closes_s) - promised)
         short += 0 if enough else hectograms(self.good_kg[number] - filled.final_kg)
         return (
             broken, late, good + enough, short, changes + sum(draw.changed for draw in filled.draws), minutes + until // 60,
@@ -227,6 +227,12 @@ def _rooms(
 
 def _put(row: tuple[_T, ...], place: int, value: _T) -> tuple[_T, ...]:
     return (*row[:place], value, *row[place + 1 :])
+
+
+def lateness(seconds: int) -> int:
+    """What being late is worth: minutes begun, squared, so that nobody waits for hours to spare others a little."""
+    minutes = max(0, -(-seconds // 60))
+    return minutes * minutes
 
 
 def hectograms(kilograms: float) -> int:

@@ -17,6 +17,8 @@ from shop.physics.errors import PhysicsError
 from shop.physics.fluid import engine
 
 TOLD = 2  # the form in which a plan is told; one kept in another form isn't shown
+_MIDDLING = 12  # bottles: up to here it's worth looking longer, where nobody waits for the page
+_LONGER_LOOKED_AT, _LONGER_TRANSFERS = 60_000, 12_000
 _AT_ONCE = 3_000  # partial plans, while somebody waits for the page
 _EMPTY = 1.02  # of what vapour alone holds
 _A_WEEK = 7 * 86_400
@@ -25,6 +27,8 @@ _A_WEEK = 7 * 86_400
 def work_out(day: Day, watch: Watch | None = None, *, patient: bool = False) -> dict[str, Any]:
     """Plan a day and tell it; small days by looking at everything, where there is time for that."""
     if not is_small(day):
+        if patient and len(day.bottles) <= _MIDDLING:
+            return tell(day, good_plan(day, watch, most=_LONGER_LOOKED_AT, transfers=_LONGER_TRANSFERS))
         return tell(day, good_plan(day, watch))
     return tell(day, best_plan(day, watch, nodes=NODES if patient else _AT_ONCE))
 

@@ -304,3 +304,22 @@ def test_a_sure_second_draw_makes_up_for_what_the_first_may_lack() -> None:
         return filled.final_kg - span_of(rehearsal, filled).low_kg
 
     assert missing(0) > 0.2 > missing(0, 1)
+
+
+def cold(code: str, promised: int) -> Waiting:
+    return replace(in_the_freezer(code), promised_s=promised)
+
+
+def test_a_promise_that_is_lost_gives_way_to_those_that_can_be_kept() -> None:
+    lost = [cold(f"L-{number}", 60) for number in range(4)]
+    kept = [cold(f"K-{number}", 1_000 * (number + 1)) for number in range(4)]
+    of = day([*lost, *kept], [supply("S-1", 19.0), supply("S-2", 19.0)], slots=(8,), change_s=0)
+    plan = good_plan(of)
+    assert plan.score[0] == plan.bound.broken == 4
+
+
+def test_of_two_late_bottles_none_waits_for_hours_to_spare_the_other_a_little() -> None:
+    of = day([cold("B", -600), cold("A", -4 * HOUR)], [supply("S-1", 19.0)])
+    plan = best_plan(of)
+    assert plan.exact
+    assert [of.bottles[filled.choice.bottle].code for filled in plan.fills] == ["A", "B"]
