@@ -100,7 +100,7 @@ def forecast(
         a reading is known [kg]
     line_volume_m3 : float, inside volume of hose and fittings [m3]
     condensation : Condensation, the figure with its deviation [-]
-    tolerances : Tolerances or None, of thermometer and scale [-]
+    tolerances : Tolerances or None, of thermometer and scales [-]
 
     Returns
     -------

@@ -19,10 +19,19 @@ _NOTHING = 1e-4  # kg: a band narrowed by less isn't narrowed
 
 @dataclass(frozen=True, slots=True)
 class Tolerances:
-    """How well a shop reads; each is taken as the edge of 19 readings in 20."""
+    """How well a shop reads; each is taken as the edge of 19 readings in 20.
+
+    The two bottles may stand on scales of their own; without its own the bottle to fill's is the supply's.
+    """
 
     thermometer_k: float = THERMOMETER_TOLERANCE
     scale_kg: float = SCALE_TOLERANCE
+    receiver_scale_kg: float | None = None
+
+    @property
+    def receiver_kg(self) -> float:
+        """The tolerance of the weight of the bottle to fill [kg]."""
+        return self.scale_kg if self.receiver_scale_kg is None else self.receiver_scale_kg
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,7 +56,7 @@ def unsure_start(start: Start, receiver: Vessel, tolerances: Tolerances) -> tupl
     ----------
     start : Start, how it starts [-]
     receiver : Vessel, the bottle at its start [-]
-    tolerances : Tolerances, of thermometer and scale [-]
+    tolerances : Tolerances, of thermometer and scales [-]
 
     Returns
     -------
@@ -73,7 +82,7 @@ def unsure_start(start: Start, receiver: Vessel, tolerances: Tolerances) -> tupl
         return "receiver start", receiver.net_kg
     if start.kind == OWN_VAPOUR and start.net_kg is None:
         return "receiver start", 0.25 * receiver.net_kg
-    return "receiver weight", tolerances.scale_kg
+    return "receiver weight", tolerances.receiver_kg
 
 
 def band_of(
@@ -90,7 +99,7 @@ def band_of(
     transfer : Transfer, both bottles and the line [-]
     room : float, what the receiver may still take [kg]
     condensation : Condensation, the figure with its deviation [-]
-    tolerances : Tolerances, of thermometer and scale [-]
+    tolerances : Tolerances, of thermometer and scales [-]
     unsure : tuple of str and float, what is unsure in the receiver's start [-], by how much [kg]
 
     Returns
@@ -142,7 +151,7 @@ def band_of(
             # A refill with vapour alone tells nothing of how vapour condenses beside liquid.
             measurement = MORE_REFILLS if transfer.path.gives_liquid else None
         else:
-            known = tolerances.scale_kg * part / unsure[1] if name == "receiver start" else 0.0
+            known = tolerances.receiver_kg * part / unsure[1] if name == "receiver start" else 0.0
             left = _edges(likely, below, above, readings - part * part + min(known, part) ** 2, room)
             measurement = "receiver weight" if name == "receiver start" else name
         if left[1] - left[0] < narrowest:

@@ -86,6 +86,7 @@ class Held:
     grams: int
     error_g: int
     origin: str  # weighed now, weighed before, by the books
+    tare_error_g: int = 0  # of that ±, what no finer scale betters
 
 
 @dataclass(frozen=True, slots=True)
@@ -135,6 +136,7 @@ class Answer:
     danger: bool
     blocked: bool
     notes: tuple[tuple[str, str], ...]
+    own: Held | None = None  # the bottle to fill, where it was weighed
     fit: Fit | None = None  # whence the condensation figure; None: the prior
     pumped: PumpedRefill | None = None  # what a pump moves, where one does
 
@@ -185,11 +187,15 @@ def work_out(asked: Asked, readings: Readings) -> Answer:
     target_g = min(asked.limit_g, readings.target.stored if readings.target else asked.limit_g)
     if target_g <= 0:
         raise Refusal("A target must be above nothing. Leave it empty for the fill limit.", code="target", field="target")
-    start = _start(asked, readings, own, notes)
+    weighed = _own_held(asked, readings, own)
+    start = _start(asked, readings, weighed, notes)
     spread = _spread(contents, held, _contents(asked, readings, None, []) if held and held.origin == BOOKS else None)
     figure = latest_figures(asked.shop).of(bottle)
+    # Where it wasn't weighed for its start, this is what the station's scale could tell of it.
+    own_g = weighed.error_g if weighed and start.net_kg is not None else own.error_on(station.scale)
+    tolerances = _tolerances(station, readings, held.error_g if held else 0, own_g)
     pairs = [
-        replace(pair, condensation=figure.condensation)
+        replace(pair, condensation=figure.condensation, tolerances=tolerances)
         for pair in _each_wall(asked, readings, (source, own), start, held, spread, target_g, notes)
     ]
     answers = [pair.worked_out() for pair in pairs]
@@ -207,7 +213,7 @@ def work_out(asked: Asked, readings: Readings) -> Answer:
         high_g=round(max(one.high_kg for one in answers) * 1000 + 0.5),
         line_g=station.line_loss_g if station.line_loss_g is not None else round(main.line_loss_kg * 1000),
         source_left_g=max(0, round(min(left) * 1000)) if left else None,
-        danger=danger, blocked=danger and not resolved, notes=tuple(notes), fit=figure.fit,
+        danger=danger, blocked=danger and not resolved, notes=tuple(notes), own=weighed, fit=figure.fit,
     )  # fmt: skip
 
 
@@ -296,22 +302,30 @@ def _spread(
     return (by_reading.least_kg, by_reading.most_kg) if by_reading else None
 
 
-def _start(asked: Asked, readings: Readings, known: Known, notes: list[tuple[str, str]]) -> Start:
-    """How the bottle to fill starts, and what the scale has to say about that."""
-    net = known.grams if known.still_as_weighed else None
+def _own_held(asked: Asked, readings: Readings, known: Known) -> Held | None:
+    """What the bottle to fill holds by a scale: now, else since nothing moved; None where none says."""
+    tare_g = known.tare.error_g if known.tare else 0
     if readings.bottle_weight is not None and known.tare is not None:
         net = readings.bottle_weight.stored - readings.hose_pull_g - known.tare.total_g
-        if net < -known.error_on(asked.supply.station.scale):
+        error = known.error_on(asked.supply.station.scale)
+        if net < -error:
             raise Refusal(
                 "The bottle to fill weighs less than its tare. Read the scale again, and check that what its tare list names "
                 "is on it.",
                 code="tare above gross", field="bottle_weight",
             )  # fmt: skip
-        net = max(0, net)
-    ambient = air_pressure(asked.shop)
+        return Held(max(0, net), error, "weighed now", tare_g)
+    if known.grams is None or not known.still_as_weighed:
+        return None
+    return Held(known.grams, known.error_g, "weighed before", tare_g)
+
+
+def _start(asked: Asked, readings: Readings, own: Held | None, notes: list[tuple[str, str]]) -> Start:
+    """How the bottle to fill starts, and what the scale has to say about that."""
+    net, ambient = own.grams if own else None, air_pressure(asked.shop)
     if readings.start != WEIGHED:
         start = Start(readings.start, net / 1000 if net is not None and readings.start == OWN_VAPOUR else None, ambient)
-        if net is not None and readings.start == VENTED and net > known.error_g + _vented_g(asked, readings, ambient):
+        if own is not None and readings.start == VENTED and own.grams > own.error_g + _vented_g(asked, readings, ambient):
             notes.append(("not_vented", "By its weight the bottle isn't vented: say that it's weighed, or look again."))
         return start
     if net is None:
@@ -345,8 +359,6 @@ def _each_wall(
         notes.append(("tube_unknown", f"Whether {source.code} has a dip (siphon) tube isn't known: it's taken to give liquid."))
     if source.capacity_ml is None:
         raise NotReady(f"{source.code} has no water capacity written down. Complete its record first.", code="no source capacity")
-    degrees = max(tolerance_k(station, readings.taken), tolerance_k(station, readings.bottle_taken))
-    scale_kg = max((held.error_g if held else 0), 1) / 1000
     found = []
     for source_wall, own_wall in product(source_walls.heat_j_k, own_walls.heat_j_k):
         supply = Vessel(
@@ -359,10 +371,16 @@ def _each_wall(
                 source=supply, receiver_volume_m3=(bottle.capacity_ml or 0) / 1e6, receiver_wall_j_k=own_wall,
                 receiver_temperature_k=readings.bottle_temperature.stored / 1000, limit_kg=target_g / 1000, start=start,
                 source_range_kg=spread, line_volume_m3=line_volume_m3(station), condensation=PRIOR,
-                tolerances=replace(Tolerances(), thermometer_k=degrees, scale_kg=scale_kg),
+                tolerances=Tolerances(),
             )
         )  # fmt: skip
     return found
+
+
+def _tolerances(station: Station, readings: Readings, supply_g: int, own_g: int) -> Tolerances:
+    """How well temperatures were taken, and the ± of what is in either bottle."""
+    degrees = max(tolerance_k(station, readings.taken), tolerance_k(station, readings.bottle_taken))
+    return Tolerances(degrees, max(supply_g, 1) / 1000, max(own_g, 1) / 1000)
 
 
 def _wall_notes(bottle: Bottle, walls: Walls) -> list[tuple[str, str]]:

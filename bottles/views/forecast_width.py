@@ -10,13 +10,13 @@ from bottles.services.forecasting import TAKEN, Answer
 from bottles.views.refill_words import RefillWords
 
 HEAD = ["From, and how well it's known", "By itself"]
-SUPPLY_WEIGHT, START = "source weight", "receiver start"
+SUPPLY_WEIGHT, OWN_WEIGHT, START = "source weight", "receiver weight", "receiver start"
 PARTS = {
     CONDENSATION: "how much vapour condenses",
     "source temperature": "the supply bottle's temperature",
     SUPPLY_WEIGHT: "the supply bottle's weight",
     "receiver temperature": "the temperature of the bottle to fill",
-    "receiver weight": "the weight of the bottle to fill",
+    OWN_WEIGHT: "the weight of the bottle to fill",
     START: "how the bottle to fill starts",
 }
 BEGUN = {
@@ -50,7 +50,12 @@ def narrowing(answer: Answer, words: RefillWords) -> str:
         if measured:
             said += f" Of what can be measured now: {_lower(_measure(measured[0], answer))}, by about {words.small(measured[1])}."
         return said
-    part = START if best == "receiver weight" and START in dict(answer.transferred.width) else best
+    part = START if best == OWN_WEIGHT and START in dict(answer.transferred.width) else best
+    if part == OWN_WEIGHT and part not in dict(worth):
+        # Its tare is what is unsure, not the scale: something else narrows, or nothing.
+        part = next((name for name, _ in worth if name != CONDENSATION), "")
+    if not part:
+        return ""
     by = dict(worth).get(part)
     return f"{_measure(part, answer)}: it would narrow the span{f' by about {words.small(by)}' if by else ' most'}."
 
@@ -63,15 +68,22 @@ def degrees(kelvin: float, words: RefillWords) -> str:
 
 
 def _worth(answer: Answer) -> list[tuple[str, int]]:
-    """By how much the span would shrink if one part were known exactly, the most first; parts join as a root of squares."""
+    """By how much the span would shrink if one part were read exactly, the most first; parts join as a root of squares."""
     parts = answer.transferred.width
     whole = sum(kilograms**2 for _, kilograms in parts)
     span = answer.high_g - answer.low_g
     share = 2000 * sqrt(whole)
-    found = [
-        (name, round(span * (1.0 - sqrt(max(whole - kilograms**2, 0.0) / whole))) if share else 0) for name, kilograms in parts
-    ]
+    found = []
+    for name, kilograms in parts:
+        goes = (1.0 - _stays(name, answer) ** 2) * kilograms**2
+        found.append((name, round(span * (1.0 - sqrt(max(whole - goes, 0.0) / whole))) if share else 0))
     return sorted(found, key=lambda part: part[1], reverse=True)
+
+
+def _stays(name: str, answer: Answer) -> float:
+    """What share of a part is left when it's read exactly: a tare's own ± stays on whatever scale."""
+    own = answer.own
+    return own.tare_error_g / own.error_g if name == OWN_WEIGHT and own is not None and own.error_g else 0.0
 
 
 def _known(name: str, answer: Answer, words: RefillWords) -> str:
@@ -84,8 +96,8 @@ def _known(name: str, answer: Answer, words: RefillWords) -> str:
             return "between what its readings allow"
         assert answer.source is not None
         return f"±{words.small(answer.source.error_g)}, {answer.source.origin}"
-    if name == "receiver weight":
-        return f"±{words.small(round(pair.tolerances.scale_kg * 1000))}, weighed"
+    if name == OWN_WEIGHT:
+        return f"±{words.small(round(pair.tolerances.receiver_kg * 1000))}, {answer.own.origin if answer.own else 'weighed'}"
     if name == START:
         return BEGUN[pair.start.kind]
     how = readings.taken if name == "source temperature" else readings.bottle_taken
@@ -99,7 +111,7 @@ def _measure(name: str, answer: Answer) -> str:
     if name == SUPPLY_WEIGHT:
         weighed = answer.source is not None and answer.source.origin == "weighed now"
         return "Weigh the supply bottle on a finer scale" if weighed else "Weigh the supply bottle"
-    if name == "receiver weight":
+    if name == OWN_WEIGHT:
         return "Weigh the bottle to fill on a finer scale"
     if name == START:
         return "Weigh the bottle to fill and say so, in place of how it starts"

@@ -129,6 +129,26 @@ def test_a_start_that_the_scale_contradicts_is_told(works: Works) -> None:
     assert "not_vented" in codes(works.forecast(start="vented"))
 
 
+def test_each_bottle_is_as_sure_as_the_scale_it_stood_on(works: Works) -> None:
+    coarse = factories.ScaleFactory(name="floor scale", capacity_g=200_000, error_g=400)
+    works.station.supply_scale = coarse
+    works.station.save()
+    floor = {"supply_weight": grams(SUPPLY_TARE_G + SUPPLY_NET_G), "bottle_temperature": degrees("15 °C")}
+    answer = works.forecast(**floor)
+    own = known_contents(works.bottle).error_on(works.scale)
+    read = answer.pair.tolerances
+    assert read.scale_kg * 1000 == answer.source.error_g > 400 > own
+    assert read.receiver_scale_kg * 1000 == own == answer.own.error_g and answer.own.origin == "weighed now"
+    plain = dict(works.forecast(bottle_temperature=degrees("15 °C")).transferred.width)
+    width = dict(answer.transferred.width)
+    assert width["source weight"] > 5 * plain["source weight"]
+    assert width["receiver weight"] == pytest.approx(plain["receiver weight"])
+    # Where it isn't weighed now its last weighing counts, as long as nothing moved since.
+    before = works.forecast(bottle_weight=None, **floor)
+    assert before.pair.tolerances.receiver_scale_kg * 1000 == known_contents(works.bottle).error_g == before.own.error_g
+    assert before.own.origin == "weighed before"
+
+
 def test_without_a_weight_and_without_a_start_nothing_is_guessed(works: Works) -> None:
     new = factories.BottleFactory(code="T-0500")
     with pytest.raises(Refusal) as caught:

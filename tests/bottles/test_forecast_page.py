@@ -10,7 +10,8 @@ import pytest
 from django.test import Client
 from django.urls import reverse
 
-from bottles.models import Forecast, Refill
+from bottles.models import Fit, Forecast, Refill, Tare
+from shop.base import clock
 from shop.base.models import Act
 from tests import factories
 from tests.bottles.of_refill import TARE_G, Works, key
@@ -78,6 +79,26 @@ def test_a_supply_known_by_its_gauge_alone_is_worth_weighing(client: Client, wor
     assert "What would help, and what S-09 will have left, can't be said before it's weighed." in page
     assert re.search(r"So it may hold [\d.]+ kg – [\d.]+ kg", page) and "Would help" not in page
     assert "Weigh the supply bottle" not in details(client, works) and "weigh it, then its course" in details(client, works)
+
+
+def test_a_finer_scale_is_asked_for_only_where_it_narrows(client: Client, works: Works) -> None:
+    # How vapour condenses is well known here: the weight of the bottle to fill is what is unsure.
+    Fit.objects.create(
+        act=factories.ActFactory(), way="", figure_milli=500, deviation_milli=1, informative=40, bounds=0, physics_version="1"
+    )
+    works.scale.error_g = 600
+    works.scale.save()
+    page = live(client, works)
+    assert re.search(r"the weight of the bottle to fill ±0\.60 kg, weighed now", page)
+    assert re.search(r"Weigh the bottle to fill on a finer scale: it would narrow the span by about [\d.]+ k?g\.", page)
+    # As unsure by its tare alone, no scale would help.
+    works.scale.error_g = 5
+    works.scale.save()
+    Tare.objects.create(
+        act=factories.ActFactory(), bottle=works.bottle, since=clock.now(), total_g=TARE_G, error_g=600, basis="stamped"
+    )
+    page = live(client, works)
+    assert re.search(r"the weight of the bottle to fill ±0\.60 kg, weighed now", page) and "finer scale" not in page
 
 
 def test_a_fill_that_is_full_in_every_case_has_no_width_and_needs_no_help(client: Client, works: Works) -> None:

@@ -178,6 +178,26 @@ def test_weighing_is_named_for_a_start_only_where_the_scale_tells_more():
     assert ask(tolerances=Tolerances(0.2, 5.0), **left).narrows != "receiver weight"
 
 
+def test_each_bottle_is_as_sure_as_its_own_scale():
+    known = Condensation(0.5, 0.0, "fitted to 40 refills")
+    shared = {"receiver": 8, "condensation": known, "start": Start("weighed", 0.3)}
+    one, other = (ask(tolerances=Tolerances(0.2, 0.5, own), **shared) for own in (None, 0.5))
+    assert one.width == other.width  # without its own, the bottle to fill stands on the supply's scale
+    fine = ask(tolerances=Tolerances(0.2, 0.5, 0.01), **shared)
+    alone = dict(one.width)["receiver weight"], dict(fine.width)["receiver weight"]
+    assert alone[1] < alone[0] / 20
+    assert dict(fine.width)["source weight"] == dict(one.width)["source weight"]
+    assert fine.high_kg - fine.low_kg < one.high_kg - one.low_kg
+    assert ask(tolerances=Tolerances(0.2, 0.01, 0.5), **shared).narrows == "receiver weight"
+
+
+def test_what_a_scale_tells_of_a_start_goes_by_the_scale_of_the_bottle_to_fill():
+    known = Condensation(0.5, 0.0, "fitted to 40 refills")
+    left = {"receiver": 8, "condensation": known, "start": Start("own vapour")}
+    assert ask(tolerances=Tolerances(0.2, 0.005, 5.0), **left).narrows != "receiver weight"
+    assert ask(tolerances=Tolerances(0.2, 0.05, 0.005), **left).narrows == "receiver weight"
+
+
 def test_without_the_named_doubt_the_band_is_narrower():
     for net, receiver in ((19.72, 20), (12.0, 10), (8.5, 0)):
         known = Condensation(0.5, 0.0, "fitted to 40 refills")
