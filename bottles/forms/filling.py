@@ -102,6 +102,7 @@ class ReadingsForm(ActForm):
     ) -> None:  # fmt: skip
         super().__init__(*args, **kwargs)
         read_off(self, at)
+        self.at = at
         self.bottle = bottle
         self.offered = offered
         supply: Any = self.fields["supply"]
@@ -186,6 +187,8 @@ class FillForm(ReadingsForm):
         super().__init__(*args, **kwargs)
         self.items = items
         self.limit_g = limit_g
+        if self.at is not None and self.at.pumped:
+            self.fields["method"].initial = "pumped"
         choices = [(item.code, item.words) for item in items]
         for name in ("look_ok", "look_failed"):
             field: Any = self.fields[name]

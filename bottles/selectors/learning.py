@@ -105,7 +105,7 @@ def _went(course: Course, reversed_by_hand: bool) -> Went:
     refill, before, last = course.refill, course.before, course.reads[-1] if course.reads else None
     forecast = course.draws[0].forecast if course.draws else None
     closed = Closed(
-        ended_by=refill.ended_by, draws=len(course.draws), pumped=refill.method == "pumped" or refill.station.pumped,
+        ended_by=refill.ended_by, draws=len(course.draws), pumped=refill.method == "pumped",
         vented=refill.method == "vented" or _lost_weight(course), reversed_by_hand=reversed_by_hand,
         weighed_before=before is not None, weighed_after=last is not None,
         line_off=last is not None and last.step == "disconnected",

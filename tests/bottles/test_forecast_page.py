@@ -259,6 +259,16 @@ def test_a_pumped_refill_is_forecast_by_its_own_stops_and_kept(client: Client, w
     assert kept.low_g == kept.result["target_g"] - kept.result["start_g"] == kept.high_g
 
 
+def test_where_a_station_has_a_pump_pumped_is_offered_and_the_choice_stands(client: Client, works: Works) -> None:
+    address = reverse("bottles:fill", args=["T-0412"])
+    assert client.get(address).context["form"]["method"].value() == "pressure"
+    pumping(works)
+    assert client.get(address).context["form"]["method"].value() == "pumped"
+    assert client.post(address, typed(works, forecast="yes")).context["form"]["method"].value() == "pressure"
+    assert "pumped quickly" not in live(client, works) and client.post(address, typed(works)).status_code == 302
+    assert Refill.objects.get().method == "pressure"
+
+
 def test_a_pump_ends_with_the_supplys_liquid_between_what_its_weight_leaves_open(client: Client, works: Works) -> None:
     pumping(works)
     works.supply = works.connected("S-09", net_g=5_000)

@@ -272,7 +272,10 @@ def _inverted(supply: Any) -> Any:
     return supply
 
 
-def test_a_pumped_station_stays_out_whatever_the_refill_says(works: Works) -> None:
+def test_a_refill_was_pumped_where_its_method_says_so_whatever_its_station_has_today(works: Works) -> None:
     refilled(works, "T-0820")
-    Station.objects.update(pumped=True)
-    assert reasons(works) == {"pumped": 1}
+    refilled(works, "T-0821", method="pumped")
+    for has_one in (True, False):
+        Station.objects.update(pumped=has_one)
+        told = gather(works.shop)
+        assert len(told.observations) == 1 and told.left_out["", None] == {"pumped": 1}
