@@ -7,6 +7,7 @@ from typing import Any
 
 from bottles.models import DayPlan
 from bottles.services import planning
+from bottles.services.plan_again import KIND, superseded
 from bottles.services.plan_day import gather
 from shop.base.jobs import JobCancelled, Running, job_kind
 from shop.base.models import Shop
@@ -14,11 +15,11 @@ from shop.base.models import Shop
 _TOLD_EVERY = 0.4  # seconds: often enough for whoever watches, seldom enough for the database
 
 
-@job_kind(planning.KIND)
+@job_kind(KIND)
 def make_plan(job: Running) -> dict[str, Any]:
     """Work out a day's plan by what stands in the register now, and keep it."""
     plan, shop = DayPlan.objects.get(pk=job.args["plan"]), Shop.objects.get()
-    if planning.superseded(job.id, plan):
+    if superseded(job.id, plan):
         return {"superseded": True}
     told_at = 0.0
 

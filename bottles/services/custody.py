@@ -13,7 +13,7 @@ from datetime import datetime
 from bottles.models import Bottle, Custody, Refill, Standing, Supply
 from bottles.services.cleaning import clean
 from bottles.services.locking import lock
-from bottles.services.planning import plan_again
+from bottles.services.plan_again import plan_again
 from bottles.services.standing import restate
 from bottles.services.weighing import refuse_in_refill
 from shop.base import acts, clock

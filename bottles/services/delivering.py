@@ -16,6 +16,7 @@ from bottles.models import Bottle, Custody, Delivery, Line, Movement, Supply, We
 from bottles.selectors.history import history_of
 from bottles.services.booking import book
 from bottles.services.moving import OnScale
+from bottles.services.plan_again import plan_again
 from bottles.services.posting import Move, account_of, own_account
 from bottles.services.refusals import locked
 from bottles.services.standing import restate
@@ -104,6 +105,7 @@ def deliver(
                 act=act, bottle=bottle, kind="in", place=place, with_whom=ticket.supplier.strip(), happened_at=happened_at
             )
         restate(bottle)
+        plan_again(act, bottle.code)
     return delivery
 
 
@@ -148,6 +150,7 @@ def give_back(
             act=act, bottle=bottle, kind="supplier", with_whom=supplier.strip()[:120], happened_at=happened_at
         )
         restate(bottle)
+        plan_again(act, bottle.code)
     return movement
 
 

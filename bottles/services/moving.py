@@ -15,6 +15,7 @@ from bottles.selectors.history import history_of
 from bottles.services.booking import book
 from bottles.services.booking import reverse as reverse_now
 from bottles.services.locking import lock
+from bottles.services.plan_again import plan_again
 from bottles.services.posting import Move, account_of, own_account
 from bottles.services.refusals import locked
 from bottles.services.weighing import refuse_in_refill, weigh_in
@@ -107,6 +108,7 @@ def reverse_movement(*, key: uuid.UUID, person: User | None, movement: Movement,
         done = reverse_now(act=act, movement=movement)
         if done is None:
             raise NotReady("Nothing is left to reverse here.", code="nothing to reverse")
+        plan_again(act)
         return done
 
 
@@ -169,6 +171,7 @@ def _out(
         moves=[Move(source=account_of(bottle), target=target, grams=grams, origin=origin, error_g=error)],
     )
     assert movement is not None
+    plan_again(act, bottle.code)
     return movement
 
 

@@ -1,4 +1,4 @@
-"""The day's fill plan: asked for, worked out, and made anew as refills are logged.
+"""The day's fill plan: asked for, worked out, and kept.
 
 Guarantees: a question and its first answer stand in one act, or the work is asked for in it; a plan
 that is being made leaves the last one visible; working out writes nothing but its result.
@@ -8,19 +8,18 @@ from __future__ import annotations
 
 import uuid
 from collections.abc import Mapping
-from datetime import timedelta
 from typing import Any
 
 from bottles.models import DayPlan, DayPlanResult
 from bottles.rules.planning.heuristic import Watch
 from bottles.rules.planning.told import work_out
+from bottles.services.plan_again import ask_to_make
 from bottles.services.plan_day import Gathered, gather
-from shop.base import acts, clock, jobs
-from shop.base.models import Act, Job, Shop
+from shop.base import acts, clock
+from shop.base.models import Shop
 from shop.people.models import User
 
 AT_ONCE = 8  # bottles that a page works out itself: more take a job
-KIND = "plan.make"
 
 
 def ask_for_plan(*, key: uuid.UUID, person: User, shop: Shop, inputs: Mapping[str, Any]) -> DayPlan:
@@ -32,7 +31,7 @@ def ask_for_plan(*, key: uuid.UUID, person: User, shop: Shop, inputs: Mapping[st
     with acts.begin(key=key, person=person, code="plan.asked", subject="plan", changes={"day": today.isoformat()}) as act:
         plan = DayPlan.objects.create(act=act, day=today, inputs=dict(inputs))
         if told is None:
-            _ask(plan, act, "")
+            ask_to_make(plan, act)
         else:
             keep(plan, gathered, told, {"why": "asked", "bottle": ""})
     return plan
@@ -52,23 +51,3 @@ def keep(
     return DayPlanResult.objects.create(
         plan=plan, job_id=job_id, after_act=gathered.after_act, made_at=gathered.now, result=told | {"cause": cause}
     )
-
-
-def plan_again(act: Act, bottle: str = "") -> None:
-    """Ask within an act's transaction that today's plan is made anew; one query where there is none."""
-    recent = act.recorded_at.date() - timedelta(days=1)  # the shop's day may be a day off the clock's
-    plan = DayPlan.objects.filter(day__gte=recent).order_by("-id").first()
-    if plan is not None and plan.day == clock.today():
-        _ask(plan, act, bottle)
-
-
-def superseded(job_id: int, plan: DayPlan) -> bool:
-    """Whether later work will answer for this one: of a newer question, or after a later refill."""
-    if DayPlan.objects.filter(day=plan.day, pk__gt=plan.pk).exists():
-        return True
-    return Job.objects.filter(kind=KIND, state="queued", pk__gt=job_id, args__plan=plan.pk).exists()
-
-
-def _ask(plan: DayPlan, act: Act, bottle: str) -> Job:
-    args = {"plan": plan.pk, "day": plan.day.isoformat(), "why": act.code, "bottle": bottle}
-    return jobs.ask(KIND, f"{plan.pk} after {act.pk}", args, act.person)

@@ -18,7 +18,7 @@ from bottles.selectors.refills import Course, course_of, draws_of, in_force
 from bottles.services.forecasting import Answer, Asked, DangerSign
 from bottles.services.learning import ask_to_learn
 from bottles.services.locking import lock
-from bottles.services.planning import plan_again
+from bottles.services.plan_again import plan_again
 from bottles.services.refill_books import post_flows
 from bottles.services.refill_refusals import Closed, NotDisconnected, Overfull, WetProvesNothing
 from bottles.services.refilling import draw_on, refuse_source
@@ -92,9 +92,10 @@ def wait(
     with acts.begin(
         key=key, person=person, code="refill.waits", subject=f"bottle:{refill.bottle.code}",
         changes={"refill": refill.pk, "until": until.isoformat() if until else None, "note": note.strip()},
-    ):
+    ) as act:
         current, _ = _locked(refill)
         acts.update_master(current, version=version, values={"wait_until": until, "wait_note": note.strip()[:80] if until else ""})
+        plan_again(act, refill.bottle.code)
 
 
 def add_draw(
@@ -132,6 +133,7 @@ def add_draw(
         )
         # What is posted once the line was taken over: the loss of the one before.
         post_flows(act=act, course=course_of(current), weighing=None)
+        plan_again(act, refill.bottle.code)
     return new
 
 

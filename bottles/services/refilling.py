@@ -34,7 +34,7 @@ from bottles.selectors.scales import scale_checked, scale_uncertainty
 from bottles.services.deciding import decide, keep_refusal
 from bottles.services.forecasting import Answer, Asked, DangerSign, keep_forecast
 from bottles.services.locking import lock
-from bottles.services.planning import plan_again
+from bottles.services.plan_again import plan_again
 from bottles.services.refusals import Retired
 from bottles.services.weighing import tare_at, weigh_in
 from shop.base import acts, clock

@@ -15,6 +15,7 @@ from django.db import IntegrityError, transaction
 
 from bottles.models import Bottle, Custody, Refill, Scale, Station, Supply
 from bottles.services.cleaning import clean
+from bottles.services.plan_again import plan_again
 from bottles.services.refusals import locked
 from bottles.services.standing import restate
 from shop.base import acts, clock
@@ -109,6 +110,7 @@ def connect(
             raise NotReady(f"{bottle.code} is being filled itself. Close that refill first.", code="open refill", field="bottle")
         supply = Supply.objects.create(station=station, bottle=bottle, inverted=inverted)
         _moved(act, bottle, station.place)
+        plan_again(act, bottle.code)
     return supply
 
 
@@ -130,6 +132,7 @@ def disconnect(*, key: uuid.UUID, person: User | None, supply: Supply, place: Pl
             )  # fmt: skip
         Supply.objects.filter(pk=supply.pk).delete()
         _moved(act, bottle, place)
+        plan_again(act, bottle.code)
 
 
 def drawing_refill(source: Bottle) -> Refill | None:

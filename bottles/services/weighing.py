@@ -19,6 +19,7 @@ from bottles.selectors.scales import last_check, scale_uncertainty
 from bottles.services.booking import book, reverse
 from bottles.services.gaps import end_unknown
 from bottles.services.locking import lock
+from bottles.services.plan_again import plan_again
 from bottles.services.posting import Move, account_of, own_account
 from bottles.services.refill_books import post_flows
 from bottles.services.refusals import locked
@@ -63,9 +64,11 @@ def weigh(
     ) as act:
         bottle = locked(bottle)
         refuse_in_refill(bottle)
-        return weigh_in(
+        kept = weigh_in(
             act=act, bottle=bottle, scale=scale, gross=gross, wet=wet, step=step, happened_at=happened_at, reason=reason
         )
+        plan_again(act, bottle.code)
+    return kept
 
 
 def weigh_in(
@@ -193,6 +196,7 @@ def strike(
             post_flows(act=act, course=course_of(now), weighing=kept)
         settle_books(act=act, bottle=bottle, reason=reason)
         standing: Standing = restate(bottle)
+        plan_again(act, bottle.code)
         return standing.weighing if right is None else kept
 
 

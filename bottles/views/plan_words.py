@@ -24,6 +24,17 @@ CAUSES = {
     "bottle.moved": "after {} was moved",
     "bottle.wanted": "after what {} waits for was changed",
     "bottle.handed over": "after {} was handed over",
+    "refill.supply changed": "after the refill of {} went on from another supply bottle",
+    "refill.waits": "after the refill of {} was set to wait, or to go on",
+    "bottle.weighed": "after {} was weighed",
+    "bottle.used": "after a car used from {}",
+    "bottle.vented": "after {} was vented",
+    "bottle.delivered": "after {} came from the supplier",
+    "bottle.given back": "after {} went back to the supplier",
+    "supply.connected": "after {} was connected",
+    "supply.taken off": "after {} was taken off its station",
+    "movement.reversed": "after a movement was reversed",
+    "weighing.struck": "after a weighing of {} was struck",
 }
 WHY = {
     "no supply": "There is no supply bottle that can be counted on. Weigh one, or order.",

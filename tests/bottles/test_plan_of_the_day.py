@@ -1,62 +1,32 @@
-"""The day's fill plan: asked for at the desk, made anew as refills are logged, stopped by who asked."""
+"""The day's fill plan: asked for at the desk, and what it says of bottles and supply bottles."""
 
 from __future__ import annotations
 
 import re
 import uuid
-from datetime import UTC, datetime, timedelta
+from collections.abc import Iterator
+from datetime import timedelta
 from typing import Any
 
 import pytest
 from django.urls import reverse
 
-from bottles.models import DayPlan, DayPlanResult
-from bottles.services import custody, planning, refill_steps
+from bottles.models import DayPlan, DayPlanResult, Standing, Supply
+from bottles.services import refill_steps
+from bottles.services.plan_again import KIND
 from bottles.services.plan_day import gather, wants_filling
 from shop.base import clock
-from shop.base.models import Act, Job, Place
+from shop.base.models import Job, Place
 from tests import factories
+from tests.bottles.of_plan import INPUTS, NOW, a_morning, many, plan, told, wants
 from tests.bottles.of_refill import Works, key
 
 pytestmark = pytest.mark.django_db
 
-NOW = datetime(2026, 3, 3, 15, 0, tzinfo=UTC)  # nine in the morning in Chicago
-INPUTS: dict[str, Any] = {
-    "people": 1, "fill_minutes": 15, "change_minutes": 5, "opens": "08:00", "closes": "18:00", "lead_days": 2,
-    "room_mk": 293_150, "room_typed": "20 °C", "supply_mk": 293_150, "supply_typed": "20 °C", "freezer_mk": None,
-    "freezer_typed": "", "freezer_takes": None,
-}  # fmt: skip
-
 
 @pytest.fixture
-def morning() -> Any:
-    with clock.pretend(NOW):
-        yield
-
-
-@pytest.fixture
-def works(morning: Any, shop: Any, front_desk: Any) -> Works:
-    made = Works(shop, front_desk)
-    Place.objects.create(code="FREEZER", name="Chest freezer", kind="freezer", coldest_mk=255_150, takes_at_once=3)
-    wants(made.bottle)
-    return made
-
-
-def wants(bottle: Any, promised: datetime | None = None, wanted: str = "refill") -> None:
-    factories.placed(bottle, "moved", wanted=wanted, promised_at=promised, happened_at=clock.now() - timedelta(minutes=30))
-    from bottles.models import Standing
-
-    Standing.objects.filter(bottle=bottle).update(waits=True)
-
-
-def plan(works: Works, **changes: Any) -> DayPlan:
-    return planning.ask_for_plan(key=key(), person=works.person, shop=works.shop, inputs=INPUTS | changes)
-
-
-def told(plan: DayPlan) -> dict[str, Any]:
-    found = DayPlanResult.objects.filter(plan=plan).order_by("-id").first()
-    assert found is not None
-    return found.result
+def works(shop: Any, front_desk: Any) -> Iterator[Works]:
+    yield from a_morning(shop, front_desk)
 
 
 def typed(**changes: str) -> dict[str, str]:
@@ -73,7 +43,7 @@ def test_a_small_day_is_planned_at_once(works: Works, client_of: Any) -> None:
     html = client.get(answer.url).content.decode()
     assert "T-0412" in html and "S-07" in html and "Made at 09:00" in html
     assert "1 of 1 good enough" in html
-    assert not Job.objects.filter(kind=planning.KIND).exists()
+    assert not Job.objects.filter(kind=KIND).exists()
 
 
 def test_the_form_arriving_twice_makes_one_plan(works: Works, client_of: Any) -> None:
@@ -150,34 +120,6 @@ def test_an_open_refill_holds_its_hose(works: Works) -> None:
     assert day.stations_free_s[0] > 0 and not day.bottles
 
 
-def test_the_plan_is_made_anew_after_each_refill_and_says_so(works: Works, client_of: Any, run_jobs: Any) -> None:
-    other = works.bottle_to_fill("T-0413")
-    wants(other)
-    plan(works)
-    refill = works.open()
-    assert Job.objects.filter(kind=planning.KIND).count() == 1
-    refill_steps.weigh_refill(key=key(), person=works.person, refill=refill, weight=works.weight(4_500), ended_by="by hand")
-    assert Job.objects.filter(kind=planning.KIND).count() == 2
-    run_jobs()
-    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
-    assert "after the refill of T-0412" in html
-    assert DayPlanResult.objects.count() == 2  # the first job saw that a later one follows
-    result = told(DayPlan.objects.get())
-    assert [fill["bottle"] for fill in result["fills"]] == ["T-0413"]
-    assert DayPlanResult.objects.latest("id").after_act == Act.objects.latest("id").pk
-
-
-def test_checking_a_bottle_in_makes_the_plan_anew(works: Works, run_jobs: Any) -> None:
-    plan(works)
-    new = works.bottle_to_fill("T-0414")
-    factories.placed(new, "out")
-    custody.check_in(
-        key=key(), person=works.person, bottle=new, place=factories.PlaceFactory(), brought_by="Ostrander", wanted="refill"
-    )
-    run_jobs()
-    assert "T-0414" in {fill["bottle"] for fill in told(DayPlan.objects.get())["fills"]}
-
-
 def test_a_refill_that_waits_to_be_chilled_is_planned_where_it_is_open(works: Works, client_of: Any) -> None:
     refill = works.open()
     wants(works.bottle, NOW + timedelta(hours=3))
@@ -202,8 +144,6 @@ def test_bottles_that_stand_in_the_freezer_take_its_room(works: Works) -> None:
     factories.placed(inside, "moved", wanted="refill", place=freezer, happened_at=NOW - timedelta(hours=9))
     other = works.bottle_to_fill("T-0414")
     factories.placed(other, "moved", place=freezer, happened_at=NOW - timedelta(hours=9))
-    from bottles.models import Standing
-
     Standing.objects.filter(bottle=inside).update(waits=True)
     gathered = gather(works.shop, INPUTS)
     assert gathered.rooms_taken == (1,) and gathered.day.slots == (2,)
@@ -220,8 +160,6 @@ def test_a_fill_tells_its_span_and_why_so_much(works: Works, client_of: Any) -> 
 
 
 def test_a_day_without_a_supply_bottle_says_so_and_to_order(works: Works, client_of: Any) -> None:
-    from bottles.models import Standing, Supply
-
     Supply.objects.all().delete()
     Standing.objects.filter(bottle__use="supply").update(is_in=False)
     plan(works)
@@ -242,67 +180,6 @@ def test_a_result_told_in_another_form_is_not_shown(works: Works, client_of: Any
     DayPlanResult.objects.update(result={"fills": []})
     answer = client_of(works.person).get(reverse("bottles:plan"))
     assert answer.status_code == 200 and "Plan anew" in answer.content.decode()
-
-
-def test_without_a_plan_for_today_nothing_is_asked_for(works: Works) -> None:
-    with clock.pretend(NOW - timedelta(days=1)):
-        plan(works)
-    works.open()
-    assert not Job.objects.filter(kind=planning.KIND).exists()
-
-
-def many(works: Works, count: int = 9) -> None:
-    for number in range(count):
-        wants(works.bottle_to_fill(f"T-{600 + number}"))
-
-
-def test_a_large_day_is_made_in_the_background_while_the_last_plan_stays(works: Works, client_of: Any, run_jobs: Any) -> None:
-    plan(works)
-    many(works)
-    plan(works)
-    client = client_of(works.person)
-    html = client.get(reverse("bottles:plan")).content.decode()
-    assert "waiting to start" in html and "Stop this" in html and "1 of 1 good enough" in html
-    run_jobs()
-    html = client.get(reverse("bottles:plan")).content.decode()
-    assert "of 10 good enough" in html and "Stop this" not in html
-
-
-def test_who_asked_for_a_plan_may_stop_it_and_nobody_else_but_a_manager(
-    works: Works, client_of: Any, make_user: Any, manager: Any
-) -> None:  # fmt: skip
-    plan(works)
-    many(works)
-    plan(works)
-    job = Job.objects.get(kind=planning.KIND)
-    stop = reverse("rooms:job_cancel", args=[job.pk])
-    other = client_of(make_user("front_desk", name="other"))
-    assert other.post(stop).status_code == 403
-    assert "Stop this" not in other.get(reverse("bottles:plan")).content.decode()
-    answer = client_of(works.person).post(stop)
-    assert answer.status_code == 302 and answer.url == reverse("bottles:plan")
-    html = client_of(works.person).get(answer.url).content.decode()
-    assert "cancelled" in html and "The last plan stays" in html and "1 of 1 good enough" in html
-
-
-def test_work_that_is_stopped_amid_its_computing_keeps_nothing(works: Works, monkeypatch: Any) -> None:
-    from bottles import tasks_plan
-    from shop.base import jobs
-
-    many(works)
-    plan(works)
-    job = Job.objects.get(kind=planning.KIND)
-    monkeypatch.setattr(tasks_plan, "_TOLD_EVERY", 0.0)
-    real = tasks_plan.gather
-
-    def gathered(*args: Any) -> Any:
-        jobs.cancel(Job.objects.get(pk=job.pk))
-        return real(*args)
-
-    monkeypatch.setattr(tasks_plan, "gather", gathered)
-    jobs.perform(job.pk)
-    job.refresh_from_db()
-    assert job.state == "cancelled" and not DayPlanResult.objects.exists()
 
 
 def test_gathering_a_day_asks_no_more_of_ten_bottles_than_of_two(works: Works, django_assert_max_num_queries: Any) -> None:
