@@ -14,7 +14,8 @@ from django.urls import reverse
 from bottles.models import DayPlan, DayPlanResult, Standing, Supply
 from bottles.services import refill_steps
 from bottles.services.plan_again import KIND
-from bottles.services.plan_day import gather, wants_filling
+from bottles.services.plan_day import gather
+from bottles.services.plan_waiting import wants_filling
 from shop.base import clock
 from shop.base.models import Job, Place
 from tests import factories
