@@ -12,6 +12,7 @@ WAYS: Mapping[str, str] = {
     "": "tube not known",
 }
 _SHORT: Mapping[str, str] = {"dip": " through a dip tube", "spray": " without a dip tube", "": ""}
+_NO_END_ML = 1_000_000  # an upper end that stands for none
 
 
 def origin(informative: int, way: str, size_span_ml: tuple[int, int] | None, since: str) -> str:
@@ -44,9 +45,13 @@ def origin(informative: int, way: str, size_span_ml: tuple[int, int] | None, sin
     ----------
     None: wording.
     """
-    size = f" of {litres(size_span_ml)}" if size_span_ml else ""
+    tube = _SHORT[way]
+    if size_span_ml:
+        between = size_span_ml[0] and size_span_ml[1] < _NO_END_ML
+        said = litres(size_span_ml).removeprefix("over ") if between else litres(size_span_ml)
+        tube = f", bottles of {said}{',' if tube else ''}{tube}"
     refills = "1 refill" if informative == 1 else f"{informative} refills"
-    return f"{refills} of this shop{size}{_SHORT[way]}, since {since}"
+    return f"{refills} of this shop{tube}, since {since}"
 
 
 def litres(size_span_ml: tuple[int, int]) -> str:
@@ -79,7 +84,7 @@ def litres(size_span_ml: tuple[int, int]) -> str:
     low, high = (f"{end / 1000:g}" for end in size_span_ml)
     if not size_span_ml[0]:
         return f"up to {high} L"
-    return f"over {low} L" if size_span_ml[1] >= 1_000_000 else f"over {low} to {high} L"
+    return f"over {low} L" if size_span_ml[1] >= _NO_END_ML else f"over {low} to {high} L"
 
 
 def why_untold(informative: int, bounds: int) -> str:

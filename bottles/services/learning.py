@@ -2,7 +2,8 @@
 
 Always computed anew from the readings kept in their forecasts and the weighings that stand, never
 from what was once worked out: a weighing that is struck changes the fit. New rows are laid only
-where a figure has changed so that it shows.
+once a figure has changed so that it shows; then each that differs at all, so that those that hold
+are of one fit and no size counts more refills than its way.
 """
 
 from __future__ import annotations
@@ -83,9 +84,9 @@ def learn(*, key: uuid.UUID, shop: Shop, gathered: Gathered) -> list[Fit]:
     for scope, row in known.items():  # a class that no refill is left of
         if scope not in fitted and row.informative + row.bounds:
             fitted[scope] = Fitted(row.way, row.size_ml, PRIOR.figure, PRIOR.deviation, PRIOR.deviation, 0, 0)
-    changed = [one for scope, one in sorted(fitted.items(), key=str) if _shows(known.get(scope), one)]
-    if not changed:
+    if not any(_shows(known.get(scope), one) for scope, one in fitted.items()):
         return []
+    changed = [one for scope, one in sorted(fitted.items(), key=str) if _differs(known.get(scope), one)]
     made: list[Fit] = []
     with acts.begin(
         key=key, person=None, code="learning.fitted", subject="shop", changes={"scopes": len(changed)}
@@ -100,6 +101,15 @@ def learn(*, key: uuid.UUID, shop: Shop, gathered: Gathered) -> list[Fit]:
             row.save()
             made.append(row)
     return made
+
+
+def _differs(row: Fit | None, new: Fitted) -> bool:
+    """Whether a row would be another one; one that would be the same stands, and holds since its own day."""
+    if row is None:
+        return bool(new.informative or new.bounds)
+    return (row.figure_milli, row.deviation_milli, row.informative, row.bounds) != (
+        round(new.figure * 1000), round(new.deviation * 1000), new.informative, new.bounds,
+    )  # fmt: skip
 
 
 def _shows(row: Fit | None, new: Fitted) -> bool:

@@ -11,7 +11,7 @@ from django.test.utils import CaptureQueriesContext
 
 from bottles.models import Bottle, Fit, Forecast, Refill, Station, Weighing
 from bottles.physics.condensation import PRIOR, between
-from bottles.physics.fitting import ENOUGH
+from bottles.physics.fitting import ENOUGH, fit
 from bottles.selectors.learning import latest_figures, went
 from bottles.services import refill_steps as steps
 from bottles.services.forecasting import work_out
@@ -90,7 +90,7 @@ def test_enough_refills_change_the_next_forecast(works: Works) -> None:
     assert after.likely_g > before.likely_g and after.high_g - after.low_g < before.high_g - before.low_g
     assert not after.transferred.condensation.is_prior
     origin = after.transferred.condensation.origin
-    assert origin.startswith("6 refills of this shop of over 5 to 7.5 L through a dip tube, since 20")
+    assert origin.startswith("6 refills of this shop, bottles of 5 to 7.5 L, through a dip tube, since 20")
     assert "condensation_prior" not in {code for code, _ in after.transferred.warnings}
 
 
@@ -137,6 +137,29 @@ def test_what_changes_nothing_that_shows_is_not_laid_down_again(works: Works) ->
     acts = Act.objects.count()
     assert learned(works) == []
     assert Act.objects.count() == acts  # not even an act that says nothing
+
+
+def test_the_rows_that_hold_are_of_one_fit(works: Works) -> None:
+    several(works)
+    small = works.bottle_to_fill("T-0790", capacity_ml=5_000)
+    refilled(works, "T-0790", bottle=small)
+    learned(works)
+    before = latest_figures(works.shop).rows
+    # One more for the small ones is twice as many; for their way and for the shop it shows nothing.
+    refilled(works, "T-0791", bottle=works.bottle_to_fill("T-0791", capacity_ml=5_000))
+    new = learned(works)
+    assert len({row.act_id for row in new}) == 1
+    now = latest_figures(works.shop).rows
+    counts = {scope: row.informative for scope, row in now.items()}
+    assert counts == {("", None): 8, ("dip", None): 8, ("dip", 5_000): 2, ("dip", 7_500): 6}
+    told = {(one.way, one.size): one for one in fit(gather(works.shop).observations)}
+    assert all(row.figure_milli == round(told[scope].figure * 1000) for scope, row in now.items())
+    # What came out the same holds since the day that it was laid down first.
+    for scope, row in now.items():
+        same = (row.figure_milli, row.deviation_milli, row.informative) == (
+            before[scope].figure_milli, before[scope].deviation_milli, before[scope].informative
+        )  # fmt: skip
+        assert (row == before[scope]) is same
 
 
 def test_a_weighing_struck_changes_the_fit(works: Works) -> None:

@@ -265,5 +265,7 @@ def test_an_observation_without_a_deviation_is_refused() -> None:
 def test_an_origin_names_refills_size_way_and_time() -> None:
     assert origin(12, "dip", None, "2026-09") == "12 refills of this shop through a dip tube, since 2026-09"
     told = origin(1, "spray", (5_000, 7_500), "2026-09")
-    assert told == "1 refill of this shop of over 5 to 7.5 L without a dip tube, since 2026-09"
+    assert told == "1 refill of this shop, bottles of 5 to 7.5 L, without a dip tube, since 2026-09"
+    assert origin(7, "dip", (50_000, 1_000_000), "2026-09").startswith("7 refills of this shop, bottles of over 50 L, through")
+    assert origin(7, "dip", (0, 2_500), "2026-09").startswith("7 refills of this shop, bottles of up to 2.5 L, through")
     assert litres((0, 2_500)) == "up to 2.5 L" and litres((50_000, 1_000_000)) == "over 50 L"
