@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from shop.physics.errors import OutOfRange
 
 LEAST_DRAW_KG = 0.02  # less isn't worth connecting a hose for (common practice, no source)
+LEAST_DRAW_S = 180  # opening, watching, closing and bleeding take as long, however little goes over (common practice, no source)
 MOST_DRAWS = 3  # supply bottles that one bottle is filled from in turn
 
 
@@ -88,6 +89,15 @@ class Day:
             raise OutOfRange("slots", "A bottle stands in a freezer or bath that isn't there. Check the freezers and baths.")
         if any(self.standing_in(place) > takes for place, takes in enumerate(self.slots)):
             raise OutOfRange("slots", "More bottles stand in a freezer or bath than it takes. Check what it takes at once.")
+
+    def draw_s(self, moved_kg: float, room_kg: float, *, spent_s: int, last: bool) -> int:
+        """How long a draw takes [s]: the minutes of a fill are split over its draws (common practice, no source).
+
+        Each takes its share of the mass that the bottle had room for, and the last what is left of the minutes,
+        `spent_s` being those of the draws before; none takes less than its least.
+        """
+        least = min(LEAST_DRAW_S, self.fill_s)
+        return max(least, self.fill_s - spent_s if last else round(self.fill_s * moved_kg / room_kg))
 
     def standing_in(self, place: int) -> int:
         """How many of the bottles stand in a freezer or bath already."""

@@ -7,12 +7,12 @@ search goes back to an earlier one.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, replace
 from itertools import combinations
 from typing import TypeVar
 
-from bottles.rules.planning.fills import Fills
+from bottles.rules.planning.fills import Fills, Receiver
 from bottles.rules.planning.problem import LEAST_DRAW_KG, MOST_DRAWS, Choice, Day, Drawn, Filled, Score
 from shop.physics.fluid import T_SATURATION_MAX, engine
 
@@ -95,8 +95,7 @@ class Rehearsal:
         for source in choice.sources:
             if bottle.target_kg - held < LEAST_DRAW_KG:
                 return None  # full before: the shorter choice is the one to look at
-            hose = draws[0].station if draws else bottle.hose  # a refill stays at its station
-            drawn = self._draw(now, (choice.bottle, held, warm), source, ready, hose)
+            drawn = self._draw(now, (choice.bottle, held, warm), source, ready, draws, last=source == choice.sources[-1])
             if drawn is None or drawn.until_s > day.closes_s:
                 return None
             if source != choice.sources[-1]:
@@ -150,10 +149,11 @@ class Rehearsal:
         return at.net_kg[source] / self.day.sources[source].volume_m3, source
 
     def _draw(
-        self, at: Position, receiver: tuple[int, float, float], source: int, ready: int, hose: int | None
+        self, at: Position, receiver: Receiver, source: int, ready: int, before: Sequence[Drawn], *, last: bool
     ) -> Drawn | None:  # fmt: skip
         """One draw from a supply bottle, as early as it can be; None where nothing goes over, or it hangs on another hose."""
-        day = self.day
+        day, bottle = self.day, self.day.bottles[receiver[0]]
+        hose = before[0].station if before else bottle.hose  # a refill stays at its station
         station = at.source_at[source]
         if station is None:
             station = hose
@@ -167,13 +167,15 @@ class Rehearsal:
         begins = max(ready, at.station_free_s[station], at.source_free_s[source]) + (day.change_s if changed else 0)
         net, warm = at.net_kg[source], self._warmed(at, source, begins)
         line = self.fills.line_kg(source, net, warm)
-        room = day.bottles[receiver[0]].target_kg - receiver[1]
+        room = bottle.target_kg - receiver[1]
         moved = min(self.fills.free_kg(receiver, source, net, warm), room, net - line)
         if moved < LEAST_DRAW_KG:
             return None
         left = net - moved - line
+        spent = sum(draw.until_s - draw.from_s for draw in before)
+        takes = day.draw_s(moved, bottle.target_kg - bottle.net_kg, spent_s=spent, last=last)
         return Drawn(
-            source, station, begins, begins + day.fill_s, moved, line, left,
+            source, station, begins, begins + takes, moved, line, left,
             self.fills.source_after(source, net, warm, moved + line), changed, warm,
         )  # fmt: skip
 

@@ -13,7 +13,7 @@ from hypothesis import strategies as st
 from bottles.rules.planning.bound import bound_of
 from bottles.rules.planning.exact import best_plan
 from bottles.rules.planning.heuristic import first_come_first_served, good_plan
-from bottles.rules.planning.problem import Choice, Day, Plan, Score, Source, Start, Waiting
+from bottles.rules.planning.problem import LEAST_DRAW_S, Choice, Day, Plan, Score, Source, Start, Waiting
 from bottles.rules.planning.schedule import Rehearsal
 from bottles.rules.planning.spans import span_of
 from bottles.rules.planning.told import tell
@@ -57,7 +57,7 @@ def days(draw: Any, most_bottles: int = 3, most_sources: int = 2) -> Day:
     ]
     return day(
         bottles, sources, stations_free_s=(0,) * stations, people=draw(st.integers(1, 2)), slots=(draw(st.integers(1, 2)),),
-        closes_s=draw(st.sampled_from((2, 3, 8))) * HOUR,
+        closes_s=draw(st.sampled_from((2_400, 2 * HOUR, 3 * HOUR, 8 * HOUR))),
     )  # fmt: skip
 
 
@@ -125,6 +125,9 @@ def check(of: Day, plan: Plan) -> None:
         assert filled.final_kg == pytest.approx(one.net_kg + sum(draw.moved_kg for draw in filled.draws))
         assert filled.draws[0].from_s >= 0 and filled.until_s <= of.closes_s
         assert len({draw.station for draw in filled.draws}) == 1  # a refill stays at its station
+        took = [draw.until_s - draw.from_s for draw in filled.draws]
+        assert min(took) >= min(LEAST_DRAW_S, of.fill_s)
+        assert of.fill_s <= sum(took) <= of.fill_s + LEAST_DRAW_S * (len(took) - 1) and (len(took) > 1 or took == [of.fill_s])
         if start.place is not None:
             assert filled.chill_from_s is not None and filled.chill_until_s is not None
             assert filled.chill_until_s - filled.chill_from_s >= start.seconds
@@ -169,6 +172,34 @@ def test_a_weak_supply_bottle_is_drawn_on_first_and_a_fresh_one_fills_up() -> No
     fill = best_plan(of).fills[0]
     assert [of.sources[draw.source].code for draw in fill.draws] == ["weak", "fresh"]
     assert fill.final_kg == pytest.approx(of.bottles[0].target_kg)
+
+
+def test_the_minutes_of_a_fill_are_split_over_its_draws_by_mass_and_the_change_comes_on_top() -> None:
+    of = day([replace(bottle("T-1"), starts=(Start(258.15),))], [supply("weak", 6.5), supply("fresh", 19.0, None)])
+    first, second = best_plan(of).fills[0].draws
+    room = of.bottles[0].target_kg - of.bottles[0].net_kg
+    assert first.moved_kg + second.moved_kg == pytest.approx(room)
+    assert first.until_s - first.from_s == pytest.approx(of.fill_s * first.moved_kg / room, abs=1)
+    assert second.from_s == first.until_s + of.change_s
+    assert second.until_s == of.fill_s + of.change_s
+
+
+def test_no_draw_takes_less_than_three_minutes_and_none_more_than_a_shops_own_fill() -> None:
+    of = day([bottle("T-1")], [supply("S-1", 19.0)])
+    assert of.draw_s(0.1, 4.0, spent_s=0, last=False) == 180
+    assert of.draw_s(4.0, 4.0, spent_s=890, last=True) == 180
+    assert of.draw_s(0.5, 4.0, spent_s=0, last=True) == 900  # where one gives it all: equal pressures take their time
+    assert replace(of, fill_s=60).draw_s(0.1, 4.0, spent_s=0, last=False) == 60
+
+
+def test_a_top_up_fits_where_only_the_change_and_no_second_fill_does() -> None:
+    of = day(
+        [replace(bottle("T-1"), starts=(Start(258.15),))], [supply("weak", 6.5), supply("fresh", 19.0, None)],
+        closes_s=900 + 300,
+    )  # fmt: skip
+    plan = best_plan(of)
+    assert plan.exact and plan.score == brute_force(of) == good_plan(of).score
+    assert plan.good == plan.bound.good == 1 and len(plan.fills[0].draws) == 2
 
 
 def test_as_warm_as_its_supply_a_bottle_stays_short_and_chilled_it_is_full() -> None:
