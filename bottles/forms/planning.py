@@ -39,7 +39,10 @@ class PlanForm(ActForm):
     """What the day is planned with; what a freezer takes is asked only where no place says so."""
 
     people = _whole("People who fill", 1, 20)
-    fill_minutes = _whole("Minutes a fill", 1, 240, "From connecting to the weighing with the line off; a second supply bottle shares them, and only its change comes on top.")
+    fill_minutes = _whole(
+        "Minutes a fill", 1, 240,
+        "From connecting to the weighing with the line off. A second supply bottle shares them; only its change comes on top.",
+    )  # fmt: skip
     change_minutes = _whole("Minutes to change the supply bottle", 0, 240)
     opens = _hour("Filling from")
     closes = _hour("Filling until")
