@@ -15,7 +15,7 @@ from bottles.physics.condensation import PRIOR, Condensation, between
 from bottles.physics.contents import one_phase_temperature
 from bottles.physics.filling_edge import edge_by_mass, edge_by_pressure
 from bottles.physics.joining import Transfer, line_loss
-from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, Start, start_vessel
+from bottles.physics.receiver_start import AIR, OWN_VAPOUR, VENTED, WEIGHED, Start, start_vessel
 from bottles.physics.remedies_words import SENTENCES
 from bottles.physics.transfer import held
 from bottles.physics.venting_filling import vent_while_filling
@@ -120,7 +120,9 @@ def remedies(
     -----------
     One thing is changed, the rest stays as it is. A chilled bottle that starts vented is
     vented cold; any other keeps what it holds. A supply is warmed no further than 52 °C, and
-    not so far that it's full of liquid or dry. Fuller and warmer supplies are judged as quick, or as
+    not so far that it's full of liquid or dry. What venting or purging first gains is what the
+    bottle holds more in the end, at its temperature again; a bottle weighed to hold no more than
+    its own vapour can be vented too. Fuller and warmer supplies are judged as quick, or as
     likely where it's full in the quick case anyway.
 
     Valid for
@@ -155,6 +157,9 @@ def remedies(
     receiver = receiver_at(receiver_temperature_k)
     purge = receiver_at(receiver_temperature_k, Start(VENTED, ambient_pa=begins.ambient_pa))
     vents = {AIR: PURGE, OWN_VAPOUR: VENT_FIRST}.get(begins.kind)
+    # By its weight, too, a bottle may hold no more than its own vapour: the usual empty one.
+    if begins.kind == WEIGHED and receiver.net_kg <= receiver_at(receiver_temperature_k, Start(OWN_VAPOUR)).net_kg:
+        vents = VENT_FIRST
     if begins.kind != VENTED and begins.net_kg is None:
         begins = replace(begins, net_kg=receiver.net_kg)
     room = limit_kg - receiver.net_kg
@@ -169,7 +174,7 @@ def remedies(
         return Remedies(room, told_short, (), _told("full_anyway"))
     found = _chilled(asked, short)
     if vents and purge.net_kg < limit_kg:
-        found += _purged(asked, vents, purge)
+        found += _purged(asked, short, vents, purge)
     found += _waited(asked, short) + _vented(asked, short) + _supplied(asked, short)
     worth = [each for each in found if each.fills or each.gain_kg > _WORTH * room]
     worth.sort(key=lambda each: (EFFORT.index(each.kind), (QUICK, LIKELY, EVERY).index(each.case)))
@@ -263,14 +268,20 @@ def _spare(asked: _Asked, pair: Transfer | None) -> float:
     return -1e9 if pair is None else asked.spare_pa(pair)
 
 
-def _purged(asked: _Asked, kind: str, purged: Vessel) -> list[Remedy]:
-    """What venting, or purging, the bottle to fill first would give."""
+def _purged(asked: _Asked, short: dict[str, float], kind: str, purged: Vessel) -> list[Remedy]:
+    """What venting, or purging, the bottle to fill first would give; for the cautious case alone nothing is let out."""
     now = asked.transfer
     vented = Transfer(now.source, purged, now.line_volume_m3, path=now.path, like=now)
-    after = asked.beyond(QUICK, vented)
     cost = max(now.receiver.net_kg - purged.net_kg, 0.0)
-    gain = min(after, 0.0) - min(asked.beyond(QUICK), 0.0)
-    return [Remedy(kind, QUICK, None, None, after >= 0.0, max(gain, 0.0), cost)] if gain > 0.0 else []
+    found = []
+    for case in (QUICK, LIKELY):
+        if short[case] <= 0.0:
+            continue
+        after = asked.beyond(case, vented)
+        gain = min(after, 0.0) + short[case]
+        if gain > 0.0:
+            found.append(Remedy(kind, case, None, None, after >= 0.0, gain, cost))
+    return found
 
 
 def _waited(asked: _Asked, short: dict[str, float]) -> list[Remedy]:

@@ -106,9 +106,10 @@ def _row(same: list[Remedy], words: RefillWords) -> dict[str, Any]:
         gives = FULL[first.case] if first.fills else _more(first, words)
         to = colder(first.temperature_k, words)
         what = f"Warm the supply bottle to {to} by a listed device, where local code permits it: {gives}"
+    elif first.kind == WAIT:
+        what = f"{DO[first.kind]}: {'full in the end' if first.fills else _more(first, words)}"
     else:
-        full = "full in the end" if first.kind == WAIT else FULL[first.case]
-        what = f"{DO[first.kind]}: {full if first.fills else _more(first, words)}"
+        what = f"{DO[first.kind]}: {'; '.join(_ends(same, words))}"
         if first.cost_kg > 0.0:
             what += f"; {words.small(ceil(first.cost_kg * 1000))} of nitrous is lost"
     # What a fuller supply bottle is to hold stands in its row already.
@@ -119,6 +120,14 @@ def _apart(same: list[Remedy], words: RefillWords) -> list[Remedy]:
     """Without those that read alike: then the most cautious case alone says it."""
     last = {_up(each.mass_kg, words): each for each in same}
     return [each for each in same if last[_up(each.mass_kg, words)] is each]
+
+
+def _ends(same: list[Remedy], words: RefillWords) -> list[str]:
+    """What it holds in the end: in which case it's full, and how much more in it is likely where it isn't."""
+    full = [each for each in same if each.fills]
+    rest = same[-1] if not same[-1].fills else None
+    said = [FULL[full[-1].case]] if full else []
+    return [*said, f"{words.small(floor(rest.gain_kg * 1000))} more in it at the end, {SHORT[rest.case]}"] if rest else said
 
 
 def _more(remedy: Remedy, words: RefillWords) -> str:

@@ -110,6 +110,27 @@ def test_time_helps_where_the_bottle_to_fill_is_kept_colder():
     assert (PURGE, QUICK) in by_kind(remedies(**case(12.0, receiver=25.0, start=Start("air"))))
 
 
+def test_a_bottle_weighed_to_hold_only_vapour_can_be_vented_first():
+    inputs = case(15.0, receiver=15.0, start=Start("weighed", 0.7))
+    found = by_kind(remedies(**inputs))
+    here, vented = (forecast(**{**inputs, "start": each}) for each in (inputs["start"], Start("vented")))
+    ends = [LIMIT - one.room_kg + one.likely_kg for one in (here, vented)]
+    told = found[(VENT_FIRST, LIKELY)]
+    assert told.gain_kg == pytest.approx(ends[1] - ends[0], abs=1e-3) and told.gain_kg > 0.1
+    assert told.cost_kg == pytest.approx(vented.room_kg - here.room_kg) and told.cost_kg > 0.6
+    assert found[(VENT_FIRST, QUICK)].gain_kg > told.gain_kg or found[(VENT_FIRST, QUICK)].fills
+    # With liquid in it there is more to keep than to gain.
+    assert not [each for each in remedies(**{**inputs, "start": Start("weighed", 1.5)}).remedies if each.kind == VENT_FIRST]
+
+
+def test_venting_first_is_judged_for_the_likely_case_where_a_quick_one_is_full_anyway():
+    inputs = case(receiver=-2.0, start=Start("weighed", 0.4))
+    told = remedies(**inputs)
+    assert dict(told.short_kg)[QUICK] == 0.0 < dict(told.short_kg)[LIKELY]
+    found = by_kind(told)
+    assert (VENT_FIRST, QUICK) not in found and found[(VENT_FIRST, LIKELY)].gain_kg > 0.0
+
+
 def test_they_are_sorted_by_effort():
     kinds = [each.kind for each in remedies(**case(12.0, receiver=5.0, start=Start("own vapour"))).remedies]
     assert kinds == sorted(kinds, key=[CHILL, VENT_FIRST, PURGE, WAIT, VENT_FILLING, FULLER, WARM].index)
