@@ -25,8 +25,8 @@ HIDDEN = {"condensation_prior", "near_critical"}  # said with the forecast
 UNKNOWN = "The supply bottle's weight isn't known: weigh it, then its course and its fills can be worked out."
 
 
-def details_part(found: Worked, words: RefillWords) -> dict[str, Any]:
-    """The variables of the details' part, or why there are none."""
+def details_part(found: Worked, words: RefillWords, *, begun: bool = False) -> dict[str, Any]:
+    """The variables of the details' part, or why there are none; a refill that is begun has no start to choose any more."""
     asked, answer = found.asked, found.answer
     if asked is None or answer is None:
         said = found.trouble or [f"It waits for: {', '.join(found.waits)}."]
@@ -35,18 +35,18 @@ def details_part(found: Worked, words: RefillWords) -> dict[str, Any]:
     elif answer.pair.source_range_kg is not None:
         said = [UNKNOWN]
     else:
-        return {"details": _details(asked, answer, words)}
+        return {"details": _details(asked, answer, words, begun=begun)}
     return {"details": None, "details_trouble": said}
 
 
-def _details(asked: Asked, answer: Answer, words: RefillWords) -> dict[str, Any]:
+def _details(asked: Asked, answer: Answer, words: RefillWords, *, begun: bool) -> dict[str, Any]:
     pair = answer.pair
     course = None if answer.pumped else course_over_time(pair, asked.supply.station)
     fills = None if answer.pumped else fills_ahead(pair)
     return {
         "course": course_context(course, answer, words) if course else None,
         "pumped": answer.pumped is not None,
-        "starts": [] if answer.pumped else _starts(starts_compared(pair), words), "start_head": START_HEAD,
+        "starts": [] if answer.pumped or begun else _starts(starts_compared(pair), words), "start_head": START_HEAD,
         "fills": _fills(fills, words) if fills and fills.warmed_quick.count else [], "fills_head": FILLS_HEAD,
         "fills_said": fills_said(fills) if fills else [],
         "fills_next": words.mass(round(fills.warmed_likely.then_kg * 1000)) if fills and not fills.warmed_quick.count else "",

@@ -175,7 +175,7 @@ class AnotherSupply(OfRefill):
             return self.show(form)
         found, bottle = self.worked(form), {"bottle": self.refill.bottle}  # asked while typing: one part alone
         if "course" in request.POST:
-            part = details_part(found, refill_words(request, self.shop))
+            part = details_part(found, refill_words(request, self.shop), begun=True)
             return render(request, "bottles/_forecast_details.html", bottle | part)
         return render(request, "bottles/_forecast.html", bottle | self.part(found, form))
 
@@ -211,7 +211,7 @@ class AnotherSupply(OfRefill):
         found = self.worked(form)
         context = {"form": form, "submit": self.submit} | self.context() | self.part(found, form)
         if "course" in self.request.POST:
-            context |= details_part(found, refill_words(self.request, self.shop))
+            context |= details_part(found, refill_words(self.request, self.shop), begun=True)
         return render(self.request, self.template_name, context, status=status)
 
 
