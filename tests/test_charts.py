@@ -197,8 +197,8 @@ def test_two_values_at_one_place_are_two_rows() -> None:
 def test_what_is_marked_is_told_below_the_table() -> None:
     notes = to_notes(warming())
     assert len(notes) == 3
-    assert notes[0].startswith("safety disc: Gauge 200")
-    assert notes[0].endswith("bar")
+    assert notes[0] == "safety disc: 200.0 bar"
+    assert notes[1].startswith("now: Temperature 20.0 °C, Gauge 49.5 bar")
     assert "Temperature −10.0 to 30.0 °C" in notes[2]
 
 

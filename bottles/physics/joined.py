@@ -127,7 +127,8 @@ def joined(
             codes.insert(0, "passes_limit")
     if limit is None:
         codes.append("limit_unknown")
-    codes.append("liquid" if liquid else "vapour")
+    if not liquid:
+        codes.append("vapour")
     if long.outcome.moved_kg > quick.outcome.moved_kg + _NOTHING:
         codes.append("later")
     if max(source.temperature_k, receiver.temperature_k) >= NEAR_CRITICAL:

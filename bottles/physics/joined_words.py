@@ -21,7 +21,6 @@ SENTENCES: Mapping[str, str] = {
     "equal": "Both bottles stand at one temperature and one pressure: nothing flows. Warm or chill neither while joined.",
     "equal_pressures": "Both bottles stand at one pressure: nothing flows now. It may once their temperatures change.",
     "vapour": "Vapour goes over, slowly, and condenses in the colder bottle; it doesn't stop because it is slow.",
-    "liquid": "Liquid goes over, quickly.",
     "later": (
         "The quick flow ceases early, but it isn't the end: as the bottles come back to their temperatures more goes over."
     ),

@@ -39,12 +39,14 @@ def to_notes(chart: Chart) -> list[str]:
     """Give what is marked on the chart, a phrase each: it stands below the table."""
     write = {"x": _Writer(chart, "x"), "y": _Writer(chart, "y")}
     axes = {"x": chart.x, "y": chart.y}
+    # A mark's own name says what it is: its axis is named only where the unit doesn't tell which.
+    told = bool(chart.x.unit or chart.y.unit) and chart.x.unit != chart.y.unit
     notes = []
     for mark in chart.marks:
+        given = [(name, at) for name, at in (("x", mark.x), ("y", mark.y)) if at is not None]
         places = [
-            f"{axes[name].label} {_with_unit(write[name](at), axes[name])}"
-            for name, at in (("x", mark.x), ("y", mark.y))
-            if at is not None
+            f"{'' if told and len(given) == 1 else f'{axes[name].label} '}{_with_unit(write[name](at), axes[name])}"
+            for name, at in given
         ]
         notes.append(f"{mark.name}: {', '.join(places)}")
     for band in chart.bands:

@@ -85,7 +85,7 @@ def test_the_page_tells_the_way_both_ends_and_the_warning_and_saves_nothing(desk
     acts = Act.objects.count()
     text = page(desk, works).content.decode()
     assert "Liquid flows from S-07 to T-0412." in text
-    assert "T-0412 passes its limit" in text
+    assert "T-0412 passes its limit" in text and "Liquid goes over" not in text
     for word in ("quick", "if left joined", "past its limit by", "is full of liquid from", "Shut both valves"):
         assert word in text
     assert Act.objects.count() == acts

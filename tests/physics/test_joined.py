@@ -75,7 +75,7 @@ def test_the_order_in_which_they_are_named_changes_nothing():
 def test_either_phase_goes_over_by_the_tube_and_as_much_in_the_end(liquid, phase):
     told = joined(supply(liquid_pickup=liquid), small())
     assert told.phase == phase
-    assert phase in codes(told)
+    assert ("vapour" in codes(told)) is not liquid  # how slowly vapour goes over is worth a sentence
     assert told.long.outcome.moved_kg == pytest.approx(joined(supply(), small()).long.outcome.moved_kg, rel=1e-6)
 
 
