@@ -6,7 +6,7 @@ import uuid
 from typing import Any
 
 from django.core.exceptions import PermissionDenied
-from django.db.models import QuerySet
+from django.db.models import Count, Max, QuerySet
 from django.http import HttpRequest, HttpResponse, HttpResponseRedirect
 from django.shortcuts import get_object_or_404, render
 from django.urls import reverse
@@ -23,12 +23,14 @@ KINDS = {"demo.fill": "Writing the demo's past", "ledger.check": "Checking the b
          "plan.make": "Making the day's fill plan"}  # fmt: skip
 RUNNING = ("queued", "running")
 LATEST = 40
+FOUND_SOMETHING = {"kind": "ledger.check", "result__count__gt": 0}
 
 
 @allow(MANAGERS, room="office")
 def job_list(request: HttpRequest) -> HttpResponse:
     """The latest work, and the way to check the books at once."""
     shop = Shop.objects.get()
+    found, many = latest_work()
     rows = [
         {
             "url": reverse("rooms:job", args=[job.pk]),
@@ -38,10 +40,25 @@ def job_list(request: HttpRequest) -> HttpResponse:
             "when": f"{job.asked_at.astimezone(clock.zone(shop)):%Y-%m-%d %H:%M}",
             "person": full_name(job.asked_by),
             "result": result_words(job),
+            "many": many.get(job.pk, 1),
         }
-        for job in Job.objects.select_related("asked_by").order_by("-id")[:LATEST]
+        for job in found
     ]
     return render(request, "rooms/jobs.html", {"rows": rows})
+
+
+def latest_work() -> tuple[list[Job], dict[int, int]]:
+    """The latest work, and for how many of its kind a piece stands.
+
+    What is done again and again would bury the rest: the last of each kind stands for all that went
+    well. What is going on, failed, was stopped or found something stays by itself.
+    """
+    every = Job.objects.select_related("asked_by").order_by("-id")
+    alone = [*every.exclude(state="done")[:LATEST], *every.filter(state="done", **FOUND_SOMETHING)[:LATEST]]
+    done = Job.objects.filter(state="done").exclude(pk__in=[job.pk for job in alone])
+    many = {one["last"]: one["many"] for one in done.order_by().values("kind").annotate(last=Max("pk"), many=Count("pk"))}
+    found = sorted([*alone, *every.filter(pk__in=many)], key=lambda job: job.pk, reverse=True)
+    return found[:LATEST], many
 
 
 @allow(EVERYONE, room="office")
@@ -132,6 +149,11 @@ def result_words(found: Job) -> str:
         if not result.get("count"):
             return "The books agree: each account with its movements, all accounts with nothing."
         return f"{result['count']} differences: " + "; ".join(differences)
+    if found.kind == "learning.fit" and found.state == "done" and found.result:
+        refills, new = found.result["refills"], found.result["new"]
+        told = f"{refills} {'refill tells' if refills == 1 else 'refills tell'} how much condenses"
+        laid = "no figure changed" if not new else "1 figure is new" if new == 1 else f"{new} figures are new"
+        return f"{told}; {laid}."
     if found.kind == "plan.make" and found.state == "done":
         result = found.result or {}
         return "A later plan answers for it." if result.get("superseded") else f"The plan is made, for {result['bottles']} bottles."

@@ -55,3 +55,32 @@ def test_the_manager_stops_work(shop: Any, manager: Any, client_of: Any) -> None
     job.refresh_from_db()
     assert job.cancel_asked
     assert "stopping after this one" in client_of(manager).get(answer.url).content.decode()
+
+
+def test_what_is_done_again_and_again_is_one_row_with_its_count_and_buries_nothing(
+    shop: Any, manager: Any, client_of: Any, django_assert_max_num_queries: Any
+) -> None:
+    def job(kind: str, number: int, state: str = "done", **more: Any) -> Job:
+        return Job.objects.create(kind=kind, key=f"{kind} {number}", state=state, **more)
+
+    plan = job("plan.make", 1, result={"bottles": 7})
+    odd = job("ledger.check", 1, result={"count": 2, "differences": ["T-0007", "T-0008"]})
+    job("ledger.check", 2, result={"count": 0, "differences": []})
+    failed = [job("learning.fit", number, "failed", note="no disc left") for number in (1, 2)]
+    learned = [job("learning.fit", 10 + number, result={"refills": number, "new": 0}) for number in range(60)]
+    waits = job("learning.fit", 99, "queued")
+    client = client_of(manager)
+    answer = client.get(reverse("rooms:jobs"))
+    rows = [(row["url"].rstrip("/").split("/")[-1], row["state"], row["many"]) for row in answer.context["rows"]]
+    checked = Job.objects.get(key="ledger.check 2")
+    assert rows == [
+        (str(one.pk), state, many) for one, state, many in (
+            (waits, "queued", 1), (learned[-1], "done", 60), (failed[1], "failed", 1), (failed[0], "failed", 1),
+            (checked, "done", 1), (odd, "done", 1), (plan, "done", 1),
+        )
+    ]  # fmt: skip
+    html = answer.content.decode()
+    assert "59 refills tell how much condenses; no figure changed. · the latest of 60" in html
+    assert html.count("the latest of") == 1 and "2 differences: T-0007; T-0008" in html
+    with django_assert_max_num_queries(20):
+        client.get(reverse("rooms:jobs"))
