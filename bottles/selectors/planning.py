@@ -3,17 +3,19 @@
 from __future__ import annotations
 
 from collections import defaultdict
+from collections.abc import Collection
 from dataclasses import dataclass
 from datetime import date, datetime, timedelta
 from math import ceil
 
-from bottles.models import Custody, DayPlan, DayPlanResult, Line
+from bottles.models import Custody, DayPlan, DayPlanResult, Line, Standing
 from bottles.physics.chilling import FREEZER, ICED_WATER, Surroundings, temperature_after, time_to_reach
 from bottles.physics.heating import room_loss, seconds_to_reach
 from bottles.physics.vessel import COLDEST, Vessel
 from bottles.rules.planning.problem import Start
 from bottles.rules.planning.told import TOLD
 from bottles.selectors.books import STANDS, day_start
+from bottles.selectors.register import owner_words
 from shop.base import clock
 from shop.base.models import Job, Place, Shop
 from shop.physics.errors import PhysicsError
@@ -61,6 +63,12 @@ def latest_question() -> DayPlan | None:
 def latest_result(plan: DayPlan) -> DayPlanResult | None:
     """Return the latest working out of today's plan: of this question, or of one before it until this one is done."""
     return DayPlanResult.objects.filter(plan__day=plan.day, result__told=TOLD).select_related("plan").order_by("-id").first()
+
+
+def owners_of(codes: Collection[str]) -> dict[str, str]:
+    """Return whose bottles are now, in words, by code."""
+    rows = Standing.objects.filter(bottle__code__in=codes).select_related("bottle", "ownership__customer")
+    return {row.bottle.code: owner_words(row.ownership) for row in rows}
 
 
 def making(plan: DayPlan) -> Job | None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from math import hypot
 from typing import Any
 
 from bottles.rules.planning.ordering import order_by, pace_of
@@ -19,12 +20,16 @@ def order_told(day: Day, shop: Shop, lead_days: int) -> dict[str, Any]:
     today = clock.today(shop)
     used, weekdays = use_by_day(shop, today)
     pace = pace_of(used)
-    found = order_by(usable, pace, today=today, weekdays=weekdays, lead_days=lead_days)
+    error = round(hypot(*(one.unsure_kg for one in day.sources)) * 1000)
+    found, sooner = (
+        order_by(stock, pace, today=today, weekdays=weekdays, lead_days=lead_days) for stock in (usable, max(0, usable - error))
+    )
     return {
-        "usable_g": usable, "lead_days": lead_days,
+        "usable_g": usable, "error_g": error, "lead_days": lead_days,
         "pace": {"grams": pace.grams, "error_g": pace.error_g, "days": pace.days} if pace else None,
         "lasts_until": found.lasts_until.isoformat() if found else None,
         "soonest": found.soonest.isoformat() if found else None,
         "latest": found.latest.isoformat() if found and found.latest else None,
         "order_by": found.order_by.isoformat() if found else None,
+        "order_by_if_less": sooner.order_by.isoformat() if sooner else None,
     }  # fmt: skip

@@ -16,6 +16,7 @@ from bottles.rules.fitness import Judgement
 from bottles.rules.planning.problem import Source
 from bottles.selectors.contents import Holding, holdings
 from bottles.selectors.filling_facts import below_tube_m3, takes_liquid, walls_by
+from bottles.selectors.gauge_readings import ByGauge, least_by_gauge
 from bottles.selectors.judging import Rulebook
 from bottles.services.stations import line_volume_m3
 from shop.physics.errors import PhysicsError
@@ -32,7 +33,9 @@ def supplies_on_hand(
     judged = book.judge_all(bottles, {one.pk: one for one in standings})
     held = holdings(bottles, standings)
     line = max((line_volume_m3(station) for station in stations), default=0.0)
-    found, not_counted = [], []
+    found: list[Source] = []
+    not_counted: list[dict[str, Any]] = []
+    by_gauge = least_by_gauge([key for key, holding in held.items() if holding.grams is None])
     for one in standings:
         supply = hanging.get(one.pk)
         bottle, holding = one.bottle, held[one.pk]
@@ -40,7 +43,7 @@ def supplies_on_hand(
         if supply is not None and supply.station_id not in places:
             why = f"{supply.station} has no scale: nothing is filled there."
         if why or bottle.capacity_ml is None or holding.grams is None:
-            not_counted.append({"code": bottle.code, "why": why})
+            not_counted.append(_not_counted(bottle, why, by_gauge.get(one.pk)))
             continue
         walls = walls_by(bottle, one.tare).heat_j_k
         inverted = supply is not None and supply.inverted
@@ -51,13 +54,13 @@ def supplies_on_hand(
                 below_tube_m3=below_tube_m3(bottle, inverted=inverted),
             )  # fmt: skip
         except PhysicsError as error:
-            not_counted.append({"code": bottle.code, "why": error.sentence})
+            not_counted.append(_not_counted(bottle, error.sentence))
             continue
         found.append(
             Source(
                 bottle.code, vessel.volume_m3, vessel.wall_j_k, vessel.net_kg, vessel.temperature_k,
                 None if supply is None else places[supply.station_id], vessel.liquid_pickup, vessel.below_tube_m3,
-                line if supply is None else line_volume_m3(supply.station),
+                line if supply is None else line_volume_m3(supply.station), holding.error_g / 1000,
             )
         )  # fmt: skip
     return found, not_counted
@@ -74,12 +77,20 @@ def _supplies(connected: Sequence[int]) -> QuerySet[Standing]:
     )
 
 
+def _not_counted(bottle: Bottle, why: str, by_gauge: ByGauge | None = None) -> dict[str, Any]:
+    """A supply bottle that isn't counted on, why, and what it holds at least where only a gauge tells."""
+    return {
+        "code": bottle.code, "why": why, "least_g": by_gauge.least_g if by_gauge else None,
+        "read_at": by_gauge.read_at.isoformat() if by_gauge else None,
+    }  # fmt: skip
+
+
 def _why_not_emptied(judgement: Judgement, bottle: Bottle, holding: Holding) -> str:
     if judgement.may_be_emptied != "yes":
         why = [reason for reason in judgement.reasons if "emptying" in reason.about and reason.severity != "explains"]
         return f"{why[0].sentence} {why[0].next_step}".strip() if why else "It may not be emptied into another bottle."
     if holding.grams is None:
-        return "Nobody weighed it: what it holds isn't known. Weigh it."
+        return "Nobody weighed it: what it holds isn't known. Weigh it, then it's counted on."
     if bottle.capacity_ml is None:
         return "Its water capacity isn't written down. Complete its record."
     return ""

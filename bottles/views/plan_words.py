@@ -9,6 +9,7 @@ from django.urls import reverse
 from django.utils.safestring import mark_safe
 
 from bottles.models import DayPlanResult
+from bottles.selectors.planning import owners_of
 from bottles.views.reason_rows import in_own_units
 from bottles.views.refill_words import RefillWords
 from shop.base import clock
@@ -55,6 +56,8 @@ class PlanWords:
     def __init__(self, kept: DayPlanResult, words: RefillWords, shop: Shop) -> None:
         self.kept, self.words, self.shop = kept, words, shop
         self.told: dict[str, Any] = kept.result
+        told = self.told
+        self._owners = owners_of([one["bottle"] for name in ("fills", "unfilled", "left_out") for one in told[name]])
         self.zone = clock.zone(shop)
         self.zero = datetime.fromisoformat(self.told["zero"])
         began = self.zero.astimezone(self.zone)
@@ -69,9 +72,10 @@ class PlanWords:
             "proven": self._proven(), "promises": self._promises(), "fills": [self._fill(one) for one in told["fills"]],
             "unfilled": [self._unfilled(one) for one in told["unfilled"]],
             "left_out": [
-                one | {"sentence": in_own_units(one["sentence"], self.words), "url": _of(one["bottle"])} for one in told["left_out"]
+                one | {"sentence": in_own_units(one["sentence"], self.words), "url": _of(one["bottle"]), "owner": self._owner(one)}
+                for one in told["left_out"]
             ],
-            "not_weighed": told["not_weighed"], "not_counted": [one | {"url": _of(one["code"])} for one in told["not_counted"]],
+            "not_weighed": told["not_weighed"], "not_counted": [self._not_counted(one) for one in told["not_counted"]],
             "sources": self._sources(), "empties": [self._empty(one) for one in told["empties"]], "order": self._order(),
             "pumped": told["pumped"], "is_prior": told["is_prior"], "room": self.words.temperature(told["room_mk"]),
             "colds": [self._cold(cold) for cold in told["colds"]],
@@ -143,7 +147,7 @@ class PlanWords:
         if unsure:
             done = f"{done}, may end {self.words.small(unsure)} short of good enough"
         return {
-            "code": one["bottle"], "url": _of(one["bottle"]), "promised_s": one["promised_s"],
+            "code": one["bottle"], "url": _of(one["bottle"]), "owner": self._owner(one), "promised_s": one["promised_s"],
             "promised": self._at(one["promised_s"]), "kind": "no" if breaks else "after" if unsure else "yes",
             "word": ("Late already" if one["promised_s"] < 0 else "Will break") if breaks else "Likely kept" if unsure else "Kept",
             "how": ", ".join([part for part in (done, *breaks) if part]),
@@ -154,14 +158,15 @@ class PlanWords:
         percent = round(100 * one["final_g"] / one["target_g"])
         span, likely = words.span(one["low_g"], one["high_g"]), words.mass(one["final_g"])
         return {
-            "code": one["bottle"], "url": _of(one["bottle"]), "at": self._at(draws[0]["from_s"]),
+            "code": one["bottle"], "url": _of(one["bottle"]), "owner": self._owner(one), "at": self._at(draws[0]["from_s"]),
             "until": self._at(draws[-1]["until_s"]), "chill": self._chill(one),
             "goes_on": one["goes_on"], "why": [self._why(one, draw) for draw in one["draws"] if draw["quick_g"] is not None],
             "kind": "yes" if one["good"] else "after", "word": f"{percent} % of target",
             "holds": f"{likely}{'' if span == likely else f' ({span})'} of {words.mass(one['target_g'])}",
             "draws": [
                 {
-                    "at": self._at(draw["from_s"]), "source": draw["source"], "station": self.told["stations"][draw["station"]],
+                    "at": self._at(draw["from_s"]), "source": draw["source"], "url": _of(draw["source"]),
+                    "station": self.told["stations"][draw["station"]],
                     "moved": words.small(draw["moved_g"]), "changed": draw["changed"],
                 }
                 for draw in draws
@@ -197,7 +202,23 @@ class PlanWords:
         best = ""
         if one["best_g"] > one["start_g"] and one["why"] not in ("no supply", "no station"):
             best = f"Alone and first it would come to some {round(100 * one['best_g'] / one['target_g'])} % of its target."
-        return {"code": one["bottle"], "url": _of(one["bottle"]), "why": WHY[one["why"]], "best": best}
+        return {
+            "code": one["bottle"], "url": _of(one["bottle"]), "owner": self._owner(one), "why": WHY[one["why"]], "best": best,
+        }  # fmt: skip
+
+    def _owner(self, one: dict[str, Any]) -> str:
+        return self._owners.get(one["bottle"], "")
+
+    def _not_counted(self, one: dict[str, Any]) -> dict[str, Any]:
+        """Why a supply bottle isn't counted on, what it holds at least, and how to change that."""
+        why = in_own_units(one["why"], self.words)
+        if one["least_g"] is not None:
+            read_at = datetime.fromisoformat(one["read_at"]).astimezone(self.zone)
+            why = (
+                f"Known by its gauge alone, read {read_at:%a} {read_at.day} {read_at:%b %H:%M}: it holds at least "
+                f"{self.words.mass(one['least_g'])}, if that was vapour only, and may hold more. Weigh it, then it's counted on."
+            )
+        return {"code": one["code"], "url": _of(one["code"]), "why": why}
 
     def _sources(self) -> dict[str, Any]:
         """The supplies running down: a table of each draw, and the same as a chart."""
@@ -240,20 +261,28 @@ class PlanWords:
         words, order = self.words, self.told["order"]
         if not order["usable_g"]:
             return {"head": "Order today", "how": "Nothing can be drawn as liquid from the supply bottles that can be counted on."}
-        usable = f"About {words.mass(order['usable_g'])} can still be drawn as liquid from the supply bottles on hand"
+        there = words.mass(order["usable_g"], plus_minus_g=order["error_g"])
+        usable = f"About {there} can still be drawn as liquid from the supply bottles on hand"
         pace = order["pace"]
         if pace is None:
             return {"head": "No order day can be given", "how": f"{usable}. Too little was filled in recent weeks to tell a pace."}
         told = f"{words.mass(pace['grams'], plus_minus_g=pace['error_g'])} an open day, from {pace['days']} open days"
+        less = order["order_by_if_less"]
+        if_less = ""
+        if less is not None and less != order["order_by"]:
+            if_less = (
+                f" Were there {words.mass(order['error_g'])} less, which weights and books don't rule out, the last day to order "
+                f"would be {_day(date.fromisoformat(less))}. Weigh the supply bottles to know better."
+            )
         if order["order_by"] is None:
-            return {"head": "No need to order yet", "how": f"{usable}. At {told}, it lasts for longer than a year."}
+            return {"head": "No need to order yet", "how": f"{usable}. At {told}, it lasts for longer than a year.{if_less}"}
         today = clock.today(self.shop)
         by, likely, soonest = (date.fromisoformat(order[name]) for name in ("order_by", "lasts_until", "soonest"))
-        head = "Order today" if by <= today else f"Order by {by:%A} {by.day} {by:%b}"
-        until = f"{likely:%A} {likely.day} {likely:%b}"
-        early = "" if soonest == likely else f", at the soonest {soonest:%A} {soonest.day} {soonest:%b}"
+        head = "Order today" if by <= today else f"Order by {_day(by)}"
+        until = _day(likely)
+        early = "" if soonest == likely else f", at the soonest {_day(soonest)}"
         lead = f"the supplier takes {order['lead_days']} days"
-        return {"head": head, "how": f"{usable}. At {told}, that lasts until {until}{early}; {lead}."}
+        return {"head": head, "how": f"{usable}. At {told}, that lasts until {until}{early}; {lead}.{if_less}"}
 
     def _warming(self) -> str:
         hours = sorted(one["warming_s"] / 3600 for one in self.told["sources"])
@@ -264,6 +293,10 @@ class PlanWords:
 
 def _of(code: str) -> str:
     return reverse("bottles:bottle", args=[code])
+
+
+def _day(day: date) -> str:
+    return f"{day:%A} {day.day} {day:%b}"
 
 
 def _minutes(minutes: int) -> str:

@@ -11,11 +11,12 @@ from typing import Any
 import pytest
 from django.urls import reverse
 
-from bottles.models import DayPlan, DayPlanResult, Standing, Supply
+from bottles.models import DayPlan, DayPlanResult, Line, Movement, Standing, Supply
 from bottles.services import refill_steps
 from bottles.services.plan_again import KIND
 from bottles.services.plan_day import gather
 from bottles.services.plan_waiting import wants_filling
+from bottles.services.posting import account_of
 from shop.base import clock
 from shop.base.models import Job, Place
 from tests import factories
@@ -93,6 +94,67 @@ def test_a_supply_bottle_that_nobody_weighed_is_not_counted_on(works: Works) -> 
     result = told(plan(works))
     assert [one["code"] for one in result["not_counted"]] == ["S-09"]
     assert "Weigh it" in result["not_counted"][0]["why"]
+
+
+def test_a_supply_bottle_known_by_gauge_alone_says_what_it_holds_at_least_and_how_to_count_on_it(
+    works: Works, client_of: Any
+) -> None:  # fmt: skip
+    """Vapour alone may show 49.5 bar at 20 °C; what was drawn since is taken off."""
+    supply = works.connected("S-09", net_g=None, last_held="nitrous")
+    refill = works.open(supply=supply)
+    first = told(plan(works))["not_counted"]
+    vapour_g = 0.029 * 158.1e3  # 158.1 kg/m3 of saturated vapour at 20 °C, from memory
+    assert [one["code"] for one in first] == ["S-09"] and 0.85 * vapour_g < first[0]["least_g"] < vapour_g
+    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
+    assert "Known by its gauge alone, read Tue 3 Mar 09:00: it holds at least" in html and "Weigh it, then it" in html
+    refill_steps.weigh_refill(key=key(), person=works.person, refill=refill, weight=works.weight(1_300, line_off=False))
+    second = told(plan(works))["not_counted"]
+    assert second[0]["least_g"] == first[0]["least_g"] - 1_000
+    refill_steps.weigh_refill(key=key(), person=works.person, refill=refill, weight=works.weight(1_300), ended_by="by hand")
+    works.weigh(supply.bottle, 33_500 + 12_000, happened_at=NOW, reason="first weighing")
+    assert not told(plan(works))["not_counted"]
+
+
+def test_rows_name_the_owner_and_lead_to_the_supply_bottles(works: Works, client_of: Any) -> None:
+    customer = factories.CustomerFactory(name="Ostrander")
+    factories.ConsentFactory(customer=customer)
+    wants(factories.owned(works.bottle, customer), NOW + timedelta(hours=4))
+    wants(works.bottle_to_fill("T-0413"))
+    wants(factories.owned(works.bottle_to_fill("T-0414"), factories.CustomerFactory(name="Farrow")))  # never asked
+    result = told(plan(works))
+    assert len(result["fills"]) == 2 and len(result["left_out"]) == 1
+    html = " ".join(client_of(works.person).get(reverse("bottles:plan")).content.decode().split())
+    assert "Ostrander, promised for 13:00" in html and html.count("Ostrander") == 2
+    assert "the shop <br> from" in html and "Farrow <br> Not known: whether its owner agrees." in html
+    assert f'<a href="{reverse("bottles:bottle", args=["S-07"])}">S-07</a>' in html
+
+
+def used(works: Works, grams_a_day: int) -> None:
+    """As much went out of the supply bottles on each weekday of the last two weeks, from another bottle that is gone."""
+    gone = works.connected("S-01").bottle
+    out, into = account_of(gone), account_of(works.bottle_to_fill("T-0001"))
+    for days in range(1, 15):
+        day = NOW - timedelta(days=days)
+        if day.weekday() < 5:
+            movement = Movement.objects.create(act=factories.ActFactory(), kind="refill", happened_at=day)
+            Line.objects.create(movement=movement, act=movement.act, source=out, target=into, grams=grams_a_day, origin="weighed")
+    Supply.objects.filter(bottle=gone).delete()
+    Standing.objects.filter(bottle=gone).update(is_in=False)
+
+
+@pytest.mark.parametrize(
+    ("grams_a_day", "by", "if_less"), [(1_800, "2026-03-09", "2026-03-09"), (2_083, "2026-03-09", "2026-03-06")]
+)
+def test_the_order_day_tells_what_the_stock_may_be_off_by_where_that_moves_it(
+    works: Works, client_of: Any, grams_a_day: int, by: str, if_less: str
+) -> None:  # fmt: skip
+    """10.418 kg can be drawn, known to ± 24 g; five days at 2.083 kg take 10.415 kg."""
+    used(works, grams_a_day)
+    order = told(plan(works, lead_days=1))["order"]
+    assert (order["order_by"], order["order_by_if_less"], order["error_g"]) == (by, if_less, 24)
+    html = client_of(works.person).get(reverse("bottles:plan")).content.decode()
+    assert "Order by Monday 9 Mar" in html and "±" in html
+    assert ("the last day to order would be Friday 6 Mar" in html) == (by != if_less)
 
 
 def test_a_bottle_that_waits_for_a_test_is_not_planned(works: Works) -> None:

@@ -59,6 +59,7 @@ class Source:
     liquid: bool = True
     below_tube_m3: float = 0.0
     line_m3: float = 0.0
+    unsure_kg: float = 0.0  # how far what it holds may be off
 
 
 @dataclass(frozen=True, slots=True)

@@ -16,7 +16,7 @@ from bottles.rules.planning.spans import Before, span_of
 from shop.physics.errors import PhysicsError
 from shop.physics.fluid import engine
 
-TOLD = 2  # the form in which a plan is told; one kept in another form isn't shown
+TOLD = 3  # the form in which a plan is told; one kept in another form isn't shown
 _MIDDLING = 12  # bottles: up to here it's worth looking longer, where nobody waits for the page
 _LONGER_LOOKED_AT, _LONGER_TRANSFERS = 60_000, 12_000
 _AT_ONCE = 3_000  # partial plans, while somebody waits for the page
