@@ -6,8 +6,9 @@ from collections.abc import Iterator
 from datetime import UTC, datetime, timedelta
 from typing import Any
 
-from bottles.models import DayPlan, DayPlanResult, Standing
+from bottles.models import DayPlan, DayPlanResult, Line, Movement, Standing, Supply
 from bottles.services import planning
+from bottles.services.posting import account_of
 from shop.base import clock
 from shop.base.models import Place, Shop
 from tests import factories
@@ -39,6 +40,19 @@ def told(plan: DayPlan) -> dict[str, Any]:
 def many(works: Works, count: int = 9) -> None:
     for number in range(count):
         wants(works.bottle_to_fill(f"T-{600 + number}"))
+
+
+def used(works: Works, grams_a_day: int) -> None:
+    """As much went out of the supply bottles on each weekday of the last two weeks, from another bottle that is gone."""
+    gone = works.connected("S-01").bottle
+    out, into = account_of(gone), account_of(works.bottle_to_fill("T-0001"))
+    for days in range(1, 15):
+        day = NOW - timedelta(days=days)
+        if day.weekday() < 5:
+            movement = Movement.objects.create(act=factories.ActFactory(), kind="refill", happened_at=day)
+            Line.objects.create(movement=movement, act=movement.act, source=out, target=into, grams=grams_a_day, origin="weighed")
+    Supply.objects.filter(bottle=gone).delete()
+    Standing.objects.filter(bottle=gone).update(is_in=False)
 
 
 def a_morning(shop: Shop, person: Any) -> Iterator[Works]:

@@ -11,16 +11,15 @@ from typing import Any
 import pytest
 from django.urls import reverse
 
-from bottles.models import DayPlan, DayPlanResult, Line, Movement, Standing, Supply
+from bottles.models import DayPlan, DayPlanResult, Standing, Supply
 from bottles.services import refill_steps
 from bottles.services.plan_again import KIND
 from bottles.services.plan_day import gather
 from bottles.services.plan_waiting import wants_filling
-from bottles.services.posting import account_of
 from shop.base import clock
 from shop.base.models import Job, Place
 from tests import factories
-from tests.bottles.of_plan import INPUTS, NOW, a_morning, many, plan, told, wants
+from tests.bottles.of_plan import INPUTS, NOW, a_morning, many, plan, told, used, wants
 from tests.bottles.of_refill import Works, key
 
 pytestmark = pytest.mark.django_db
@@ -127,19 +126,6 @@ def test_rows_name_the_owner_and_lead_to_the_supply_bottles(works: Works, client
     assert "Ostrander, promised for 13:00" in html and html.count("Ostrander") == 2
     assert "the shop <br> from" in html and "Farrow <br> Not known: whether its owner agrees." in html
     assert f'<a href="{reverse("bottles:bottle", args=["S-07"])}">S-07</a>' in html
-
-
-def used(works: Works, grams_a_day: int) -> None:
-    """As much went out of the supply bottles on each weekday of the last two weeks, from another bottle that is gone."""
-    gone = works.connected("S-01").bottle
-    out, into = account_of(gone), account_of(works.bottle_to_fill("T-0001"))
-    for days in range(1, 15):
-        day = NOW - timedelta(days=days)
-        if day.weekday() < 5:
-            movement = Movement.objects.create(act=factories.ActFactory(), kind="refill", happened_at=day)
-            Line.objects.create(movement=movement, act=movement.act, source=out, target=into, grams=grams_a_day, origin="weighed")
-    Supply.objects.filter(bottle=gone).delete()
-    Standing.objects.filter(bottle=gone).update(is_in=False)
 
 
 @pytest.mark.parametrize(
