@@ -71,6 +71,23 @@ def test_the_desk_plans_the_day_and_the_plan_follows_a_logged_refill(
     expect(order).to_contain_text("T-0413")
 
 
+def test_on_paper_a_plan_keeps_its_rows_and_loses_what_can_only_be_pressed(new_page: Callable[..., Page], desk: Desk) -> None:
+    page = new_page()
+    steps.sign_in(page, "front desk")
+    page.goto("/plan/new")
+    plan(page)
+    again, why = page.get_by_role("link", name="Plan anew"), page.get_by_text("Why so much").first
+    expect(again).to_be_visible()
+    page.emulate_media(media="print")
+    expect(again).to_be_hidden()
+    expect(why).to_be_hidden()
+    expect(page.get_by_role("region", name="In this order")).to_contain_text("stop by the scale, never by this plan")
+    page.emulate_media(media="screen")
+    why.click()
+    page.emulate_media(media="print")
+    expect(why).to_be_visible()
+
+
 def test_a_plan_is_stopped_while_it_is_being_made_and_the_last_one_stays(new_page: Callable[..., Page], desk: Desk) -> None:
     page = new_page()
     steps.sign_in(page, "front desk")
