@@ -15,8 +15,9 @@ from shop.charts.shapes import Box, Line, Marker, Text
 from shop.charts.svg import to_svg
 from shop.charts.table import describe, to_notes, to_rows
 from shop.charts.ticks import day_scale, decimals_for, number_scale, write_number
+from tests.examples import times
 
-FEW = settings(max_examples=50, deadline=None)
+FEW = settings(max_examples=times(50), deadline=None)
 SVG = "{http://www.w3.org/2000/svg}"
 NUMBERS = st.floats(-1e6, 1e6).map(lambda value: round(value, 3))
 DAY = date(2026, 11, 30).toordinal()

@@ -26,6 +26,7 @@ from bottles.views.helps_words import colder, helps_context
 from bottles.views.refill_words import RefillWords
 from shop.physics.errors import PhysicsError
 from shop.physics.formatting import unit_system
+from tests.examples import times
 
 WORDS = RefillWords(unit_system("metric"), 101_325.0)
 AMERICAN = RefillWords(unit_system("us"), 101_325.0)
@@ -64,7 +65,7 @@ def written(two: Pair) -> str:
     return " ".join([*said, str(fills_ahead(two)), str(starts_compared(two))])
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(
     net=st.floats(0.05, 19.0), supply=st.floats(-39.0, 51.0), bottle=st.floats(-39.0, 51.0),
     kind=st.sampled_from([VENTED, OWN_VAPOUR, AIR, WEIGHED]), held=st.floats(0.0, 5.0),

@@ -31,6 +31,7 @@ from shop.base.errors import Refusal
 from shop.base.models import Shop
 from shop.cars.models import Car
 from tests.bottles import books as b
+from tests.examples import times
 
 AMOUNTS = st.integers(1, 3_000)
 NETS = st.integers(0, 12_000)
@@ -186,7 +187,8 @@ def test_any_sequence_keeps_the_books():
     run_state_machine_as_test(
         InOne,
         settings=settings(
-            max_examples=20, stateful_step_count=25, deadline=None, suppress_health_check=list(HealthCheck), derandomize=True,
+            max_examples=times(20), stateful_step_count=25, deadline=None,
+            suppress_health_check=list(HealthCheck), derandomize=True,
             phases=[Phase.generate],  # a failure prints its steps; making them fewer takes minutes
         ),
     )

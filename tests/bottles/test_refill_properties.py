@@ -34,6 +34,7 @@ from shop.cars.models import Car
 from shop.physics.errors import PhysicsError
 from tests.bottles import books as b
 from tests.bottles.of_refill import SUPPLY_TARE_G, TARE_G, Works, grams, key
+from tests.examples import times
 
 BEGAN = datetime(2026, 3, 3, 8, 0, tzinfo=UTC)
 NETS = st.integers(0, 5_200)
@@ -220,7 +221,8 @@ def test_any_sequence_of_refills_keeps_the_books() -> None:
     run_state_machine_as_test(
         InOne,
         settings=settings(
-            max_examples=12, stateful_step_count=20, deadline=None, suppress_health_check=list(HealthCheck), derandomize=True,
+            max_examples=times(12), stateful_step_count=20, deadline=None,
+            suppress_health_check=list(HealthCheck), derandomize=True,
             phases=[Phase.generate],  # a failure prints its steps; making them fewer takes minutes
         ),
     )

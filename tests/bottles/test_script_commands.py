@@ -13,6 +13,7 @@ from bottles.management.for_scripts import NOT_COMPUTED, ScriptCommand
 from manage import FOR_SCRIPTS
 from shop.physics import fluid
 from tests.bottles.of_scripts import KEYS, OBJECT, answer, codes, read, refusal, run, words
+from tests.examples import times
 from tests.physics.reference import rows
 
 EMPTY = "receiver_net_kg (empty: vapour at 1 atm)"
@@ -329,7 +330,7 @@ def typed(draw):
     return name, words(name, **found)
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=times(150), deadline=None)
 @given(typed())
 def test_whatever_is_typed_it_answers_or_refuses_in_json(case):
     name, options = case

@@ -24,6 +24,7 @@ from bottles.physics.chilling import (
 from bottles.physics.heating import room_loss
 from bottles.physics.vessel import Vessel, wall_heat
 from shop.physics.errors import OutOfRange, PhysicsError
+from tests.examples import times
 
 VOLUME, WALL = 6.8e-3, wall_heat("aluminium", 5.9)
 
@@ -115,7 +116,7 @@ def test_targets_and_times_out_of_range_are_refused():
             question()
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(
     st.floats(0.0, 5.5), st.floats(-40.0, 52.0), st.floats(-40.0, 52.0), st.sampled_from(sorted(TRANSFER)),
     st.floats(-30.0, 40.0), st.sampled_from([(3e-4, 300.0), (VOLUME, WALL), (0.06, 3e4)]),

@@ -16,6 +16,7 @@ from bottles.physics.contents import (
 )
 from shop.physics.errors import OutOfRange
 from shop.physics.fluid import ATMOSPHERE, saturation_at_temperature, saturation_pressure
+from tests.examples import times
 from tests.physics.reference import rows
 
 CAPACITY = 0.029
@@ -116,7 +117,7 @@ def test_above_the_critical_point_there_is_neither_liquid_nor_vapour():
     assert "near_critical" in codes(read(36, 70))
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=times(200), deadline=None)
 @given(
     st.floats(-40.0, 52.0), st.floats(0.0, 300.0), st.none() | st.floats(0.0, 20.0), st.none() | st.floats(5.0, 22.0)
 )
@@ -131,7 +132,7 @@ def test_any_reading_gets_an_answer_or_a_sentence(celsius, bar, net, limit):
     assert told.region in {"saturated", "vapour", "liquid-full", "supercritical", "contradictory"}
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=times(200), deadline=None)
 @given(st.floats(-40.0, 51.0), st.floats(0.02, 0.74))
 def test_a_true_reading_never_contradicts_its_weight(celsius, fill):
     net = fill * CAPACITY * 1e3

@@ -12,6 +12,7 @@ from bottles.physics.forecast import forecast
 from bottles.physics.receiver_start import Start, start_vessel
 from bottles.physics.transfer import Transfer
 from bottles.physics.vessel import Vessel, wall_heat
+from tests.examples import times
 
 LIMIT, VOLUME, WALL = 4.624, 6.8e-3, wall_heat("aluminium", 5.9)
 
@@ -24,7 +25,7 @@ def vented(celsius):
     return start_vessel(volume_m3=VOLUME, wall_j_k=WALL, temperature_k=celsius + 273.15, start=Start())
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(
     st.floats(0.1, 20.0), st.floats(-20.0, 45.0), st.floats(-30.0, 40.0), st.sampled_from([0.0, 5e-5]),
     st.floats(0.0, 1.0), st.booleans(),

@@ -18,8 +18,9 @@ from bottles.physics.filling import (
 )
 from shop.physics.errors import OutOfRange
 from shop.physics.units import parse_mass
+from tests.examples import times
 
-FEW = settings(max_examples=50, deadline=None)
+FEW = settings(max_examples=times(50), deadline=None)
 WATERS = st.sampled_from([US_WATER, P200_WATER])
 RATIOS = st.integers(50, 80).map(lambda percent: f"0.{percent}")
 

@@ -16,6 +16,7 @@ from bottles.physics.receiver_start import Start, start_vessel
 from bottles.physics.transfer import FILL_LIMIT, mixed
 from bottles.physics.vessel import Vessel, wall_heat
 from shop.physics.errors import OutOfRange, PhysicsError
+from tests.examples import times
 
 LIMIT = 4.624
 VOLUME, WALL = 6.8e-3, wall_heat("aluminium", 5.9)
@@ -103,7 +104,7 @@ def test_limits_and_lines_that_cannot_be_are_refused():
             fills_left(supply(), into(), limit, line_volume_m3=line)
 
 
-@settings(max_examples=25, deadline=None)
+@settings(max_examples=times(25), deadline=None)
 @given(st.floats(0.0, 24.0), st.floats(-40.0, 52.0), st.floats(-40.0, 52.0), st.sampled_from([0.0, 5e-5]))
 def test_any_supply_gets_a_count(net, celsius, receiver, line):
     try:

@@ -19,6 +19,7 @@ from bottles.physics.receiver_start import Start, start_vessel
 from bottles.physics.transfer import Transfer
 from bottles.physics.vessel import Vessel, wall_heat
 from shop.physics.errors import OutOfRange
+from tests.examples import times
 
 SIZE = 7_500
 
@@ -145,7 +146,7 @@ observations = st.builds(
 )  # fmt: skip
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=times(30), deadline=None)
 @given(st.lists(observations, max_size=25), st.randoms(use_true_random=False))
 def test_the_order_of_the_refills_changes_nothing(rows: list[Observation], chance: random.Random) -> None:
     mixed = list(rows)
@@ -153,7 +154,7 @@ def test_the_order_of_the_refills_changes_nothing(rows: list[Observation], chanc
     assert fit(rows) == fit(mixed)
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=times(30), deadline=None)
 @given(st.lists(observations, max_size=25))
 def test_whatever_the_refills_say_the_answer_is_a_figure_with_a_deviation(rows: list[Observation]) -> None:
     for one in fit(rows):
@@ -162,7 +163,7 @@ def test_whatever_the_refills_say_the_answer_is_a_figure_with_a_deviation(rows: 
     assert whole.informative + whole.bounds == len(rows)
 
 
-@settings(max_examples=20, deadline=None)
+@settings(max_examples=times(20), deadline=None)
 @given(st.lists(st.floats(0.2, 0.8), min_size=6, max_size=12), st.floats(0.02, 0.1))
 def test_higher_refills_never_give_a_lower_figure(figures: list[float], more: float) -> None:
     def told(shift: float) -> float:
@@ -222,7 +223,7 @@ def limits(one: Refilled) -> tuple[float, float]:
     return transfer.slow_free_kg(), transfer.mixed_free_kg()
 
 
-@settings(max_examples=15, deadline=None)
+@settings(max_examples=times(15), deadline=None)
 @given(st.floats(0.0, 1.0), st.floats(258.15, 290.15), st.floats(8.0, 19.0))
 def test_a_refill_made_by_a_figure_tells_that_figure(figure: float, temperature: float, net: float) -> None:
     one = refilled(receiver_temperature_k=temperature, source=Vessel(0.029, wall_heat("steel", 32.0), net, 293.15))

@@ -12,6 +12,7 @@ from shop.physics.errors import OutOfRange
 from shop.physics.flow import calmed, dyer_flux, hem_flux, opening_flux, spi_flux, vapour_flux
 from shop.physics.fluid import P_MAX, engine
 from shop.physics.fluid_entropy import entropy_of, isentropic, sound_speed
+from tests.examples import times
 from tests.physics.reference import rows
 
 PSI = 6894.757
@@ -80,7 +81,7 @@ def test_a_measured_opening_lies_where_the_models_say():
     assert blend == pytest.approx(float(row["value"]), rel=0.025)
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(SATURATED, st.floats(0.02, 0.98))
 def test_the_blend_lies_between_equilibrium_and_no_boiling(kelvin, share):
     pressure, liquid, _ = saturated(kelvin)
@@ -90,7 +91,7 @@ def test_the_blend_lies_between_equilibrium_and_no_boiling(kelvin, share):
     assert hem_flux(liquid, kelvin, behind) <= single
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(SATURATED, st.floats(0.05, 0.95), st.floats(0.0, 0.5))
 def test_choked_flow_never_falls_with_a_lower_pressure_behind(kelvin, share, less):
     pressure, liquid, vapour = saturated(kelvin)
@@ -104,7 +105,7 @@ def test_without_a_choke_the_equilibrium_curve_turns_down():
     assert hem_flux(liquid, 273.15, 5e5, choked=False) < 0.9 * hem_flux(liquid, 273.15, 5e5)
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(st.floats(233.15, 325.15), st.floats(1.0, 1100.0), st.floats(0.0, 1.5))
 def test_flow_ends_at_equal_pressures_and_never_turns_back(kelvin, density, share):
     pressure = engine().pressure_energy(density, kelvin)[0]

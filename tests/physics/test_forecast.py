@@ -17,6 +17,7 @@ from bottles.physics.transfer import Transfer, mixed
 from bottles.physics.vessel import HOTTEST, Vessel, wall_heat
 from shop.physics.errors import OutOfRange
 from shop.physics.fluid import ATMOSPHERE, engine, saturation_at_temperature
+from tests.examples import times
 
 LIMIT = 4.624
 VOLUME, WALL = 6.8e-3, wall_heat("aluminium", 5.9)
@@ -208,7 +209,7 @@ def test_without_the_named_doubt_the_band_is_narrower():
         assert better.high_kg - better.low_kg < told.high_kg - told.low_kg
 
 
-@settings(max_examples=80, deadline=None)
+@settings(max_examples=times(80), deadline=None)
 @given(
     st.floats(0.0, 21.0), st.floats(-40.0, 52.0), st.floats(-40.0, 52.0),
     st.sampled_from(["vented", "own vapour", "air", "weighed"]), st.floats(0.0, 5.0), st.sampled_from([0.0, 5e-5]),

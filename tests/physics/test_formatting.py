@@ -18,9 +18,10 @@ from shop.physics.formatting import (
     unit_system,
 )
 from shop.physics.units import parse_mass
+from tests.examples import times
 
 STYLES: list[MassStyle] = ["g", "kg", "lb", "oz", "lb oz", "lb-oz"]
-FEW = settings(max_examples=50, deadline=None)
+FEW = settings(max_examples=times(50), deadline=None)
 RESOLUTIONS = st.sampled_from([1, 2, 5, 9, 10, 14, 20, 23, 28, 45, 50, 57, 100, 200, 454])
 
 

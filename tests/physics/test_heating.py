@@ -11,6 +11,7 @@ from bottles.physics.heating import heat_to_pressure, overfull, room_loss, secon
 from bottles.physics.vessel import Vessel
 from shop.physics.errors import NoSolution, OutOfRange
 from shop.physics.fluid import state_by_density_temperature
+from tests.examples import times
 from tests.physics.stepping import settled
 
 WALL = 5.9 * 896.0
@@ -122,7 +123,7 @@ def test_a_bottle_loses_about_what_common_practice_says():
     assert room_loss(29e-3) > 2.0 * room_loss(6.8e-3)
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=times(100), deadline=None)
 @given(st.floats(0.05, 5.0), st.floats(-40.0, 40.0), st.floats(0.5, 10.0), st.floats(250.0, 330.0))
 def test_warming_takes_time_and_more_of_it_the_farther(net, celsius, degrees, ambient):
     vessel = bottle(net, celsius)

@@ -15,6 +15,7 @@ from bottles.physics.venting_filling import RECEIVER_FULL
 from bottles.physics.vessel import Vessel, wall_heat
 from shop.physics.errors import OutOfRange, PhysicsError
 from shop.physics.fluid import saturation_at_temperature
+from tests.examples import times
 
 SMALL, WALL = 6.8e-3, wall_heat("aluminium", 5.9)
 
@@ -91,7 +92,7 @@ def test_limits_and_lines_out_of_range_are_refused():
             joined(supply(), small(), **wrong)
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(
     st.floats(0.0, 24.0), st.floats(-40.0, 52.0), st.floats(0.0, 6.5), st.floats(-40.0, 52.0), st.booleans(),
     st.sampled_from([0.0, 5e-4]),

@@ -15,6 +15,7 @@ from bottles.physics.venting_filling import RECEIVER_FULL
 from bottles.physics.vessel import Vessel, pressure_and_energy, wall_heat
 from shop.physics.errors import OutOfRange, PhysicsError
 from shop.physics.fluid import saturation_at_temperature
+from tests.examples import times
 
 LIMIT = 4.624
 VOLUME, WALL = 6.8e-3, wall_heat("aluminium", 5.9)
@@ -124,7 +125,7 @@ def test_figures_that_no_pump_has_are_refused():
         pumped_refill(supply(), into(20), 0.0)
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(
     st.floats(0.0, 24.0), st.floats(-40.0, 52.0), st.floats(-40.0, 52.0), st.sampled_from(["vented", "own vapour", "air"]),
     st.sampled_from([None, 5e6, 1e7]), st.sampled_from([None, 2e6]), st.sampled_from([0.0, 5e-5]),

@@ -29,6 +29,7 @@ from bottles.physics.remedies import (
 from bottles.physics.vessel import HOTTEST, Vessel, wall_heat
 from shop.physics.errors import OutOfRange, PhysicsError
 from shop.physics.fluid import engine
+from tests.examples import times
 
 LIMIT = 4.624
 
@@ -160,7 +161,7 @@ def test_inputs_that_cannot_be_are_refused():
             remedies(**case(**wrong))
 
 
-@settings(max_examples=25, deadline=None)
+@settings(max_examples=times(25), deadline=None)
 @given(
     st.floats(0.0, 24.0), st.floats(-40.0, 52.0), st.floats(-40.0, 52.0),
     st.sampled_from(["vented", "own vapour", "air"]), st.floats(0.0, 1.0),

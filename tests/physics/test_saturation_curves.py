@@ -16,6 +16,7 @@ from shop.physics.errors import OutOfRange
 from shop.physics.fluid import P_CRITICAL, T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.saturation_curves import boiling_temperatures, saturated_states
 from shop.physics.saturation_table import saturated, saturation_table
+from tests.examples import times
 
 NAMES = ("pressure_pa", "liquid_density", "vapour_density", "liquid_enthalpy", "vapour_enthalpy")
 # Even in temperature, denser toward the critical point, and midway between the knots, where pieces are worst.
@@ -45,7 +46,7 @@ def test_boiling_temperatures_meet_the_equation_of_state_everywhere(asked):
     assert float(np.max(np.abs(boiling_temperatures(asked[0]) - EVERYWHERE))) < 1e-7
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=times(100), deadline=None)
 @given(arrays(np.float64, st.integers(0, 40), elements=st.floats(T_TRIPLE, T_SATURATION_MAX)))
 def test_there_and_back_is_the_same_temperature(kelvin):
     states = saturated_states(kelvin)

@@ -8,11 +8,12 @@ from hypothesis import strategies as st
 
 from shop.physics.fluid import T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.saturation_table import saturated, saturation_table, to_s, to_t
+from tests.examples import times
 
 TEMPERATURES = st.floats(T_TRIPLE, T_SATURATION_MAX) | st.floats(T_SATURATION_MAX - 0.1, T_SATURATION_MAX)
 
 
-@settings(max_examples=400, deadline=None)
+@settings(max_examples=times(400), deadline=None)
 @given(TEMPERATURES)
 def test_the_table_meets_the_equation_of_state(kelvin):
     for index, (read, asked) in enumerate(zip(saturated(kelvin), engine().saturation(kelvin), strict=True)):
@@ -26,7 +27,7 @@ def test_its_ends_are_the_range_of_saturation():
         assert saturated(kelvin)[0] == pytest.approx(engine().saturation(kelvin)[0], rel=1e-9)
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=times(200), deadline=None)
 @given(
     st.floats(T_TRIPLE + 0.5, T_SATURATION_MAX - 0.5), st.floats(0.01, 0.99), st.floats(0.0, 3e4), st.floats(-0.4, 0.4)
 )

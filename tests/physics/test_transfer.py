@@ -16,6 +16,7 @@ from bottles.physics.vessel import Vessel, pressure_and_energy, wall_heat
 from bottles.physics.withdrawal import Adiabatic
 from shop.physics.errors import OutOfRange, PhysicsError
 from shop.physics.fluid import engine, saturation_at_temperature
+from tests.examples import times
 from tests.physics.reference import rows
 from tests.physics.stepping import step_mixed
 
@@ -257,7 +258,7 @@ RECEIVERS = st.builds(
 )
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=times(150), deadline=None)
 @given(VESSELS, RECEIVERS, st.sampled_from(sorted(LIMITS)))
 def test_any_two_bottles_get_an_answer(source, receiver, name):
     told = LIMITS[name](Transfer(source, receiver, 2e-5), 680.0 * receiver.volume_m3)
@@ -270,7 +271,7 @@ def test_any_two_bottles_get_an_answer(source, receiver, name):
     assert told.moved_kg < 1e-8 or told.source_final_pa >= told.receiver_final_pa * (1 - 2e-3)
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(st.floats(-40.0, 30.0), st.floats(0.5, 15.0), st.floats(1.0, 20.0))
 def test_a_colder_receiver_takes_more(celsius, degrees, net):
     warm = Transfer(supply(net), bottle(celsius + degrees)).mixed_free_kg()
@@ -278,7 +279,7 @@ def test_a_colder_receiver_takes_more(celsius, degrees, net):
     assert cold >= warm - 1e-5
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(st.floats(0.5, 19.0), st.floats(0.1, 3.0), st.floats(-30.0, 25.0), st.booleans())
 def test_a_fuller_supply_gives_more(net, more, celsius, pickup):
     # Up to the limit: a receiver already full of liquid takes less of a warmer supply's.
@@ -287,7 +288,7 @@ def test_a_fuller_supply_gives_more(net, more, celsius, pickup):
     assert much >= little - 1e-5
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(VESSELS, st.floats(0.0, 0.99), st.floats(0.0, 0.99))
 def test_a_supply_gives_at_falling_pressure_and_temperature(source, one, two):
     assume(source.net_kg > 0.01)

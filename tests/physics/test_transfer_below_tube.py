@@ -14,6 +14,7 @@ from bottles.physics.transfer import Transfer, held, line_loss, mixed, wall_cond
 from bottles.physics.vessel import Vessel, pressure_and_energy, wall_heat
 from bottles.physics.withdrawal import Adiabatic, Held
 from shop.physics.fluid import saturation_at_temperature
+from tests.examples import times
 from tests.physics.stepping import step_mixed
 
 LIMIT, VOLUME, WALL = 4.624, 6.8e-3, wall_heat("aluminium", 5.9)
@@ -66,7 +67,7 @@ def test_the_quick_limit_meets_plain_stepping(net, below):
     assert told.receiver_final_pa == pytest.approx(p2, rel=2e-3)
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(st.floats(2.0, 20.0), st.floats(-20.0, 45.0), st.floats(1e-5, 0.014), st.floats(-30.0, 20.0))
 def test_mass_and_energy_are_conserved_past_the_tubes_end(net, celsius, below, receiver_c):
     source, receiver = supply(net, celsius, below), vented(receiver_c)

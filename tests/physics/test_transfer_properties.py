@@ -1,13 +1,9 @@
-"""What any two bottles must keep to: conservation, order, monotony, units, an answer or a sentence.
-
-`TAREBOOK_EXAMPLES=20000 python -m pytest tests/physics/test_transfer_properties.py -k any` is the long run.
-"""
+"""What any two bottles must keep to: conservation, order, monotony, units, an answer or a sentence."""
 
 from __future__ import annotations
 
 import json
 import math
-import os
 
 import pytest
 from hypothesis import assume, given, reject, settings
@@ -20,10 +16,11 @@ from bottles.physics.transfer import NO_DIFFERENCE, Transfer, held, mixed, wall_
 from bottles.physics.vessel import Vessel, pressure_and_energy, wall_heat
 from shop.physics.errors import OutOfRange, PhysicsError
 from shop.physics.fluid import ATMOSPHERE, T_SATURATION_MAX, T_TRIPLE, load, saturation_at_temperature
+from shop.physics.states import RHO_CRITICAL
 from shop.physics.units import in_own_unit, parse_mass, parse_pressure, parse_temperature, parse_volume
+from tests.examples import times
 from tests.physics.stepping import step_mixed
 
-MANY = int(os.environ.get("TAREBOOK_EXAMPLES", "250"))
 LIMITS = {"mixed": mixed, "wall_condensing": wall_condensing, "held": held}
 LIMIT, VOLUME, WALL = 4.624, 6.8e-3, wall_heat("aluminium", 5.9)
 STEEL = wall_heat("steel", 32.0)
@@ -96,7 +93,7 @@ def energy(vessel, mass, kelvin):
     return pressure_and_energy(vessel.volume_m3, mass, kelvin)[1] + vessel.wall_j_k * kelvin
 
 
-@settings(max_examples=MANY, deadline=2000)
+@settings(max_examples=times(250), deadline=None)
 @given(refills())
 def test_any_refill_gets_an_answer_or_a_sentence(asked):
     try:
@@ -110,8 +107,7 @@ def test_any_refill_gets_an_answer_or_a_sentence(asked):
     names = {name for name, _ in told.width} | {"more refills", "receiver weight", None}
     assert told.narrows in names
     for limit in (told.mixed, told.wall_condensing, told.held):
-        line = told.line_loss_kg if limit.moved_kg else 0.0
-        assert limit.moved_kg + limit.source_left_kg + line == pytest.approx(
+        assert limit.moved_kg + limit.source_left_kg + told.line_loss_kg == pytest.approx(
             max(asked["source"].net_kg, 1e-9), rel=1e-9
         )
         assert limit.receiver_final_k > 0.0 < limit.source_final_k
@@ -123,7 +119,7 @@ def test_any_refill_gets_an_answer_or_a_sentence(asked):
             assert told.mixed.source_final_pa == pytest.approx(told.mixed.receiver_final_pa, rel=2e-3)
 
 
-@settings(max_examples=MANY, deadline=None)
+@settings(max_examples=times(250), deadline=None)
 @given(refills().filter(lambda asked: asked["start"].kind in (VENTED, OWN_VAPOUR)))
 def test_mass_and_energy_are_conserved_between_any_two_bottles(asked):
     source = asked["source"]
@@ -140,7 +136,7 @@ def test_mass_and_energy_are_conserved_between_any_two_bottles(asked):
     assert after - before == pytest.approx(0.0, abs=1e-6 * 4e5 * told.moved_kg + 1e-11 * abs(before))
 
 
-@settings(max_examples=MANY, deadline=None)
+@settings(max_examples=times(250), deadline=None)
 @given(refills())
 def test_the_limits_of_any_refill_do_not_depend_on_what_was_asked_first(asked):
     receiver = receiver_of(asked)
@@ -152,7 +148,7 @@ def test_the_limits_of_any_refill_do_not_depend_on_what_was_asked_first(asked):
         assert first.stopped_by == second.stopped_by
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(st.floats(-40.0, 30.0), st.floats(0.2, 15.0), st.floats(4.0, 20.0))
 def test_a_colder_bottle_takes_no_less_in_the_quick_and_the_slow_limit(celsius, degrees, net):
     warm, cold = (Transfer(supply(net, 20.0), into(c)) for c in (celsius + degrees, celsius))
@@ -162,7 +158,7 @@ def test_a_colder_bottle_takes_no_less_in_the_quick_and_the_slow_limit(celsius, 
         assert cold.slow_free_kg() >= warm.slow_free_kg() - 0.01 * LIMIT
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(st.floats(0.5, 18.0), st.floats(0.05, 2.0), st.floats(-30.0, 25.0), st.sampled_from(sorted(LIMITS)))
 def test_a_fuller_supply_gives_no_less_up_to_the_limit(net, more, celsius, name):
     little = LIMITS[name](Transfer(supply(net, 20.0), into(celsius)), LIMIT).moved_kg
@@ -170,7 +166,7 @@ def test_a_fuller_supply_gives_no_less_up_to_the_limit(net, more, celsius, name)
     assert much >= little - (0.01 * LIMIT if name == "wall_condensing" else 1e-5)
 
 
-@settings(max_examples=80, deadline=None)
+@settings(max_examples=times(80), deadline=None)
 @given(st.floats(8.0, 19.7), st.floats(0.0, 30.0), st.floats(-40.0, 30.0))
 def test_the_quick_limit_lies_above_the_slow_one_for_a_vented_bottle_no_warmer_than_the_supply(net, source_c, celsius):
     """Only so: in a warmer bottle liquid lies apart from the heat of the wall, and the slow limit may take more."""
@@ -184,7 +180,7 @@ def test_in_a_much_warmer_bottle_the_slow_limit_takes_more():
     assert transfer.slow_free_kg() > transfer.mixed_free_kg() + 0.2
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(st.floats(4.0, 19.7), st.floats(0.0, 30.0), st.floats(-40.0, 29.0))
 def test_kept_at_its_temperature_a_colder_bottle_takes_no_less_than_quickly(net, source_c, celsius):
     assume(celsius <= source_c - 1.0)
@@ -195,14 +191,14 @@ def test_kept_at_its_temperature_a_colder_bottle_takes_no_less_than_quickly(net,
     assert kept.moved_kg >= mixed(transfer, LIMIT).moved_kg - 1e-5
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=times(30), deadline=None)
 @given(st.floats(8.0, 19.7), st.floats(0.0, 30.0))
 def test_kept_at_one_temperature_is_no_upper_bound(net, celsius):
     transfer = Transfer(supply(net, celsius), into(celsius))
     assert held(transfer, LIMIT).moved_kg < mixed(transfer, LIMIT).moved_kg - 0.3
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(st.floats(-20.0, 28.0), st.floats(-30.0, 20.0), st.floats(0.0, 1.0), st.floats(0.3, 1.0))
 def test_a_reading_alone_spans_every_weight_that_it_allows(source_c, celsius, share, most):
     vapour = saturation_at_temperature(source_c + 273.15).vapour_density * 0.029
@@ -217,7 +213,7 @@ def test_a_reading_alone_spans_every_weight_that_it_allows(source_c, celsius, sh
     assert span.narrows in ("source weight", None)
 
 
-@settings(max_examples=25, deadline=None)
+@settings(max_examples=times(25), deadline=None)
 @given(st.integers(3000, 19700), st.integers(0, 30000), st.integers(-30000, 30000))
 def test_the_units_of_an_entry_change_nothing(net_g, source_mc, receiver_mc):
     """The same bottles written in pounds, cubic inches and fahrenheit, and read again."""
@@ -245,10 +241,12 @@ def test_a_pressure_in_psi_is_the_same_pressure():
     assert entry.stored == ATMOSPHERE
 
 
-@settings(max_examples=6, deadline=None)
+@settings(max_examples=times(6), deadline=None)
 @given(st.floats(6.0, 19.7), st.floats(-10.0, 48.0), st.floats(-30.0, 30.0))
 def test_the_quick_limit_agrees_with_stepping_wherever_it_is_asked(net, source_c, celsius):
     source, receiver = supply(net, source_c), into(celsius)
+    # Above the critical temperature thin fluid turns wet drop by drop: what the peer then draws is its step's size.
+    assume(source_c < 36.0 or net > 0.029 * RHO_CRITICAL)
     told = mixed(Transfer(source, receiver), LIMIT)
     assume(told.moved_kg > 0.05)
     t1, p1, t2, p2 = step_mixed(source, receiver, told.moved_kg, 1200 if told.liquid_out else 200)
@@ -270,7 +268,7 @@ def test_the_same_fill_at_one_temperature_moves_nothing(name, celsius):
         assert math.isfinite(told.receiver_final_pa)
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(st.floats(-20.0, 30.0), st.floats(-30.0, 20.0), st.floats(0.0, 1.0), st.floats(-0.02, 0.05))
 def test_the_last_hair_of_liquid_in_the_supply_makes_no_leap(source_c, celsius, figure, beyond):
     """Less in the supply never promises more, through the mass at which its liquid is out."""
@@ -279,7 +277,7 @@ def test_the_last_hair_of_liquid_in_the_supply_makes_no_leap(source_c, celsius, 
     less, more = (
         forecast(source=supply(net, source_c), condensation=known, **into_of(celsius)) for net in (hair, hair * 1.0002)
     )
-    slack = 3e-4 * LIMIT
+    slack = 5e-4 * hair  # two and a half times what there is more of it
     assert less.low_kg <= more.low_kg + slack
     assert less.likely_kg - 1e-6 <= more.likely_kg <= less.likely_kg + slack
     assert less.high_kg <= more.high_kg + slack

@@ -18,6 +18,7 @@ from bottles.physics.transient_zones import Around, Filling
 from bottles.physics.vessel import Vessel, pressure_and_energy
 from shop.physics.errors import OutOfRange, PhysicsError
 from shop.physics.fluid import engine
+from tests.examples import times
 from tests.physics.courses import ABOVE, CASES, LIMIT, QUICK, SLOW, bottle, supply
 
 
@@ -266,7 +267,7 @@ AROUND = st.none() | st.builds(
 )
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(
     st.builds(
         lambda litres, fill, celsius, wall, pickup: (litres / 1e3, wall, fill * litres, celsius + 273.15, 0.0, pickup),

@@ -23,11 +23,12 @@ from shop.physics.units import (
     parse_volume,
     value_in,
 )
+from tests.examples import times
 
 AIR = 101_325
 REFERENCE = Path(__file__).parent.parent / "reference" / "units.csv"
 PUBLISHED = list(csv.DictReader(REFERENCE.read_text(encoding="utf-8").splitlines()))
-FEW = settings(max_examples=50, deadline=None)
+FEW = settings(max_examples=times(50), deadline=None)
 
 
 def parse(kind: str, text: str, unit: str, ambient_pa: float = AIR) -> Entry:

@@ -13,6 +13,7 @@ from bottles.physics.venting import LIQUID, VAPOUR, phase_leaving, vent
 from bottles.physics.vessel import Vessel, pressure_and_energy, wall_heat
 from shop.physics.errors import OutOfRange, PhysicsError
 from shop.physics.fluid import ATMOSPHERE
+from tests.examples import times
 from tests.physics.stepping import outlet, settled, state_by_density_temperature
 
 POUND = 0.45359237
@@ -110,7 +111,7 @@ def test_air_that_comes_with_the_vapour_is_refused():
     assert refusal.value.code == "air"
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=times(60), deadline=None)
 @given(
     st.floats(0.0, 6.9), st.floats(-40.0, 52.0), st.sampled_from([VAPOUR, LIQUID]), st.floats(0.0, 1.0), st.booleans()
 )

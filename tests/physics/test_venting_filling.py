@@ -12,6 +12,7 @@ from bottles.physics.joining import Transfer
 from bottles.physics.receiver_start import Start, start_vessel
 from bottles.physics.venting_filling import vent_while_filling
 from bottles.physics.vessel import Vessel, pressure_and_energy, wall_heat
+from tests.examples import times
 from tests.physics.stepping import outlet, saturation_at_temperature, settled, state_by_density_temperature
 
 LIMIT = 4.624
@@ -131,7 +132,7 @@ def test_air_and_a_supply_without_liquid_are_said():
     assert codes(vent_while_filling(Transfer(supply(24.0, 50.0), into(52, "weighed", 3.0)), 6.2)) == ["near_critical"]
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=times(40), deadline=None)
 @given(
     st.floats(0.0, 22.0), st.floats(-40.0, 52.0), st.floats(-40.0, 52.0), st.sampled_from(["vented", "own vapour"]),
     st.sampled_from([0.0, 600.0, WALL]), st.sampled_from([1.0, LIMIT, 6.2]),

@@ -17,8 +17,9 @@ from bottles.physics.weighing import (
 )
 from shop.physics.errors import Contradiction, OutOfRange
 from shop.physics.formatting import reading_not_above
+from tests.examples import times
 
-FEW = settings(max_examples=50, deadline=None)
+FEW = settings(max_examples=times(50), deadline=None)
 GRAMS = st.integers(0, 200_000)
 
 

@@ -18,6 +18,7 @@ from bottles.rules.planning.schedule import Rehearsal
 from bottles.rules.planning.spans import span_of
 from bottles.rules.planning.told import tell
 from shop.physics.errors import OutOfRange
+from tests.examples import times
 
 SIZES = ((3.4e-3, 2_700.0), (6.8e-3, 5_300.0), (10e-3, 7_300.0))  # m3, J/K: aluminium
 STEEL = 15_000.0
@@ -80,7 +81,7 @@ def brute_force(of: Day) -> Score:
     return best
 
 
-@settings(max_examples=30, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@settings(max_examples=times(30), deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
 @given(days())
 def test_the_exact_plan_is_as_good_as_brute_force(of: Day) -> None:
     plan = best_plan(of)
@@ -88,7 +89,7 @@ def test_the_exact_plan_is_as_good_as_brute_force(of: Day) -> None:
     assert plan.score == brute_force(of)
 
 
-@settings(max_examples=25, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@settings(max_examples=times(25), deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
 @given(days(6, 3))
 def test_no_plan_is_worse_than_first_come_first_served(of: Day) -> None:
     rehearsal = Rehearsal(of)
@@ -97,7 +98,7 @@ def test_no_plan_is_worse_than_first_come_first_served(of: Day) -> None:
     assert best_plan(of, nodes=500).score <= served
 
 
-@settings(max_examples=25, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@settings(max_examples=times(25), deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
 @given(days())
 def test_no_plan_passes_the_bound(of: Day) -> None:
     best, bound = brute_force(of), bound_of(Rehearsal(of))
@@ -105,7 +106,7 @@ def test_no_plan_passes_the_bound(of: Day) -> None:
     assert -best[2] <= bound.good
 
 
-@settings(max_examples=40, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@settings(max_examples=times(40), deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
 @given(days(6, 3))
 def test_a_plan_keeps_to_hoses_people_slots_hours_and_masses(of: Day) -> None:
     check(of, good_plan(of, most=800))
@@ -295,7 +296,7 @@ def test_an_open_refill_goes_on_at_its_own_hose() -> None:
         assert placed is not None and placed[1].draws[0].station == 1
 
 
-@settings(max_examples=15, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@settings(max_examples=times(15), deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
 @given(days())
 def test_each_fill_is_told_with_a_span_around_what_is_likely(of: Day) -> None:
     unsure = replace(of, bottles=tuple(replace(one, deviation=0.25, unsure_kg=0.05) for one in of.bottles))

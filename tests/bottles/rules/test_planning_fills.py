@@ -14,6 +14,7 @@ from bottles.physics.vessel import Vessel
 from bottles.rules.planning.fills import Fills, warming_time
 from bottles.rules.planning.ordering import LEAST_DAYS, Pace, order_by, pace_of
 from bottles.rules.planning.problem import Day, Source, Start, Waiting
+from tests.examples import times
 
 MONDAY = date(2026, 3, 2)
 WORKDAYS = range(5)
@@ -21,7 +22,7 @@ WALLS = {3.4e-3: 2_700.0, 6.8e-3: 5_300.0, 10e-3: 7_300.0, 13.4e-3: 9_400.0}
 SUPPLIES = {0.029: 15_000.0, 0.040: 21_000.0, 0.020: 14_300.0}
 
 
-@settings(max_examples=250, deadline=None, derandomize=True)
+@settings(max_examples=times(250), deadline=None, derandomize=True)
 @given(
     volume=st.sampled_from(sorted(WALLS)), large=st.sampled_from(sorted(SUPPLIES)), held=st.floats(0.003, 0.4),
     bottle_k=st.sampled_from((255.15, 263.15, 278.15, 293.15)), share=st.floats(0.05, 1.0), supply_k=st.floats(276.0, 303.0),

@@ -6,6 +6,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from bottles.rules.refill_flows import Flow, Read, Source, flows
+from tests.examples import times
 
 BEFORE = Read(300, 24, 0, line_off=True)
 
@@ -49,7 +50,7 @@ def test_a_supply_on_a_scale_splits_into_arrived_line_and_missing() -> None:
     assert lost(3_900) == {("arrived", 0): 3_900, ("found beyond", 0): 100}
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=times(150), deadline=None)
 @given(
     nets=st.lists(st.tuples(st.integers(0, 8_000), st.integers(1, 80), st.integers(0, 2), st.booleans()), max_size=8),
     lost=st.lists(st.none() | st.integers(0, 9_000), min_size=3, max_size=3),
