@@ -53,13 +53,13 @@ def test_many_refills_tell_the_figure_that_was_planted(figure: float, spread: fl
 @pytest.mark.parametrize("many", [6, 15, 60])
 def test_a_band_of_two_deviations_holds_the_next_refill_about_nineteen_times_in_twenty(many: int) -> None:
     chance = random.Random(many)
-    tries, held, known = 150, 0, 0
+    tries, held, known = times(70), 0, 0
     for _ in range(tries):
         figure, spread = chance.uniform(0.25, 0.75), chance.choice([0.05, 0.1, 0.15])
         told = of(fit(planted(chance, many, figure, spread, room=(0.3, 1.5))))
         held += abs(chance.gauss(figure, spread) - told.figure) <= 2 * told.deviation
         known += abs(figure - told.figure) <= 2 * told.uncertainty
-    # 0.95 ± three standard errors of a share of 150.
+    # 0.95 ± three standard errors of a share of so many tries.
     assert held / tries >= 0.95 - 3 * sqrt(0.95 * 0.05 / tries)
     assert known / tries >= 0.95 - 3 * sqrt(0.95 * 0.05 / tries)
 
