@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from bottles.models import Account, Bottle, Scale, Tare
+from bottles.physics.venting import INVERTED, LIQUID, UPRIGHT, phase_leaving
 from bottles.physics.vessel import wall_heat
 from bottles.physics.weighing import net_uncertainty
 from bottles.rules.marks import read_mark
@@ -98,9 +99,8 @@ def _tare_of(bottle: Bottle) -> Tare | None:
 
 def takes_liquid(bottle: Bottle, *, inverted: bool) -> bool | None:
     """Return whether a supply bottle gives liquid as it stands; None where its tube isn't known."""
-    if bottle.dip_tube == "unknown":
-        return None
-    return (bottle.dip_tube == "dip") is not inverted
+    phase = phase_leaving(bottle.dip_tube, INVERTED if inverted else UPRIGHT)
+    return None if phase is None else phase == LIQUID
 
 
 def below_tube_m3(bottle: Bottle, *, inverted: bool) -> float:

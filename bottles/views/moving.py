@@ -6,24 +6,28 @@ import uuid
 from typing import Any
 
 from django.contrib import messages
+from django.utils.functional import cached_property
 
 from bottles.forms.moving import DeliverForm, GiveBackForm, UseForm, VentForm
 from bottles.models import Delivery
 from bottles.selectors.contents import holding_of
 from bottles.selectors.judging import judge_bottle
 from bottles.services import delivering, moving
+from bottles.services.venting_worth import venting_worth
 from bottles.views.custody import first_counter
 from bottles.views.holding_words import tell
 from bottles.views.of_bottle import BottleActView
 from bottles.views.refill_words import refill_words
 from shop.base.permissions import EVERYONE
 from shop.people.models import User
+from shop.physics.units import parse_mass
 
 VENTING = [
     "Outdoors only, away from doors, drains, pits and flames; nitrous is heavier than air and takes the oxygen's place.",
     "Gloves and eye protection: liquid nitrous burns skin by cold. Never breathe it.",
     "A bottle with a dip tube vents liquid when it stands upright; strap it down and open the valve slowly.",
 ]
+ROOM_MK = 293_150  # as warm as a bottle is taken to be where nobody read it: 20 °C
 
 
 class MovingView(BottleActView):
@@ -36,10 +40,14 @@ class MovingView(BottleActView):
         last = self.standing.weighing
         return {"scale": last.scale_id if last else None}
 
+    @cached_property
+    def limit_g(self) -> int | None:
+        """Its fill limit."""
+        return judge_bottle(self.bottle, shop=self.shop).limit.grams
+
     def context(self) -> dict[str, Any]:
-        limit = judge_bottle(self.bottle, shop=self.shop).limit.grams
         words = refill_words(self.request, self.shop)
-        return super().context() | {"holds": tell(holding_of(self.bottle), limit, words, self.shop)}
+        return super().context() | {"holds": tell(holding_of(self.bottle), self.limit_g, words, self.shop)}
 
 
 class Use(MovingView):
@@ -73,7 +81,27 @@ class Vent(MovingView):
     said = "Recorded."
 
     def context(self) -> dict[str, Any]:
-        return super().context() | {"heading": f"Vented from {self.bottle.code}", "cautions": VENTING}
+        said = super().context() | {"heading": f"Vented from {self.bottle.code}", "cautions": VENTING}
+        return said | {"worth": self.worth()}
+
+    def worth(self) -> dict[str, Any] | None:
+        """What letting out would do, as a table."""
+        words = refill_words(self.request, self.shop)
+        amount = parse_mass("1 lb" if words.units.name == "us" else "500 g", default_unit="g").stored
+        rows = venting_worth(self.bottle, amount_g=amount, limit_g=self.limit_g, temperature_mk=ROOM_MK)
+        if not rows:
+            return None
+        return {
+            "head": ["It stands", "What comes", "Let out", "Cools to", "Gauge then"],
+            "rows": [
+                [
+                    "upside down" if row.inverted else "upright", row.phase, words.mass(row.lost_g),
+                    words.temperature(row.temperature_mk), words.pressure(row.pressure_pa),
+                ]
+                for row in rows
+            ],
+            "from": words.temperature(ROOM_MK),
+        }  # fmt: skip
 
     def act(self, form: VentForm, person: User, key: uuid.UUID) -> str:
         data = form.cleaned_data
