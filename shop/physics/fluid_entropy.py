@@ -5,9 +5,10 @@ from __future__ import annotations
 from shop.physics.errors import OutOfRange
 from shop.physics.fluid import P_CRITICAL, P_MAX, P_TRIPLE, T_MAX, T_SATURATION_MAX, T_TRIPLE, engine
 from shop.physics.roots import find_root
-from shop.physics.states import PRESSURE_RANGE, T_CRITICAL
+from shop.physics.states import PRESSURE_RANGE
 
 _APART = 2e-6  # how far from its vapour pressure's temperature one phase is told safely, as a share
+_ABOVE = 5e-6  # of the critical pressure, past what the solver takes for saturation
 
 
 def entropy_of(density: float, temperature_k: float) -> tuple[float, float, float]:
@@ -130,8 +131,9 @@ def isentropic(entropy: float, pressure_pa: float) -> tuple[float, float]:
                 high = boiling * (1.0 - _APART)
             else:
                 low = boiling * (1.0 + _APART)
-        elif entropy < raw.smass():
-            high = T_CRITICAL
+        else:
+            # So near the critical point the solver takes no pressure on saturation; nothing parts just above it.
+            pressure = P_CRITICAL * (1.0 + _ABOVE)
 
     def surplus(temperature: float) -> float:
         fluid.density(pressure, temperature)

@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 
 from shop.physics.errors import OutOfRange
 from shop.physics.flow import calmed, dyer_flux, hem_flux, opening_flux, spi_flux, vapour_flux
-from shop.physics.fluid import P_MAX, engine
+from shop.physics.fluid import P_CRITICAL, P_MAX, engine
 from shop.physics.fluid_entropy import entropy_of, isentropic, sound_speed
 from tests.examples import times
 from tests.physics.reference import rows
@@ -175,3 +175,10 @@ def test_what_is_not_there_is_refused():
     with pytest.raises(OutOfRange) as refusal:
         isentropic(1000.0, 6e7)
     assert refusal.value.code == "pressure_range"
+
+
+def test_a_pressure_a_hair_below_the_critical_one_has_its_state():
+    entropy = entropy_of(518.34375, 321.8932900343465)[0]
+    density, _ = isentropic(entropy, P_CRITICAL * (1.0 - 5e-7))
+    lower, _ = isentropic(entropy, P_CRITICAL * 0.999)
+    assert lower < density < 518.34375
