@@ -5,7 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from math import hypot
 
-from bottles.physics.receiver_start import OWN_VAPOUR, VENTED, Start, start_vessel
+from bottles.physics.forecast_band import Tolerances, unsure_start
+from bottles.physics.receiver_start import Start, start_vessel
 from bottles.physics.transfer import Transfer
 from bottles.physics.vessel import Vessel
 from shop.physics.errors import OutOfRange
@@ -111,11 +112,12 @@ def _parts(transfer: Transfer, refilled: Refilled) -> list[float]:
         slope = (transfer.surplus(moved - step) - there) / step
     if slope <= 0.0:
         return []
+    _, unsure = unsure_start(refilled.start, receiver, Tolerances(receiver_scale_kg=refilled.start_error_kg))
     changed = (
         (_other(source, refilled.source_error_k, 0.0), receiver),
         (_other(source, 0.0, refilled.source_error_kg), receiver),
         (source, _other(receiver, refilled.receiver_error_k, 0.0)),
-        (source, _other(receiver, 0.0, _start_error(refilled, receiver))),
+        (source, _other(receiver, 0.0, unsure)),
     )
     parts = []
     for new_source, new_receiver in changed:
@@ -134,12 +136,3 @@ def _other(vessel: Vessel, kelvin: float, kilograms: float) -> Vessel:
         return replace(vessel, temperature_k=t + kelvin, net_kg=net + kilograms)
     except OutOfRange:
         return replace(vessel, temperature_k=t - kelvin, net_kg=max(net - kilograms, 0.0))
-
-
-def _start_error(refilled: Refilled, receiver: Vessel) -> float:
-    """How far the receiver's start may be out, as the forecast takes it [kg]."""
-    if refilled.start.kind == VENTED:
-        return receiver.net_kg  # an atmosphere more (common practice)
-    if refilled.start.kind == OWN_VAPOUR and refilled.start.net_kg is None:
-        return 0.25 * receiver.net_kg  # (common practice)
-    return refilled.start_error_kg
